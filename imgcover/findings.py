@@ -1,0 +1,129 @@
+"""What was noticed while measuring: one registry of codes, their words and their remedies.
+
+A finding never stops the road. The registry is the only place where a code is defined; the
+README's table and the record's `findings` are made from it. A member's name in kebab-case is its
+code. The message and the remedy may be said more exactly where the finding is made.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+from dataclasses import dataclass
+from enum import Enum, StrEnum
+
+
+class Severity(StrEnum):
+    """How much a finding weighs."""
+
+    INFO = "info"
+    """Worth knowing; changes nothing."""
+    WARNING = "warning"
+    """A number is weaker than it looks, or a decision stays open."""
+    REFUSAL = "refusal"
+    """Something could not be measured and is null."""
+
+
+class Flag(Enum):
+    """Every code a finding can carry: (severity, message, remedy)."""
+
+    # picture
+    PICTURE_UNREADABLE = (
+        Severity.REFUSAL,
+        "the picture could not be read",
+        "scan or export it again",
+    )
+    FIRST_PAGE_ONLY = (
+        Severity.INFO,
+        "the file holds several pages; only the first was measured",
+        "split the file to measure the others",
+    )
+    CLIPPED_LIGHT = (
+        Severity.WARNING,
+        "part of the picture is at the largest value the file can hold",
+        "lower the exposure and take the picture again",
+    )
+    # scale
+    NO_SCALE = (
+        Severity.REFUSAL,
+        "nothing says how many pixels make a millimetre",
+        "give --pitch, lay a rule in the picture (--rule auto), or use --device or --metadata",
+    )
+    PITCH_TAKEN_AS_EXACT = (
+        Severity.INFO,
+        "the stated pitch was taken as exact",
+        "give --pitch-u if it is not",
+    )
+    # threads
+    TOO_COARSE = (
+        Severity.REFUSAL,
+        "fewer than 3 pixels a thread: the picture is too coarse to count",
+        "scan at a higher resolution",
+    )
+    FEW_PIXELS_A_THREAD = (
+        Severity.WARNING,
+        "only 3 to 5 pixels a thread",
+        "scan at a higher resolution to be safe",
+    )
+    # cover
+    LIGHT_NOT_STATED = (
+        Severity.INFO,
+        "optical cover was not measured: the light was not stated",
+        "say --light backlit for a picture on a light table, --light reflected otherwise",
+    )
+    COVER_NEEDS_BACKLIGHT = (
+        Severity.INFO,
+        "optical cover was not measured: the picture was taken in reflected light",
+        "photograph the swatch on a light table and say --light backlit",
+    )
+
+    @property
+    def code(self) -> str:
+        """The member's name in kebab-case, as the record shows it."""
+        return self.name.lower().replace("_", "-")
+
+    @property
+    def severity(self) -> Severity:
+        """How much a finding with this code weighs."""
+        return self.value[0]
+
+    @property
+    def message(self) -> str:
+        """What is said when nothing more exact is known."""
+        return self.value[1]
+
+    @property
+    def remedy(self) -> str:
+        """What to do about it when nothing more exact is known."""
+        return self.value[2]
+
+
+@dataclass(frozen=True, slots=True)
+class Finding:
+    """One thing noticed, in words for the inspector."""
+
+    flag: Flag
+    message: str
+    remedy: str
+
+    @property
+    def code(self) -> str:
+        """The code of the finding's flag."""
+        return self.flag.code
+
+    @property
+    def severity(self) -> Severity:
+        """How much the finding weighs."""
+        return self.flag.severity
+
+
+def found(flag: Flag, message: str | None = None, remedy: str | None = None) -> Finding:
+    """Make a finding, in the registry's words unless better ones are given."""
+    return Finding(flag, flag.message if message is None else message, remedy or flag.remedy)
+
+
+def has(findings: Iterable[Finding], flag: Flag) -> bool:
+    """Whether any of the findings carries the flag."""
+    return any(each.flag is flag for each in findings)
+
+
+__all__ = ["Finding", "Flag", "Severity", "found", "has"]
