@@ -1,0 +1,1 @@
+"""What is remembered: the record of one picture or one lot."""
