@@ -1,0 +1,130 @@
+"""The two levels of a backlit cloth: the light through a pore and the light through the yarn."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from imgcover.cover.windows import Window
+
+BRIGHT_SHARE = 0.99
+"""A block's light is taken at this quantile: below the noise's own extremes, inside its pores."""
+
+
+@dataclass(frozen=True, slots=True)
+class Surface:
+    """A smooth light over the picture: exp of a quadratic in the place.
+
+    Parameters
+    ----------
+    rows, columns : int
+        Size of the picture, px.
+    coefficients : tuple of float
+        Of 1, x, y, x², xy, y² with x and y in -1…1.
+    """
+
+    rows: int
+    columns: int
+    coefficients: tuple[float, ...]
+
+    def at(self, row: NDArray[np.float64], column: NDArray[np.float64]) -> NDArray[np.float64]:
+        """Light at the places, linear."""
+        total = np.zeros(np.broadcast_shapes(row.shape, column.shape))
+        for coefficient, term in zip(self.coefficients, self._terms(row, column), strict=True):
+            total = total + coefficient * term
+        return np.exp(total)
+
+    def over(self, window: Window) -> NDArray[np.float32]:
+        """Light over every pixel of the window."""
+        rows, columns = window.light.shape
+        row = window.row + np.arange(rows, dtype=float)[:, None]
+        column = window.column + np.arange(columns, dtype=float)[None, :]
+        return self.at(row, column).astype(np.float32)
+
+    def _terms(
+        self, row: NDArray[np.float64], column: NDArray[np.float64]
+    ) -> tuple[NDArray[np.float64], ...]:
+        y = 2 * row / max(1, self.rows - 1) - 1
+        x = 2 * column / max(1, self.columns - 1) - 1
+        return np.ones_like(x * y), x, y, x * x, x * y, y * y
+
+
+def open_pore_light(
+    windows: list[Window], *, rows: int, columns: int, block: int
+) -> tuple[Surface, float]:
+    """Fit the light field to the brightest pores of every block.
+
+    Parameters
+    ----------
+    windows : list of Window
+    rows, columns : int
+        Size of the picture, px.
+    block : int
+        Side of a block, px: a few threads.
+
+    Returns
+    -------
+    Surface, float
+        The field and the relative scatter of the blocks about it.
+    """
+    places, lights = [], []
+    for window in windows:
+        height, width = window.light.shape
+        for row in range(0, height - block // 2, block):
+            for column in range(0, width - block // 2, block):
+                cut = (slice(row, row + block), slice(column, column + block))
+                part = window.light[cut][window.inside[cut]]
+                if part.size > block * block / 4:
+                    places.append(
+                        (window.row + row + block / 2, window.column + column + block / 2)
+                    )
+                    lights.append(float(np.quantile(part, BRIGHT_SHARE)))
+    return _fit(np.array(places), np.array(lights), rows, columns)
+
+
+def _fit(
+    places: NDArray[np.float64], lights: NDArray[np.float64], rows: int, columns: int
+) -> tuple[Surface, float]:
+    """Fit the surface with the blocks below it (no open pore there) left out in turn."""
+    flat = Surface(rows, columns, (0.0,) * 6)
+    terms = np.stack(flat._terms(places[:, 0], places[:, 1]), axis=1)
+    if len(lights) < 12:
+        terms = terms[:, :1]
+    logs = np.log(np.maximum(lights, 1e-6))
+    keep = np.ones(len(logs), bool)
+    for _ in range(8):
+        solved, *_ = np.linalg.lstsq(terms[keep], logs[keep], rcond=None)
+        residual = logs - terms @ solved
+        spread = 1.4826 * float(np.median(np.abs(residual[keep]))) + 1e-4
+        keep = residual > -2.5 * spread
+    coefficients = tuple(float(c) for c in solved) + (0.0,) * (6 - len(solved))
+    return Surface(rows, columns, coefficients), spread
+
+
+def two_levels(transmitted: NDArray[np.float32]) -> tuple[float, float]:
+    """Open and yarn level by splitting the values where the classes differ most, then medians.
+
+    Parameters
+    ----------
+    transmitted : ndarray, float32
+        Light over the light field.
+
+    Returns
+    -------
+    open_level, yarn_level : float
+    """
+    low, high = (float(q) for q in np.quantile(transmitted, (0.02, 0.995)))
+    for _ in range(20):
+        middle = (low + high) / 2
+        above, below = transmitted[transmitted > middle], transmitted[transmitted <= middle]
+        if above.size == 0 or below.size == 0:
+            break
+        # Medians of the outer part of each class: the blurred edge belongs to neither.
+        high = float(np.median(above[above >= np.quantile(above, 0.6)]))
+        low = float(np.median(below[below <= np.quantile(below, 0.8)]))
+    return high, low
+
+
+__all__ = ["Surface", "open_pore_light", "two_levels"]

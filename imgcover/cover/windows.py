@@ -1,0 +1,164 @@
+"""Where to look: windows spread evenly over the field, and weights that hold whole periods only."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+import cv2
+import numpy as np
+from numpy.typing import NDArray
+
+from imgcover.cover.reading import Lattice, Lit
+
+PIXELS_READ = 1_500_000
+"""About this many pixels are measured: 0.1 s a step, and far more pores than the u needs."""
+WINDOW_SIDE = 512
+"""Side of one window of a large picture, px: tens of threads at any resolution that counts."""
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Window:
+    """One rectangle of the picture.
+
+    Parameters
+    ----------
+    row, column : int
+        Where its first pixel lies in the picture.
+    light : ndarray, shape (rows, columns), float32, linear light
+    inside : ndarray, shape (rows, columns), bool
+        What belongs to the field.
+    """
+
+    row: int
+    column: int
+    light: NDArray[np.float32]
+    inside: NDArray[np.bool_]
+
+
+@dataclass(frozen=True, slots=True)
+class Sheet:
+    """A plain array of linear light, read as a picture."""
+
+    values: NDArray[np.float32]
+
+    @property
+    def rows(self) -> int:
+        """Height, px."""
+        return int(self.values.shape[0])
+
+    @property
+    def columns(self) -> int:
+        """Width, px."""
+        return int(self.values.shape[1])
+
+    def light(self, window: tuple[slice, slice] | None = None) -> NDArray[np.float32]:
+        """Linear light 0…1 of the window."""
+        return self.values if window is None else self.values[window]
+
+
+def spread(
+    source: Lit, *, field: NDArray[np.bool_] | None, pixels: int = PIXELS_READ
+) -> list[Window]:
+    """Take the whole field where it is small, else windows on an even grid over it.
+
+    Parameters
+    ----------
+    source : Lit
+    field : ndarray, shape (rows, columns), bool, or None
+        True where the cloth is; None means everywhere.
+    pixels : int
+        About how many pixels may be read.
+
+    Returns
+    -------
+    list of Window
+        In reading order; windows less than half in the field are left out.
+    """
+    top, left, bottom, right = _bounds(source, field)
+    if (bottom - top) * (right - left) <= pixels:
+        return _read(source, field, [(top, left, bottom - top, right - left)])
+    height, width = min(WINDOW_SIDE, bottom - top), min(WINDOW_SIDE, right - left)
+    wanted = max(4, pixels // (height * width))
+    down = max(1, round(math.sqrt(wanted * (bottom - top) / (right - left))))
+    across = max(1, round(wanted / down))
+    rows = np.linspace(top, bottom - height, down).astype(int)
+    columns = np.linspace(left, right - width, across).astype(int)
+    places = [(int(r), int(c), height, width) for r in rows for c in columns]
+    return _read(source, field, places)
+
+
+def _bounds(source: Lit, field: NDArray[np.bool_] | None) -> tuple[int, int, int, int]:
+    """First and past-last row and column of the field."""
+    if field is None:
+        return 0, 0, source.rows, source.columns
+    rows, columns = np.flatnonzero(field.any(axis=1)), np.flatnonzero(field.any(axis=0))
+    if rows.size == 0:
+        return 0, 0, 0, 0
+    return int(rows[0]), int(columns[0]), int(rows[-1]) + 1, int(columns[-1]) + 1
+
+
+def _read(
+    source: Lit, field: NDArray[np.bool_] | None, places: list[tuple[int, int, int, int]]
+) -> list[Window]:
+    windows = []
+    for row, column, height, width in places:
+        cut = (slice(row, row + height), slice(column, column + width))
+        inside = np.ones((height, width), bool) if field is None else field[cut].copy()
+        if inside.mean() > 0.5:
+            windows.append(Window(row, column, source.light(cut), inside))
+    return windows
+
+
+def whole_periods(inside: NDArray[np.bool_], lattice: Lattice | None) -> NDArray[np.float32]:
+    """Weigh the pixels of a field so that every phase of the thread lattice weighs alike.
+
+    Parameters
+    ----------
+    inside : ndarray, shape (rows, columns), bool
+    lattice : Lattice or None
+        None: every pixel inside weighs 1.
+
+    Returns
+    -------
+    ndarray, shape (rows, columns), float32, 0…1
+
+    Notes
+    -----
+    The indicator of a region convolved with one cell of the lattice sums to the same over every
+    phase, whatever the region's shape, so a weighted mean is a mean over whole periods. The cell
+    is laid along the rows and columns, which for threads turned by a few degrees is right to the
+    square of the turn.
+    """
+    if lattice is None:
+        return inside.astype(np.float32)
+    across, down = cell_sides(lattice)
+    # Shrunk by half a cell first: the weight then never reaches outside the field.
+    reach = np.ones((2 * math.ceil(down / 2) + 1, 2 * math.ceil(across / 2) + 1), np.uint8)
+    shrunk = cv2.erode(
+        inside.astype(np.uint8), reach, borderType=cv2.BORDER_CONSTANT, borderValue=0
+    )
+    weight = cv2.sepFilter2D(
+        shrunk.astype(np.float32),
+        -1,
+        _box(across),
+        _box(down),
+        borderType=cv2.BORDER_CONSTANT,
+    )
+    return np.asarray(weight, np.float32)
+
+
+def cell_sides(lattice: Lattice) -> tuple[float, float]:
+    """Sides of one thread cell along the row and down the column, px."""
+    return 1.0 / math.hypot(*lattice.ends), 1.0 / math.hypot(*lattice.picks)
+
+
+def _box(side: float) -> NDArray[np.float32]:
+    """Weights of a box of a broken number of pixels, summing to 1."""
+    half = math.ceil((side - 1) / 2)
+    box = np.ones(2 * half + 1)
+    box[0] = box[-1] = (side - (2 * half - 1)) / 2
+    return (box / side).astype(np.float32)
+
+
+__all__ = ["PIXELS_READ", "Sheet", "Window", "cell_sides", "spread", "whole_periods"]
