@@ -1,0 +1,53 @@
+"""The commands, put together. Nothing numeric is imported here: `--help` must answer at once."""
+
+from __future__ import annotations
+
+from typing import Annotated
+
+import typer
+from typer.core import TyperCommand, TyperGroup
+
+from imgcover import __version__
+from imgcover.cli import measure
+
+EPILOG = "Exit codes, findings and what no picture can tell: README.md."
+
+
+def command() -> TyperCommand | TyperGroup:
+    """Assemble the command line.
+
+    Returns
+    -------
+    TyperCommand or TyperGroup
+        To be run outside its standalone mode: `imgcover.cli.door` says how things end.
+    """
+    # no rich: its panels read square brackets in file names as markup, and its import takes longer
+    # than all of help may
+    app = typer.Typer(
+        help="Reads pictures of woven cloth and holds them against what was declared.",
+        epilog=EPILOG,
+        add_completion=False,
+        rich_markup_mode=None,
+        pretty_exceptions_enable=False,
+    )
+    app.callback()(_top)
+    app.command("measure", epilog=measure.EXAMPLES)(measure.measure)
+    return typer.main.get_command(app)
+
+
+def _say_version(asked: bool) -> None:
+    if asked:
+        typer.echo(f"imgcover {__version__}")
+        raise typer.Exit
+
+
+def _top(
+    version: Annotated[
+        bool,
+        typer.Option("--version", help="Say the version and stop.", callback=_say_version),
+    ] = False,
+) -> None:
+    """Stand above the commands, for what is asked of none of them."""
+
+
+__all__ = ["command"]
