@@ -75,6 +75,32 @@ class Flag(Enum):
         "optical cover was not measured: the picture was taken in reflected light",
         "photograph the swatch on a light table and say --light backlit",
     )
+    # verdict
+    COVER_DIFFERS_FROM_MODEL = (
+        Severity.WARNING,
+        "the optical cover differs from what the declared construction leads to",
+        "read the diagnosis: it weighs which declared figure cannot be true",
+    )
+    MASS_NOT_WEIGHED = (
+        Severity.INFO,
+        "the declared mass was not judged: no weighing was given",
+        "weigh a cut of known area and give --gsm",
+    )
+    FEWER_PLACES_THAN_STANDARD = (
+        Severity.WARNING,
+        "fewer places than the five that ISO 7211-2 asks for",
+        "take pictures at more places of the lot",
+    )
+    SHORTER_LENGTH_THAN_STANDARD = (
+        Severity.INFO,
+        "threads were counted over a shorter length than ISO 7211-2 asks for at this density",
+        "scan a larger field",
+    )
+    PICTURES_OF_A_PLACE_DISAGREE = (
+        Severity.WARNING,
+        "pictures of one place give densities further apart than their uncertainties",
+        "see whether they show the same place and have the right scale",
+    )
 
     @property
     def code(self) -> str:
