@@ -5,7 +5,6 @@ from __future__ import annotations
 from typing import Annotated
 
 import typer
-from typer.core import TyperCommand, TyperGroup
 
 from imgcover import __version__
 from imgcover.cli import measure
@@ -13,14 +12,8 @@ from imgcover.cli import measure
 EPILOG = "Exit codes, findings and what no picture can tell: README.md."
 
 
-def command() -> TyperCommand | TyperGroup:
-    """Assemble the command line.
-
-    Returns
-    -------
-    TyperCommand or TyperGroup
-        To be run outside its standalone mode: `imgcover.cli.door` says how things end.
-    """
+def assembled() -> typer.Typer:
+    """Put the commands together; `imgcover.cli.door` runs them and says how they end."""
     # no rich: its panels read square brackets in file names as markup, and its import takes longer
     # than all of help may
     app = typer.Typer(
@@ -32,7 +25,7 @@ def command() -> TyperCommand | TyperGroup:
     )
     app.callback()(_top)
     app.command("measure", epilog=measure.EXAMPLES)(measure.measure)
-    return typer.main.get_command(app)
+    return app
 
 
 def _say_version(asked: bool) -> None:
@@ -50,4 +43,4 @@ def _top(
     """Stand above the commands, for what is asked of none of them."""
 
 
-__all__ = ["command"]
+__all__ = ["assembled"]

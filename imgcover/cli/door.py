@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import errno
 import os
 import sys
 import traceback
@@ -10,8 +11,11 @@ from collections.abc import Sequence
 import typer
 
 from imgcover.cli.exits import ExitCode
-from imgcover.cli.output import finish, tell
+from imgcover.cli.output import finish, silence, tell
 from imgcover.errors import ImgcoverError, LedgerError, OutputError
+
+NO_ROOM = frozenset({errno.ENOSPC, errno.EDQUOT, errno.EIO, errno.EROFS, errno.EFBIG})
+"""What a disk says when it cannot take what is written: no fault of ours."""
 
 
 def outcome(arguments: Sequence[str]) -> int:
@@ -28,10 +32,13 @@ def outcome(arguments: Sequence[str]) -> int:
         A value of `ExitCode`; faults have been told on stderr in one line.
     """
     try:
-        from imgcover.cli.app import command
+        from imgcover.cli.app import assembled
 
-        code = command().main(list(arguments), prog_name="imgcover", standalone_mode=False)
+        command = typer.main.get_command(assembled())
+        code = command.main(list(arguments), prog_name="imgcover", standalone_mode=False)
         finish()
+        if code == ExitCode.INTERRUPTED:  # typer makes a return value of Ctrl-C
+            raise KeyboardInterrupt
         return int(code or ExitCode.CONFORMS)
     except typer.TyperException as refused:
         return _told(f"{refused.format_message()} (imgcover --help)", ExitCode.USAGE)
@@ -44,6 +51,16 @@ def outcome(arguments: Sequence[str]) -> int:
     except SystemExit as left:
         # typer leaves with 1 when help meets a closed pipe; nobody is there to read, no fault
         return int(ExitCode.CONFORMS if isinstance(left.__context__, OSError) else ExitCode.BUG)
+    except OSError as fault:
+        _trace()
+        silence()
+        full = fault.errno in NO_ROOM
+        said = (
+            f"stdout: cannot be written ({fault.strerror})"
+            if full
+            else f"internal fault: OSError: {fault}"
+        )
+        return _told(said, ExitCode.OUTPUT if full else ExitCode.BUG)
     except Exception as bug:
         _trace()
         said = f"internal fault: {type(bug).__name__}: {bug} (IMGCOVER_DEBUG=1 shows where)"

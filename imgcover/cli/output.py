@@ -89,10 +89,19 @@ def finish() -> None:
     try:
         sys.stdout.flush()
     except BrokenPipeError:
-        _deaf()
+        silence()
     except OSError as fault:
-        _deaf()
+        silence()
         raise _unwritten("stdout", fault) from fault
+
+
+def silence() -> None:
+    """Send what is still to come on stdout nowhere: the interpreter flushes once more at exit."""
+    with contextlib.suppress(OSError, ValueError, AttributeError):
+        # stdout without a file of its own behind it has nothing left to flush
+        nowhere = os.open(os.devnull, os.O_WRONLY)
+        os.dup2(nowhere, sys.stdout.fileno())
+        os.close(nowhere)
 
 
 def _stdout(encoding: str | None) -> Write:
@@ -106,9 +115,9 @@ def _stdout(encoding: str | None) -> Write:
             sys.stdout.write(text)
             sys.stdout.flush()
         except BrokenPipeError:
-            _deaf()
+            silence()
         except OSError as fault:
-            _deaf()
+            silence()
             raise _unwritten("stdout", fault) from fault
 
     return write
@@ -124,16 +133,9 @@ def _guarded(file: io.TextIOWrapper, name: str) -> Write:
     return write
 
 
-def _deaf() -> None:
-    """Send what is still to come on stdout nowhere: the interpreter flushes once more at exit."""
-    nowhere = os.open(os.devnull, os.O_WRONLY)
-    os.dup2(nowhere, sys.stdout.fileno())
-    os.close(nowhere)
-
-
 def _unwritten(name: str, fault: OSError) -> OutputError:
     reason = fault.strerror or type(fault).__name__
     return OutputError(name, f"cannot be written ({reason})", "choose another place, or make room")
 
 
-__all__ = ["Write", "finish", "opened", "tell"]
+__all__ = ["Write", "finish", "opened", "silence", "tell"]
