@@ -82,9 +82,9 @@ def test_all_entries_of_one_call_or_none(tmp_path):
 def test_the_file_itself_refuses_to_change_a_row(tmp_path, order):
     with Ledger.open(tmp_path / "l.sqlite") as ledger:
         ledger.append([entry("a")])
-    with closing(sqlite3.connect(tmp_path / "l.sqlite")) as raw:
-        with pytest.raises(sqlite3.IntegrityError, match="only appended to"):
-            raw.execute(order)
+    refused = pytest.raises(sqlite3.IntegrityError, match="only appended to")
+    with closing(sqlite3.connect(tmp_path / "l.sqlite")) as raw, refused:
+        raw.execute(order)
 
 
 def test_two_writers_at_once_lose_nothing_and_keep_one_chain(tmp_path):
