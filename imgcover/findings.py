@@ -75,6 +75,47 @@ class Flag(Enum):
         "optical cover was not measured: the picture was taken in reflected light",
         "photograph the swatch on a light table and say --light backlit",
     )
+    # cloth
+    PACKING_ASSUMED = (
+        Severity.INFO,
+        "how the yarn was spun is not declared; its packing was taken",
+        "write spinning or packing in the declaration",
+    )
+    CRIMP_ASSUMED = (
+        Severity.INFO,
+        "the crimp is not declared; a range was taken for the mass",
+        "write crimp in the declaration",
+    )
+    MASS_ONLY_INDICATES = (
+        Severity.INFO,
+        "size or the change in finishing is not declared: the predicted mass only indicates",
+        "write size (grey) or finish_change (finished) in the declaration",
+    )
+    FRACTION_CAPPED = (
+        Severity.WARNING,
+        "the declared yarns are wider than their spacing; the fraction was taken as 1",
+        "check the declared sett and count; threads that overlap cannot be told by a model",
+    )
+    CANNOT_BE_WOVEN = (
+        Severity.WARNING,
+        "the declared construction passes the limit of weaving",
+        "check the declared setts, counts and weave: one of them cannot be true",
+    )
+    AT_THE_WEAVING_LIMIT = (
+        Severity.INFO,
+        "the declared construction is as tight as can be woven",
+        "check the declared setts and counts",
+    )
+    DECLARED_COVER_UNLIKELY = (
+        Severity.WARNING,
+        "the declared cover is not what the declared counts and setts predict",
+        "check the declared cover, or declare how the yarns are flattened",
+    )
+    DECLARED_MASS_UNLIKELY = (
+        Severity.WARNING,
+        "the declared mass is not what the declared counts and setts predict",
+        "check the declared mass, counts, crimp and finishing",
+    )
     # verdict
     COVER_DIFFERS_FROM_MODEL = (
         Severity.WARNING,
