@@ -1,0 +1,1 @@
+"""Declared against measured: conformity with uncertainty, lots, and what must be wrong."""
