@@ -1,0 +1,1 @@
+"""What is declared, and what should then be seen."""
