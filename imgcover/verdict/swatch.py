@@ -1,0 +1,125 @@
+"""Is the swatch on the table the cloth on the paper?"""
+
+from __future__ import annotations
+
+import math
+
+from imgcover.cloth.declaration import Declaration
+from imgcover.cloth.prediction import Prediction
+from imgcover.findings import Finding, Flag, Severity, found
+from imgcover.quantity import Measured, rounded
+from imgcover.verdict.aims import aims
+from imgcover.verdict.line import Quantity, Sample, judge_line
+from imgcover.verdict.observed import Observed, Spread
+from imgcover.verdict.standing import holds
+from imgcover.verdict.verdict import Scope, Verdict, whole
+
+COVER_DIFFERS = 2.0
+"""Standard uncertainties of the difference beyond which cover and model are said to differ."""
+
+
+def judge(
+    declaration: Declaration,
+    prediction: Prediction,
+    observed: Observed,
+    *,
+    risk: float | None = None,
+) -> Verdict:
+    """Judge one swatch against its declaration.
+
+    Parameters
+    ----------
+    declaration : Declaration
+        What was declared.
+    prediction : Prediction
+        What the declared construction leads to.
+    observed : Observed
+        What was seen; never touched by what was declared.
+    risk : float, optional
+        Largest probability that a stated decision is wrong; None takes the guard band U = 2 u.
+
+    Returns
+    -------
+    Verdict
+        With scope swatch: one place never decides a lot.
+    """
+    samples = {
+        Quantity.ENDS: _of_cloth(observed.ends, observed.ends_spread),
+        Quantity.PICKS: _of_cloth(observed.picks, observed.picks_spread),
+        Quantity.COVER: observed.cover,
+        Quantity.MASS: observed.gsm,
+    }
+    lines = tuple(
+        judge_line(aim, _sample(quantity, samples[quantity], observed.flags), risk=risk)
+        for quantity, aim in aims(declaration, prediction).items()
+        if is_asked(quantity, samples[quantity], aim.limits is not None)
+    )
+    findings = tuple(
+        finding
+        for finding in (
+            cover_finding(observed.cover, prediction.cover),
+            mass_finding(declaration, observed.gsm),
+        )
+        if finding is not None
+    )
+    return whole(Scope.SWATCH, lines, (), findings)
+
+
+def is_asked(quantity: Quantity, value: Measured | None, has_limits: bool) -> bool:
+    """Whether a figure gets a line.
+
+    Ends and picks always do; cover where it was measured or a tolerance asks for it; mass only
+    where it was weighed, since no picture can tell it.
+    """
+    if quantity in (Quantity.ENDS, Quantity.PICKS):
+        return True
+    if quantity is Quantity.MASS:
+        return value is not None
+    return value is not None or has_limits
+
+
+def cover_finding(cover: Measured | None, predicted: Measured) -> Finding | None:
+    """Say where the cover differs from the model by more than both uncertainties explain."""
+    if cover is None:
+        return None
+    u = math.hypot(cover.u, predicted.u)
+    if abs(cover.value - predicted.value) <= COVER_DIFFERS * u:
+        return None
+    seen, expected = rounded(cover.value, cover.u), rounded(predicted.value, predicted.u)
+    more = "more" if cover.value > predicted.value else "less"
+    return found(
+        Flag.COVER_DIFFERS_FROM_MODEL,
+        f"optical cover is {seen[0]} ± {seen[1]}, {more} than the {expected[0]} ± {expected[1]} "
+        "that the declared construction leads to",
+    )
+
+
+def mass_finding(declaration: Declaration, gsm: Measured | None) -> Finding | None:
+    """Say that a mass with a tolerance was left unjudged because nothing was weighed."""
+    if gsm is not None or declaration.tolerance.mass is None:
+        return None
+    return found(Flag.MASS_NOT_WEIGHED)
+
+
+def _of_cloth(field: Measured | None, spread: Spread) -> Measured | None:
+    """Widen the u of a field's density by how the density varies from place to place."""
+    if field is None:
+        return None
+    return Measured(field.value, math.hypot(field.u, field.value * spread.u_relative), field.unit)
+
+
+def _sample(quantity: Quantity, value: Measured | None, flags: frozenset[Flag]) -> Sample:
+    return Sample(value, holds=holds(flags, quantity), missing=why_missing(quantity, flags))
+
+
+def why_missing(quantity: Quantity, flags: frozenset[Flag]) -> str:
+    """Say why a quantity has no value, in the words of the findings that refused it."""
+    of_cover = {Flag.LIGHT_NOT_STATED, Flag.COVER_NEEDS_BACKLIGHT}
+    if quantity is Quantity.COVER:
+        reasons = [flag.message for flag in Flag if flag in flags & of_cover]
+    else:
+        reasons = [f.message for f in Flag if f in flags and f.severity is Severity.REFUSAL]
+    return "; ".join(reasons) or "it could not be measured"
+
+
+__all__ = ["cover_finding", "is_asked", "judge", "mass_finding", "why_missing"]
