@@ -1,0 +1,1 @@
+"""A folder of lots: listed, mapped over workers, resumed, remembered and told."""
