@@ -1,0 +1,1 @@
+"""Draws cloth with known truth: yarn, cloth, camera; for samples, planning and tests."""

@@ -1,0 +1,226 @@
+"""How the cloth is seen: where the frame lies on it, and what lens, light and file make of it."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+from typing import Literal
+
+import cv2
+import numpy as np
+from numpy.typing import NDArray
+
+from imgcover.loom.noise import Rng
+from imgcover.tone import SRGB, Tone
+
+
+@dataclass(frozen=True, slots=True)
+class CameraSpec:
+    """A camera or scanner, and how the swatch lies before it.
+
+    Parameters
+    ----------
+    px_per_mm : float
+        Pixels per mm across the picture.
+    px_per_mm_y : float or None
+        The same down the picture, when it differs.
+    light : {"backlit", "reflected"}
+        Which side the light comes from.
+    blur_px : float
+        Standard deviation of the lens's Gaussian, in pixels.
+    exposure : float
+        Linear light of bare light table, or of a white surface, at the brightest place.
+    falloff : float
+        Share of the light lost in the corners.
+    tilt : float
+        Share of the light lost from the left edge to the right; negative the other way.
+    hot_spot : float
+        Share by which a quarter of the frame is brighter than the rest.
+    glare : float
+        Light added everywhere, in shares of the exposure.
+    read_noise, shot_noise : float
+        Sd of the noise in the dark, and sd at full light from counting photons, in full scales.
+    rotation_deg : float
+        Turn of the ends from the vertical, clockwise as shown.
+    skew_deg : float
+        Further clockwise turn of the picks, away from the right angle.
+    bow : float
+        How far the middle of a pick lies below its ends, in shares of the frame's width.
+    tone, bits, jpeg : Tone, int, int or None
+        Transfer curve, depth (8 or 16), and JPEG quality of an 8-bit picture.
+    sharpening : float
+        Strength of the unsharp mask put on the stored values.
+    blurred_third, shadowed_third : float
+        Blur of the left third, px; share of light lost in the right third.
+    margin : tuple of four floats
+        Bare bed or light left, above, right and below the swatch, in shares of the frame.
+    bed : float
+        Reflectance of what lies behind the swatch, in reflected light.
+    colour : bool
+        Three channels instead of one.
+    """
+
+    px_per_mm: float
+    px_per_mm_y: float | None = None
+    light: Literal["backlit", "reflected"] = "backlit"
+    blur_px: float = 0.6
+    exposure: float = 0.85
+    falloff: float = 0.08
+    tilt: float = 0.0
+    hot_spot: float = 0.0
+    glare: float = 0.0
+    read_noise: float = 0.002
+    shot_noise: float = 0.006
+    rotation_deg: float = 0.0
+    skew_deg: float = 0.0
+    bow: float = 0.0
+    tone: Tone = SRGB
+    bits: int = 8
+    jpeg: int | None = None
+    sharpening: float = 0.0
+    blurred_third: float = 0.0
+    shadowed_third: float = 0.0
+    margin: tuple[float, float, float, float] = (0.0, 0.0, 0.0, 0.0)
+    bed: float = 0.15
+    colour: bool = False
+
+    def __post_init__(self) -> None:
+        if self.bits not in (8, 16):
+            raise ValueError(f"bits must be 8 or 16, got {self.bits}")
+        if self.jpeg is not None and self.bits != 8:
+            raise ValueError("a JPEG picture has 8 bits")
+        if self.px_per_mm <= 0 or self.y_per_mm <= 0:
+            raise ValueError("px_per_mm must be above zero")
+
+    @property
+    def y_per_mm(self) -> float:
+        """Pixels per mm down the picture."""
+        return self.px_per_mm if self.px_per_mm_y is None else self.px_per_mm_y
+
+
+@dataclass(frozen=True, slots=True)
+class Frame:
+    """The picture's frame on the cloth: pixels to distances across the ends and the picks."""
+
+    width: int
+    height: int
+    camera: CameraSpec
+
+    def x_mm(self, column: NDArray[np.float64]) -> NDArray[np.float64]:
+        """Distance from the middle of the frame across the picture."""
+        return (column - (self.width - 1) / 2) / self.camera.px_per_mm
+
+    def y_mm(self, row: NDArray[np.float64]) -> NDArray[np.float64]:
+        """Distance from the middle of the frame down the picture."""
+        return (row - (self.height - 1) / 2) / self.camera.y_per_mm
+
+    @property
+    def width_mm(self) -> float:
+        """Width of the frame."""
+        return self.width / self.camera.px_per_mm
+
+    @property
+    def height_mm(self) -> float:
+        """Height of the frame."""
+        return self.height / self.camera.y_per_mm
+
+    def across_ends(
+        self, x_mm: NDArray[np.float64], y_mm: NDArray[np.float64]
+    ) -> NDArray[np.float32]:
+        """Distance at right angles to the ends, on the grid y × x."""
+        turn = math.radians(self.camera.rotation_deg)
+        return _outer_sum(y_mm * math.sin(turn), x_mm * math.cos(turn))
+
+    def across_picks(
+        self, x_mm: NDArray[np.float64], y_mm: NDArray[np.float64]
+    ) -> NDArray[np.float32]:
+        """Distance at right angles to the picks, on the grid y × x; bowed picks bend the axis."""
+        turn = math.radians(self.camera.rotation_deg + self.camera.skew_deg)
+        straight = _outer_sum(y_mm * math.cos(turn), -x_mm * math.sin(turn))
+        if self.camera.bow == 0:
+            return straight
+        share = self.across_ends(x_mm, y_mm) * np.float32(2 / self.width_mm)
+        return straight - np.float32(self.camera.bow * self.width_mm) * (1 - share * share)
+
+    def reach_mm(self) -> tuple[float, float]:
+        """Largest distance from the middle across the ends and across the picks."""
+        x = np.array([-0.5, 0.5]) * self.width_mm
+        y = np.array([-0.5, 0.5]) * self.height_mm
+        bend = abs(self.camera.bow) * self.width_mm * 3
+        return (
+            float(np.abs(self.across_ends(x, y)).max()),
+            float(np.abs(self.across_picks(x, y)).max()) + bend,
+        )
+
+
+def _outer_sum(down: NDArray[np.float64], across: NDArray[np.float64]) -> NDArray[np.float32]:
+    """Add a column to a row."""
+    return down.astype(np.float32)[:, None] + across.astype(np.float32)[None, :]
+
+
+def expose(light: NDArray[np.float32], camera: CameraSpec, rng: Rng) -> NDArray[np.generic]:
+    """Turn what reaches the lens into the stored picture.
+
+    Parameters
+    ----------
+    light : ndarray, shape (rows, columns) or (rows, columns, 3), float32
+        1 is bare light, or a white surface.
+
+    Returns
+    -------
+    ndarray of the same shape, uint8 or uint16
+        The stored values.
+    """
+    across = np.linspace(-1, 1, light.shape[1], dtype=np.float32)
+    down = np.linspace(-1, 1, light.shape[0], dtype=np.float32)
+    field = _light_field(camera, down, across)
+    field = field if light.ndim == 2 else field[..., None]
+    seen = light * field + np.float32(camera.glare * camera.exposure)
+    if camera.blurred_third > 0:
+        soft = cv2.GaussianBlur(seen, (0, 0), camera.blurred_third)
+        share = _third(-across) if light.ndim == 2 else _third(-across)[:, None]
+        seen = seen + share * (soft - seen)
+    seen += _noise(seen, camera, rng)
+    stored = camera.tone.from_linear(np.clip(seen, 0, 1)).astype(np.float32)
+    if camera.sharpening > 0:
+        stored += camera.sharpening * (stored - cv2.GaussianBlur(stored, (0, 0), 1.0))
+    top = (1 << camera.bits) - 1
+    counts = np.rint(np.clip(stored, 0, 1) * top).astype(np.uint8 if top == 255 else np.uint16)
+    return counts if camera.jpeg is None else _through_jpeg(counts, camera.jpeg)
+
+
+def _light_field(
+    camera: CameraSpec, down: NDArray[np.float32], across: NDArray[np.float32]
+) -> NDArray[np.float32]:
+    """Spread the light over the frame, brightest place at the exposure; −1…1 both ways."""
+    radius = 0.5 * (down[:, None] ** 2 + across[None, :] ** 2)
+    field = (1 - camera.falloff * radius) * (1 - abs(camera.tilt) * 0.5)
+    field *= 1 - np.float32(camera.tilt * 0.5) * across[None, :]
+    spot = np.exp(-((down[:, None] + 0.3) ** 2 + (across[None, :] - 0.35) ** 2) / 0.18)
+    field *= 1 + np.float32(camera.hot_spot) * spot
+    field *= np.float32(camera.exposure / field.max())
+    if camera.shadowed_third > 0:
+        field *= 1 - np.float32(camera.shadowed_third) * _third(across)
+    return field.astype(np.float32)
+
+
+def _third(across: NDArray[np.float32]) -> NDArray[np.float32]:
+    """Rise from 0 to 1 where the right third begins."""
+    return (1 / (1 + np.exp(-(across - np.float32(1 / 3)) * 30))).astype(np.float32)
+
+
+def _noise(seen: NDArray[np.float32], camera: CameraSpec, rng: Rng) -> NDArray[np.float32]:
+    """Draw read and photon noise for each pixel and channel."""
+    spread = np.sqrt(camera.read_noise**2 + camera.shot_noise**2 * np.maximum(seen, 0))
+    return np.asarray(rng.standard_normal(seen.shape, dtype=np.float32) * spread, dtype=np.float32)
+
+
+def _through_jpeg(counts: NDArray[np.generic], quality: int) -> NDArray[np.generic]:
+    """Store as JPEG and read back: the picture with the file's own losses."""
+    shown = counts if counts.ndim == 2 else np.ascontiguousarray(counts[..., ::-1])
+    _, data = cv2.imencode(".jpg", shown, [cv2.IMWRITE_JPEG_QUALITY, quality])
+    back = cv2.imdecode(data, cv2.IMREAD_UNCHANGED)
+    return np.asarray(back if counts.ndim == 2 else back[..., ::-1])
+
+
+__all__ = ["CameraSpec", "Frame", "expose"]
