@@ -13,6 +13,8 @@ from numpy.typing import NDArray
 from imgcover.loom.noise import Rng
 from imgcover.tone import SRGB, Tone
 
+Stored = NDArray[np.uint8] | NDArray[np.uint16]
+
 
 @dataclass(frozen=True, slots=True)
 class CameraSpec:
@@ -140,7 +142,8 @@ class Frame:
         if self.camera.bow == 0:
             return straight
         share = self.across_ends(x_mm, y_mm) * np.float32(2 / self.width_mm)
-        return straight - np.float32(self.camera.bow * self.width_mm) * (1 - share * share)
+        bend = np.float32(self.camera.bow * self.width_mm) * (1 - share * share)
+        return np.asarray(straight - bend, dtype=np.float32)
 
     def reach_mm(self) -> tuple[float, float]:
         """Largest distance from the middle across the ends and across the picks."""
@@ -158,7 +161,7 @@ def _outer_sum(down: NDArray[np.float64], across: NDArray[np.float64]) -> NDArra
     return down.astype(np.float32)[:, None] + across.astype(np.float32)[None, :]
 
 
-def expose(light: NDArray[np.float32], camera: CameraSpec, rng: Rng) -> NDArray[np.generic]:
+def expose(light: NDArray[np.float32], camera: CameraSpec, rng: Rng) -> Stored:
     """Turn what reaches the lens into the stored picture.
 
     Parameters
@@ -185,8 +188,11 @@ def expose(light: NDArray[np.float32], camera: CameraSpec, rng: Rng) -> NDArray[
     if camera.sharpening > 0:
         stored += camera.sharpening * (stored - cv2.GaussianBlur(stored, (0, 0), 1.0))
     top = (1 << camera.bits) - 1
-    counts = np.rint(np.clip(stored, 0, 1) * top).astype(np.uint8 if top == 255 else np.uint16)
-    return counts if camera.jpeg is None else _through_jpeg(counts, camera.jpeg)
+    counts = np.rint(np.clip(stored, 0, 1) * top)
+    if camera.bits == 16:
+        return counts.astype(np.uint16)
+    eight = counts.astype(np.uint8)
+    return eight if camera.jpeg is None else _through_jpeg(eight, camera.jpeg)
 
 
 def _light_field(
@@ -206,7 +212,8 @@ def _light_field(
 
 def _third(across: NDArray[np.float32]) -> NDArray[np.float32]:
     """Rise from 0 to 1 where the right third begins."""
-    return (1 / (1 + np.exp(-(across - np.float32(1 / 3)) * 30))).astype(np.float32)
+    risen = 1 / (1 + np.exp(-(across - np.float32(1 / 3)) * 30))
+    return np.asarray(risen, dtype=np.float32)
 
 
 def _noise(seen: NDArray[np.float32], camera: CameraSpec, rng: Rng) -> NDArray[np.float32]:
@@ -215,12 +222,14 @@ def _noise(seen: NDArray[np.float32], camera: CameraSpec, rng: Rng) -> NDArray[n
     return np.asarray(rng.standard_normal(seen.shape, dtype=np.float32) * spread, dtype=np.float32)
 
 
-def _through_jpeg(counts: NDArray[np.generic], quality: int) -> NDArray[np.generic]:
+def _through_jpeg(counts: NDArray[np.uint8], quality: int) -> NDArray[np.uint8]:
     """Store as JPEG and read back: the picture with the file's own losses."""
-    shown = counts if counts.ndim == 2 else np.ascontiguousarray(counts[..., ::-1])
+    shown: NDArray[np.uint8] = np.ascontiguousarray(
+        counts if counts.ndim == 2 else counts[..., ::-1]
+    )
     _, data = cv2.imencode(".jpg", shown, [cv2.IMWRITE_JPEG_QUALITY, quality])
-    back = cv2.imdecode(data, cv2.IMREAD_UNCHANGED)
-    return np.asarray(back if counts.ndim == 2 else back[..., ::-1])
+    back = np.asarray(cv2.imdecode(data, cv2.IMREAD_UNCHANGED), dtype=np.uint8)
+    return back if counts.ndim == 2 else np.ascontiguousarray(back[..., ::-1])
 
 
-__all__ = ["CameraSpec", "Frame", "expose"]
+__all__ = ["CameraSpec", "Frame", "Stored", "expose"]

@@ -83,13 +83,14 @@ def _candidate(system: System, thread: Ints, step: Floats, across: Floats) -> tu
         cv2.INTER_LINEAR,
         borderMode=cv2.BORDER_REPLICATE,
     )
-    return across - place[..., 0], place[..., 1]
+    offset: Floats = np.asarray(across - place[..., 0], dtype=np.float32)
+    return offset, np.asarray(place[..., 1], dtype=np.float32)
 
 
 def _edge(offset: Floats, half: Floats, fine_mm: float) -> Floats:
     """Cover a point by how far it lies inside the thread, over one point's width."""
     inside = (half - np.abs(offset)) * np.float32(1 / fine_mm) + np.float32(0.5)
-    return np.clip(inside, 0, 1)
+    return np.asarray(np.clip(inside, 0, 1))
 
 
 @dataclass(frozen=True, slots=True)

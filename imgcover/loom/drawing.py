@@ -10,7 +10,7 @@ import cv2
 import numpy as np
 from numpy.typing import NDArray
 
-from imgcover.loom.camera import CameraSpec, Frame, expose
+from imgcover.loom.camera import CameraSpec, Frame, Stored, expose
 from imgcover.loom.cloth import ClothSpec
 from imgcover.loom.crossing import Nearest, cross, nearest
 from imgcover.loom.dressing import Loom, dress
@@ -43,7 +43,7 @@ class Drawn:
         Counted from the fine drawing.
     """
 
-    stored: NDArray[np.generic]
+    stored: Stored
     truth: Truth
 
 

@@ -115,12 +115,13 @@ def harm(fault: Fault, frame: Frame, warp: System, weft: System) -> None:
 def _thread(system: System, across_mm: float) -> NDArray[np.float32]:
     """Give the table of the thread nearest to a place: shape (nodes, 2)."""
     centre = system.place[:, system.place.shape[1] // 2, 0]
-    return system.place[int(np.argmin(np.abs(centre - across_mm)))]
+    table: NDArray[np.float32] = system.place[int(np.argmin(np.abs(centre - across_mm)))]
+    return table
 
 
 def _along(system: System) -> NDArray[np.float64]:
     """Give the nodes' places along the threads."""
-    return system.start_mm + np.arange(system.place.shape[1]) * system.node_mm
+    return np.asarray(system.start_mm + np.arange(system.place.shape[1]) * system.node_mm)
 
 
 def _swell(system: System, across_mm: float, along_mm: float, fault: Fault) -> None:
@@ -164,7 +165,7 @@ def creased(
             off = (across[None, :] + np.float32(lean) * down[:, None]) / np.float32(fault.size_mm)
             hill = np.exp(-(off**2))
             bend = -hill if backlit else 1.6 * off * hill
-            total = total * (1 + np.float32(fault.strength) * bend)
+            total = np.asarray(total * (1 + fault.strength * bend), dtype=np.float32)
     return total
 
 

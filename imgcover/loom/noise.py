@@ -84,7 +84,7 @@ class SlowField:
 def _nodes(extent_mm: float, length_mm: float) -> NDArray[np.float64]:
     """Spread nodes a length apart over the extent, and two lengths beyond."""
     count = int(np.ceil(extent_mm / length_mm)) + 5
-    return (np.arange(count) - (count - 1) / 2) * length_mm
+    return np.asarray((np.arange(count) - (count - 1) / 2) * length_mm)
 
 
 __all__ = ["Rng", "SlowField", "along_rows", "over_field"]
