@@ -112,6 +112,8 @@ class Line:
     decision : Decision
     reason : str
         Why, in a sentence.
+    holds : tuple of str
+        What keeps the line undecided whatever its numbers say.
     """
 
     quantity: Quantity
@@ -131,6 +133,7 @@ class Line:
     n: int
     decision: Decision
     reason: str
+    holds: tuple[str, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -216,6 +219,7 @@ def _open_line(aim: Aim, sample: Sample, u: float | None, reason: str) -> Line:
         n=sample.n,
         decision=Decision.UNDECIDED,
         reason=reason,
+        holds=sample.holds,
     )
 
 
