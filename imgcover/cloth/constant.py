@@ -60,7 +60,7 @@ def combined(
     result : callable
         The result for constants given by name; those left out keep their value.
     constants : iterable of Constant
-        Those it may depend on; a name met twice counts once.
+        Those it may depend on; a name met twice counts once, with its larger u.
     unit : str
         Of the result.
 
@@ -69,7 +69,7 @@ def combined(
     tuple of (Measured, tuple of Effect)
         The result and its budget, largest effect first, without effects of exactly zero.
     """
-    uncertain = {each.name: each for each in constants if each.u > 0}
+    uncertain = {each.name: each for each in sorted(constants, key=lambda c: c.u) if each.u > 0}
     effects = [
         Effect(name, each.source, _half_difference(result, each))
         for name, each in uncertain.items()

@@ -9,6 +9,7 @@ from imgcover.cloth.constant import Constant
 from imgcover.cloth.count import Count
 from imgcover.cloth.declaration import Declaration, State, WarpThreads, WeftThreads
 from imgcover.cloth.diameter import (
+    PEIRCE_PACKING,
     ROUND,
     Section,
     peirce_yarn_density,
@@ -87,9 +88,13 @@ class Threads:
         """Width and height in the cloth, mm."""
         return race_track(self.diameter(drawn), self.flattening.at(drawn))
 
+    def closeness(self, drawn: Mapping[str, float]) -> float:
+        """Width over spacing; past 1 where the yarns overlap or lie pressed together."""
+        return self.section(drawn).width * self.sett.per_mm
+
     def fraction(self, drawn: Mapping[str, float]) -> float:
-        """Width over spacing, at most 1."""
-        return min(1.0, self.section(drawn).width * self.sett.per_mm)
+        """Width over spacing, at most 1: what the threads cover."""
+        return min(1.0, self.closeness(drawn))
 
     def mass(self, drawn: Mapping[str, float]) -> float:
         """Mass in g/m²."""
@@ -170,7 +175,7 @@ def _threads(
     else:
         said.append(f"{name}: flattened to {flattening.value:g} times as wide as high")
     crimp = _crimp(name, declared.crimp, findings)
-    size = _size(declared, state, said)
+    size = _size(name, declared, state, said)
     return Threads(
         name,
         declared.threads,
@@ -197,6 +202,8 @@ def _body(
     is_cotton = declared.fibre is None or declared.fibre.name == "cotton"
     if is_cotton and declared.packing is None and declared.spinning is None:
         said.append(f"{name}: diameter by Peirce, 1/(28 √Ne) in")
+        if declared.count.filaments is not None:
+            findings.append(_filament_as_cotton(name))
         return peirce_yarn_density(), EXACT, "peirce"
     density = declared.fibre.density if declared.fibre else _COTTON
     packing = _packing(name, declared, findings)
@@ -207,10 +214,19 @@ def _body(
     return density, packing, "general"
 
 
-_PACKING_SHARE = PACKING_U / 0.60
+_PACKING_SHARE = PACKING_U / PEIRCE_PACKING
+"""Relative u of a yarn's own density, as that of a spun yarn's packing."""
 _COTTON = Constant(
     "fibre density of cotton", 1.52, DENSITY_SPREAD * 1.52, "Morton & Hearle, table 5.1, 65 % r.h."
 )
+
+
+def _filament_as_cotton(name: str) -> Finding:
+    return found(
+        Flag.PACKING_ASSUMED,
+        f"the {name} is a filament yarn of no declared fibre; Peirce's cotton yarn was taken",
+        f"write fibre in [{name}]",
+    )
 
 
 def _packing(name: str, declared: WeftThreads, findings: list[Finding]) -> Constant:
@@ -252,14 +268,14 @@ def _crimp(name: str, stated: Stated | None, findings: list[Finding]) -> Constan
     return Constant(f"{name} crimp", (low + high) / 2, u, "not declared: 1 to 14 %")
 
 
-def _size(declared: WeftThreads, state: State | None, said: list[str]) -> Constant:
+def _size(name: str, declared: WeftThreads, state: State | None, said: list[str]) -> Constant:
     stated = declared.size if isinstance(declared, WarpThreads) else None
     if stated is None:
-        return Constant("size", 0.0, 0.0, "none")
+        return Constant(f"{name} size", 0.0, 0.0, "none")
     if state is State.FINISHED:
         said.append("warp: size is washed out of a finished cloth and was not counted")
-        return Constant("size", 0.0, 0.0, "washed out")
-    return Constant("size", stated.value, stated.u_of_writing, "declared, as rounded")
+        return Constant(f"{name} size", 0.0, 0.0, "washed out")
+    return Constant(f"{name} size", stated.value, stated.u_of_writing, "declared, as rounded")
 
 
 def _finish(declaration: Declaration) -> tuple[Constant, tuple[Finding, ...]]:

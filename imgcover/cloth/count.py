@@ -146,6 +146,12 @@ class Count:
         folded = single if len(self.singles_tex) > 1 else f"{self.plies} × {single}"
         return f"read as {folded}, resultant {resultant} = {other}"
 
+    def times(self, factor: float) -> Count:
+        """The same yarn made coarser by a factor: a hypothesis, no longer the declared one."""
+        singles = tuple(tex * factor for tex in self.singles_tex)
+        text = f"{self.text} × {factor:.4g}"
+        return replace(self, tex=self.tex * factor, singles_tex=singles, text=text)
+
     @property
     def _tex_said(self) -> str:
         return f"{self.tex:.3g} tex" if self.tex < 1000 else f"{self.tex:.0f} tex"
@@ -246,7 +252,7 @@ def _read_hanks(
     if resultant or written["f"] or (written["b"] and written["slash"]):
         raise StatementError(
             f'"{text}" mixes notations: R belongs to tex, f to filament yarns',
-            f'write "2/40 {system.label}", or "40 {system.label}" and plies = 2',
+            f'write "2/40 {system.label}" where two 40s are folded',
         )
     if stroke is None:
         if written["x"] and system is CountSystem.SPUN_SILK:

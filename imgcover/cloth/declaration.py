@@ -95,6 +95,16 @@ class WeftThreads(_Table):
         plies = info.data.get("plies")
         return count if plies is None else count.folded(plies)
 
+    @field_validator("yarn_density", mode="after")
+    @classmethod
+    def _one_way(cls, density: Stated | None, info: Any) -> Stated | None:
+        if density is not None and (info.data.get("packing") or info.data.get("spinning")):
+            raise StatementError(
+                "a yarn density already holds the packing, which is declared too",
+                "give yarn_density, or packing, or spinning",
+            )
+        return density
+
 
 class WarpThreads(WeftThreads):
     """The warp as declared: the weft's keys, and the size it was woven with."""

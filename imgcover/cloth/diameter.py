@@ -16,7 +16,7 @@ from imgcover.cloth.constant import Constant
 from imgcover.cloth.count import CountSystem
 from imgcover.cloth.fibre import PACKING_U
 from imgcover.cloth.sett import MM_PER_INCH
-from imgcover.cloth.stated import StatementError, as_text, read_figure
+from imgcover.cloth.stated import StatementError, as_text, read_figure, surely_positive
 
 PEIRCE = 28.0
 """Diameters an inch of a 1s cotton yarn (Peirce 1937); an inch-and-Ne number, never with tex."""
@@ -97,7 +97,7 @@ def read_flattening(value: object) -> Constant:
         return ROUND
     if isinstance(value, str):
         value = as_text(value, "race-track 1.4").lower().removeprefix("race-track").strip()
-    stated = read_figure(value, units={"": 1.0}, example="1.4 u 0.1")
+    stated = surely_positive(read_figure(value, units={"": 1.0}, example="1.4 u 0.1"))
     if not 1 <= stated.value <= MOST_FLATTENED:
         raise StatementError(
             f"expected width over height from 1 to {MOST_FLATTENED:g}, got {stated.text}",
@@ -113,6 +113,7 @@ __all__ = [
     "FLATTENING_U",
     "MOST_FLATTENED",
     "PEIRCE",
+    "PEIRCE_PACKING",
     "PEIRCE_YARN_DENSITY",
     "ROUND",
     "Section",

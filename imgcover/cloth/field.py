@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from imgcover.cloth.stated import Stated, StatementError, read_figure
+from imgcover.cloth.stated import Stated, StatementError, read_figure, surely_positive
 from imgcover.cloth.tolerance import MASS_UNITS
 from imgcover.quantity import Measured
 from imgcover.weave import weave
@@ -81,14 +81,15 @@ def read_finish_change(value: object) -> Stated:
 def read_packing(value: object) -> Stated:
     """Read a packing: fibre volume in yarn volume."""
     stated = read_figure(value, units={"": 1.0}, example="0.60 u 0.05")
-    return _bounded(stated, 0.1, 1.0, "a packing from 0.1 to 1")
+    return surely_positive(_bounded(stated, 0.1, 1.0, "a packing from 0.1 to 1"))
 
 
 def read_yarn_density(value: object) -> Stated:
     """Read a yarn's own density, air included, in g/cm³."""
     units = {"g/cm3": 1.0, "kg/m3": 0.001}
     stated = read_figure(value, units=units, example="0.91 g/cm3")
-    return _bounded(stated, 0.05, 8.0, "a yarn density from 0.05 to 8 g/cm3")
+    expected = "a yarn density from 0.05 to 8 g/cm3"
+    return surely_positive(_bounded(stated, 0.05, 8.0, expected))
 
 
 def read_cover(value: object) -> float:

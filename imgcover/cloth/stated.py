@@ -12,9 +12,8 @@ from dataclasses import dataclass
 
 NUMBER = r"[+-]?(?:\d+(?:\.\d*)?|\.\d+)"
 """No exponents: nobody writes a sett as 6.8e1, and a stray e should not pass for one."""
-
-_FIGURE = re.compile(rf"(?P<value>{NUMBER})\s*(?P<unit>[^\d\s+-].*?)?(?:\s+u\s+(?P<u>{NUMBER}).*)?")
-_UNCERTAINTY = re.compile(rf"^(?P<main>.*\S)\s+u\s*(?P<u>{NUMBER})\s*(?P<unit>\S.*)?$")
+LEAST_VALUE_OVER_U = 3.0
+"""Below three u a positive figure is not told from zero."""
 
 
 class StatementError(ValueError):
@@ -124,20 +123,28 @@ def read_figure(value: object, *, units: Mapping[str, float], example: str) -> S
     if "" in units and isinstance(value, int | float) and not isinstance(value, bool):
         value = f"{value}"
     text = as_text(value, example)
-    split = _UNCERTAINTY.match(text)
-    if split is None:
-        return _read_number(text, units=units, example=example)
-    main = _read_number(split["main"], units=units, example=example)
-    unit_text = split["unit"]
-    written = split["u"] if unit_text is None else f"{split['u']} {unit_text}"
-    if unit_text is None and main.text != split["main"].strip():
-        raise AssertionError("the text of a figure is what was written")
-    u = _read_number(
-        written if unit_text is not None else f"{split['u']} {_unit_of(split['main'])}".strip(),
-        units=units,
-        example=example,
-    )
-    return _with_u(main, u.value, text, example)
+    main_text, *u_texts = re.split(r"\s+u\s+", text, maxsplit=1)
+    main = _read_number(main_text, units=units, example=example)
+    if not u_texts:
+        return main
+    bare = re.fullmatch(NUMBER, u_texts[0])
+    u_text = f"{u_texts[0]} {_unit_of(main_text)}".strip() if bare else u_texts[0]
+    return _with_u(main, _read_number(u_text, units=units, example=example).value, text, example)
+
+
+def surely_positive(stated: Stated) -> Stated:
+    """Refuse a u so large that the figure could be zero: nothing can be predicted from it.
+
+    Raises
+    ------
+    StatementError
+        When u passes a third of the figure.
+    """
+    if stated.u is not None and stated.u > stated.value / LEAST_VALUE_OVER_U:
+        raise StatementError(
+            f'expected a u of at most a third of the figure, got "{stated.text}"', "check u"
+        )
+    return stated
 
 
 def _with_u(main: Stated, u: float, text: str, example: str) -> Stated:
@@ -161,8 +168,7 @@ def _read_table(table: dict[object, object], *, units: Mapping[str, float], exam
 
 
 def _unit_of(text: str) -> str:
-    found = re.fullmatch(rf"{NUMBER}\s*(.*)", text)
-    return found[1].strip() if found else ""
+    return re.sub(rf"^{NUMBER}\s*", "", text)
 
 
 def _read_number(text: str, *, units: Mapping[str, float], example: str) -> Stated:
@@ -191,4 +197,12 @@ def _kind(value: object) -> str:
     return names.get(type(value), f"a {type(value).__name__}")
 
 
-__all__ = ["NUMBER", "Stated", "StatementError", "as_text", "read_figure", "tidy"]
+__all__ = [
+    "NUMBER",
+    "Stated",
+    "StatementError",
+    "as_text",
+    "read_figure",
+    "surely_positive",
+    "tidy",
+]

@@ -75,9 +75,7 @@ def weaving_limit(cloth: Construction) -> tuple[WeavingLimit | None, tuple[Findi
     """
     if cloth.weave is None:
         return None, ()
-    drafted = weave(cloth.weave)
-    across, down = drafted.intersections
-    floats = (drafted.ends_repeat / across, drafted.picks_repeat / down)
+    floats = _mean_floats(cloth.weave)
     tightness, _ = combined(
         lambda drawn: _tightness(cloth, floats, drawn), cloth.constants, unit="1"
     )
@@ -127,6 +125,20 @@ def jam(
         curved = crossing - (yarn.width - yarn.height)
         total += math.sqrt(1 - min(1.0, max(0.0, curved / both)) ** 2)
     return total
+
+
+def tightness_of(cloth: Construction, drawn: Mapping[str, float]) -> float | None:
+    """Both setts as a share of the jammed setts; None where no weave is declared."""
+    if cloth.weave is None:
+        return None
+    return _tightness(cloth, _mean_floats(cloth.weave), drawn)
+
+
+def _mean_floats(name: str) -> tuple[float, float]:
+    """Threads an intersection: across the ends, and along them."""
+    drafted = weave(name)
+    across, down = drafted.intersections
+    return drafted.ends_repeat / across, drafted.picks_repeat / down
 
 
 def _tightness(
@@ -194,5 +206,6 @@ __all__ = [
     "ashenhurst_sett",
     "brierley_sett",
     "jam",
+    "tightness_of",
     "weaving_limit",
 ]
