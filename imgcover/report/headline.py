@@ -1,0 +1,114 @@
+"""The inspector's question, answered in one line: is this the cloth on the paper?"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from typing import Any
+
+from imgcover.report.layout import WIDTH, Units, near, shown_as
+from imgcover.report.plain import columns, plain, shortened
+
+LONGEST_NAME = 30
+"""Columns a picture's or lot's name may take of the first line."""
+NAMES = {"ends": "ends", "picks": "picks", "cover": "cover", "mass": "mass"}
+
+
+def headline(record: Mapping[str, Any], *, units: Units) -> str:
+    """Say the decision and what it rests on, within one terminal line.
+
+    Parameters
+    ----------
+    record : mapping
+        A picture's record, or a lot's.
+    units : {"inch", "cm"}
+        Of the densities.
+    """
+    name = shortened(plain(_name(record)), LONGEST_NAME)
+    decision, why = _decided(record, units)
+    line = f"{name} {decision}: {why}"
+    return line if columns(line) <= WIDTH else shortened_end(line)
+
+
+def shortened_end(line: str) -> str:
+    """Cut a line where it would leave the terminal."""
+    kept = line
+    while columns(kept) > WIDTH - 1:
+        kept = kept[:-1]
+    return kept.rstrip(" ,;") + "…"
+
+
+def _name(record: Mapping[str, Any]) -> str:
+    if "picture" in record:
+        return str(record["picture"]["name"])
+    return f"lot {record['lot']}"
+
+
+def _decided(record: Mapping[str, Any], units: Units) -> tuple[str, str]:
+    verdict = record["verdict"] if "picture" in record else record
+    if verdict is None or verdict.get("decision") is None:
+        return _measured(record, units)
+    if verdict["decision"] != "conforms" and _nothing_measured(record):
+        return "undecided", _refusal(record)
+    lines: Sequence[Mapping[str, Any]] = verdict["lines"]
+    deciding = [line for line in lines if line["decision"] == verdict["decision"]]
+    if verdict["decision"] == "conforms":
+        return "conforms", f"{_listed([NAMES[line['quantity']] for line in lines])} as declared"
+    said = [_short(line, units) for line in deciding]
+    return str(verdict["decision"]), "; ".join(said) or "nothing could be judged"
+
+
+def _nothing_measured(record: Mapping[str, Any]) -> bool:
+    return "picture" in record and record["threads"] is None and record["cover"] is None
+
+
+def _measured(record: Mapping[str, Any], units: Units) -> tuple[str, str]:
+    """What was seen, where nothing was declared to hold it against."""
+    threads, cover = record.get("threads"), record.get("cover")
+    parts = []
+    for key in ("ends", "picks"):
+        value = None if threads is None else threads[key]
+        if value is not None:
+            parts.append(f"{_density(value, units)} {key}")
+    said = " × ".join(parts) + (f" {shown_as('1/cm', units).unit}" if parts else "")
+    if cover is not None and cover["optical"] is not None:
+        percent = near(100 * cover["optical"]["value"], 100 * cover["optical"]["u"])
+        said = f"{said}, cover {percent} %" if said else f"cover {percent} %"
+    return ("measured", said) if said else ("not measured", _refusal(record))
+
+
+def _density(value: Mapping[str, Any], units: Units) -> str:
+    factor = shown_as("1/cm", units).factor
+    return near(value["value"] * factor, value["u"] * factor)
+
+
+def _refusal(record: Mapping[str, Any]) -> str:
+    findings: Sequence[Mapping[str, str]] = record["findings"]
+    refused = [each["message"] for each in findings if each["severity"] == "refusal"]
+    return plain(refused[0]) if refused else "neither ends nor picks could be read"
+
+
+def _short(line: Mapping[str, Any], units: Units) -> str:
+    """One judged figure in a few words."""
+    name = NAMES[line["quantity"]]
+    how = shown_as(line["unit"], units)
+    if line["measured"] is None:
+        return f"{name} not measured"
+    u = line["u"] * how.factor
+    seen = f"{name} {near(line['measured'] * how.factor, u)} {how.unit}"
+    against = f"{line['basis']} {near(line['declared'] * how.factor, u)}"
+    if line["decision"] == "does not conform":
+        return f"{seen}, {against}"
+    if line["holds"]:
+        return f"{seen}, held open"
+    if line["lower"] is None and line["upper"] is None:
+        return f"{seen}, {against}, no tolerance declared"
+    return f"{seen} too near its limits to prove"
+
+
+def _listed(names: Sequence[str]) -> str:
+    if len(names) == 1:
+        return names[0]
+    return f"{', '.join(names[:-1])} and {names[-1]}"
+
+
+__all__ = ["headline"]
