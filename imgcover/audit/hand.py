@@ -21,12 +21,9 @@ FINISHED = "finished"
 FAULTED = "faulted"
 NO_MEMORY = "no memory"
 
-ONE_THREAD = dict.fromkeys(
-    (
-        *("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS"),
-        *("NUMEXPR_NUM_THREADS", "VECLIB_MAXIMUM_THREADS", "BLIS_NUM_THREADS"),
-    ),
-    "1",
+THREAD_SETTINGS = (
+    *("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS"),
+    *("NUMEXPR_NUM_THREADS", "VECLIB_MAXIMUM_THREADS", "BLIS_NUM_THREADS"),
 )
 """One process a core: libraries that start threads of their own would only queue for it."""
 CLOSING_S = 2.0
@@ -93,8 +90,8 @@ class Hand:
 
 @contextlib.contextmanager
 def _one_thread() -> Iterator[None]:
-    before = {name: os.environ.get(name) for name in ONE_THREAD}
-    os.environ.update(ONE_THREAD)
+    before = {name: os.environ.get(name) for name in THREAD_SETTINGS}
+    os.environ.update(dict.fromkeys(THREAD_SETTINGS, "1"))
     try:
         yield
     finally:
