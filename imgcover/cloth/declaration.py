@@ -1,6 +1,18 @@
 """What does the supplier's sheet declare? Reads an article file (TOML) whole, or refuses it.
 
-Every refusal names the key by its path, what was expected, and the nearest valid spelling.
+Every refusal names the key by its path, what was expected, and the nearest valid spelling. A figure
+with an uncertainty is written as one text, "0.812 u 0.004", or as { value = 0.812, u = 0.004 }.
+
+    [article]    code; description, weave, state ("grey" or "finished")
+    [warp]       threads, count; plies, fibre, spinning, crimp, size, packing, yarn_density,
+                 flattening
+    [weft]       the same without size
+    [tolerance]  ends, picks, cover, mass
+    [cover]      declared
+    [mass]       declared, finish_change
+    [reference]  optical_cover, warp_cover, weft_cover, source
+
+What stands before the semicolon must be there; so must the first three tables.
 """
 
 from __future__ import annotations
@@ -60,7 +72,9 @@ def _read_state(value: object) -> State:
     try:
         return State(str(value))
     except ValueError:
-        raise StatementError(f'expected "grey" or "finished", got {value!r}', "write one") from None
+        raise StatementError(
+            f'expected "grey" or "finished", got {value!r:.40}', 'write state = "grey"'
+        ) from None
 
 
 class _Table(BaseModel):
@@ -215,13 +229,18 @@ def read_declaration(source: Path | bytes, *, name: str | None = None) -> Declar
 
 def _read_bytes(path: Path, shown: str) -> bytes:
     try:
-        if path.stat().st_size > LARGEST_FILE:
-            raise DeclarationError(shown, "too large for an article file", "name the TOML file")
-        return path.read_bytes()
-    except OSError as error:
+        if not path.is_file() and path.exists():
+            raise DeclarationError(shown, "is not a file", "name the TOML file")
+        with path.open("rb") as file:
+            content = file.read(LARGEST_FILE + 1)
+    except (OSError, ValueError) as error:
+        reason = getattr(error, "strerror", None) or error
         raise DeclarationError(
-            shown, f"cannot be read ({error.strerror})", "check the path and its permissions"
+            shown, f"cannot be read ({reason})", "check the path and its permissions"
         ) from None
+    if len(content) > LARGEST_FILE:
+        raise DeclarationError(shown, "too large for an article file", "name the TOML file")
+    return content
 
 
 def _parse(content: bytes, shown: str) -> dict[str, Any]:
@@ -236,7 +255,8 @@ def _parse(content: bytes, shown: str) -> dict[str, Any]:
 
 
 def _refused(errors: list[ErrorDetails], shown: str) -> DeclarationError:
-    first = errors[0]
+    # a misspelled key is also a missing one: what was written tells more than what was not
+    first = min(errors, key=lambda error: error["type"] != "extra_forbidden")
     path = ".".join(str(part) for part in first["loc"])
     fault, remedy = _words(first)
     if len(errors) > 1:

@@ -13,7 +13,7 @@ import math
 from dataclasses import dataclass
 
 from imgcover.cloth.constant import Constant
-from imgcover.cloth.count import CountSystem
+from imgcover.cloth.count_system import CountSystem
 from imgcover.cloth.fibre import PACKING_U
 from imgcover.cloth.sett import MM_PER_INCH
 from imgcover.cloth.stated import StatementError, as_text, read_figure, surely_positive

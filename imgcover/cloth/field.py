@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from imgcover.cloth.stated import Stated, StatementError, read_figure, surely_positive
+from imgcover.cloth.stated import Stated, StatementError, read_figure, surely_positive, without_u
 from imgcover.cloth.tolerance import MASS_UNITS
 from imgcover.quantity import Measured
 from imgcover.weave import weave
@@ -22,7 +22,8 @@ def read_text(value: object) -> str:
         raise StatementError(f"expected text, got {value!r:.40}", "write it in quotes")
     if not value.isprintable() or len(value) > LONGEST_TEXT:
         raise StatementError(
-            f"expected one line of at most {LONGEST_TEXT} plain characters", "shorten it"
+            f"expected one line of at most {LONGEST_TEXT} characters, none of them a control",
+            "correct it",
         )
     return value
 
@@ -94,13 +95,13 @@ def read_yarn_density(value: object) -> Stated:
 
 def read_cover(value: object) -> float:
     """Read a covered fraction."""
-    stated = read_figure(value, units={"": 1.0, "%": 0.01}, example="0.84")
+    stated = without_u(read_figure(value, units={"": 1.0, "%": 0.01}, example="0.84"))
     return _bounded(stated, 0.0, 1.0, "a covered fraction from 0 to 1").value
 
 
 def read_mass(value: object) -> float:
     """Read a mass in g/m2."""
-    stated = read_figure(value, units=MASS_UNITS, example="118 g/m2")
+    stated = without_u(read_figure(value, units=MASS_UNITS, example="118 g/m2"))
     return _bounded(stated, LIGHTEST, HEAVIEST, "a mass from 5 to 3000 g/m2").value
 
 

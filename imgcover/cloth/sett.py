@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from imgcover.cloth.stated import Stated, StatementError, read_figure
+from imgcover.cloth.stated import StatementError, read_figure, without_u
 
 MM_PER_INCH = 25.4
 
@@ -77,7 +77,7 @@ def read_sett(value: object) -> Sett:
     >>> read_sett("68 /in").said
     'read as 68 /in = 26.77 /cm'
     """
-    stated: Stated = read_figure(value, units=PER_MM, example="68 /in")
+    stated = without_u(read_figure(value, units=PER_MM, example="68 /in"))
     if not FEWEST_PER_MM <= stated.value <= MOST_PER_MM:
         low, high = 10 * FEWEST_PER_MM, 10 * MOST_PER_MM
         raise StatementError(

@@ -9,6 +9,7 @@ from __future__ import annotations
 import re
 from collections.abc import Mapping
 from dataclasses import dataclass
+from decimal import Decimal
 
 NUMBER = r"[+-]?(?:\d+(?:\.\d*)?|\.\d+)"
 """No exponents: nobody writes a sett as 6.8e1, and a stray e should not pass for one."""
@@ -121,7 +122,7 @@ def read_figure(value: object, *, units: Mapping[str, float], example: str) -> S
     if isinstance(value, dict):
         return _read_table(value, units=units, example=example)
     if "" in units and isinstance(value, int | float) and not isinstance(value, bool):
-        value = f"{value}"
+        value = f"{Decimal(str(value)):f}"  # never with an exponent, as in 1e-06
     text = as_text(value, example)
     main_text, *u_texts = re.split(r"\s+u\s+", text, maxsplit=1)
     main = _read_number(main_text, units=units, example=example)
@@ -130,6 +131,22 @@ def read_figure(value: object, *, units: Mapping[str, float], example: str) -> S
     bare = re.fullmatch(NUMBER, u_texts[0])
     u_text = f"{u_texts[0]} {_unit_of(main_text)}".strip() if bare else u_texts[0]
     return _with_u(main, _read_number(u_text, units=units, example=example).value, text, example)
+
+
+def without_u(stated: Stated) -> Stated:
+    """Refuse a u where the declared figure itself is the aim: it is not a measurement.
+
+    Raises
+    ------
+    StatementError
+        When a u was written.
+    """
+    if stated.u is not None:
+        raise StatementError(
+            f'expected the declared figure alone, got "{stated.text}"',
+            "how far it may stray is written in [tolerance]",
+        )
+    return stated
 
 
 def surely_positive(stated: Stated) -> Stated:
@@ -205,4 +222,5 @@ __all__ = [
     "read_figure",
     "surely_positive",
     "tidy",
+    "without_u",
 ]

@@ -18,7 +18,8 @@ from dataclasses import dataclass
 
 from imgcover.cloth.constant import combined
 from imgcover.cloth.construction import Construction, Threads
-from imgcover.cloth.count import GRAMS_PER_POUND, METRES_PER_YARD, Count
+from imgcover.cloth.count import Count
+from imgcover.cloth.count_system import GRAMS_PER_POUND, METRES_PER_YARD
 from imgcover.cloth.diameter import Section
 from imgcover.cloth.sett import MM_PER_INCH
 from imgcover.findings import Finding, Flag, found
