@@ -3,14 +3,19 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Mapping
 
 from imgcover.cloth.declaration import Declaration
 from imgcover.cloth.prediction import Prediction
 from imgcover.findings import Finding, Flag, Severity, found
 from imgcover.quantity import Measured, rounded
 from imgcover.verdict.aims import aims
+from imgcover.verdict.decision import Decision
+from imgcover.verdict.diagnosis import diagnose
+from imgcover.verdict.evidence import evidence_of
 from imgcover.verdict.line import Quantity, Sample, judge_line
 from imgcover.verdict.observed import Observed, Spread
+from imgcover.verdict.sheet import sheet_of
 from imgcover.verdict.standing import holds
 from imgcover.verdict.verdict import Scope, Verdict, whole
 
@@ -43,26 +48,62 @@ def judge(
     Verdict
         With scope swatch: one place never decides a lot.
     """
-    samples = {
+    values = {
         Quantity.ENDS: _of_cloth(observed.ends, observed.ends_spread),
         Quantity.PICKS: _of_cloth(observed.picks, observed.picks_spread),
         Quantity.COVER: observed.cover,
         Quantity.MASS: observed.gsm,
     }
+    samples = {
+        q: Sample(v, holds=holds(observed.flags, q), missing=why_missing(q, observed.flags))
+        for q, v in values.items()
+    }
+    return judge_samples(
+        declaration, prediction, samples, observed, scope=Scope.SWATCH, findings=(), risk=risk
+    )
+
+
+def judge_samples(
+    declaration: Declaration,
+    prediction: Prediction,
+    samples: Mapping[Quantity, Sample],
+    observed: Observed,
+    *,
+    scope: Scope,
+    findings: tuple[Finding, ...],
+    risk: float | None,
+) -> Verdict:
+    """Judge what a swatch or a lot gave: lines, findings, diagnosis, and the whole.
+
+    Parameters
+    ----------
+    declaration, prediction
+        As in `judge`.
+    samples : mapping of Quantity to Sample
+        One for every quantity.
+    observed : Observed
+        The same, for the diagnosis.
+    scope : Scope
+    findings : tuple of Finding
+        Those that are already there.
+    risk : float or None
+    """
     lines = tuple(
-        judge_line(aim, _sample(quantity, samples[quantity], observed.flags), risk=risk)
+        judge_line(aim, samples[quantity], risk=risk)
         for quantity, aim in aims(declaration, prediction).items()
-        if is_asked(quantity, samples[quantity], aim.limits is not None)
+        if is_asked(quantity, samples[quantity].value, aim.limits is not None)
     )
-    findings = tuple(
-        finding
-        for finding in (
-            cover_finding(observed.cover, prediction.cover),
-            mass_finding(declaration, observed.gsm),
-        )
-        if finding is not None
+    more = (
+        cover_finding(observed.cover, prediction.cover),
+        mass_finding(declaration, observed.gsm),
     )
-    return whole(Scope.SWATCH, lines, (), findings)
+    diagnosis = diagnose(
+        sheet_of(declaration),
+        evidence_of(observed),
+        risk=risk,
+        failed=any(line.decision is Decision.DOES_NOT_CONFORM for line in lines),
+    )
+    return whole(scope, lines, diagnosis, (*findings, *(f for f in more if f is not None)))
 
 
 def is_asked(quantity: Quantity, value: Measured | None, has_limits: bool) -> bool:
@@ -108,10 +149,6 @@ def _of_cloth(field: Measured | None, spread: Spread) -> Measured | None:
     return Measured(field.value, math.hypot(field.u, field.value * spread.u_relative), field.unit)
 
 
-def _sample(quantity: Quantity, value: Measured | None, flags: frozenset[Flag]) -> Sample:
-    return Sample(value, holds=holds(flags, quantity), missing=why_missing(quantity, flags))
-
-
 def why_missing(quantity: Quantity, flags: frozenset[Flag]) -> str:
     """Say why a quantity has no value, in the words of the findings that refused it."""
     of_cover = {Flag.LIGHT_NOT_STATED, Flag.COVER_NEEDS_BACKLIGHT}
@@ -122,4 +159,4 @@ def why_missing(quantity: Quantity, flags: frozenset[Flag]) -> str:
     return "; ".join(reasons) or "it could not be measured"
 
 
-__all__ = ["cover_finding", "is_asked", "judge", "mass_finding", "why_missing"]
+__all__ = ["judge", "judge_samples", "why_missing"]
