@@ -22,7 +22,7 @@ from imgcover.loom.truth import LINES, Lines, Tally, Truth, count
 
 Floats = NDArray[np.float32]
 
-FINE_A_PITCH = 30
+FINE_A_PITCH = 24
 """Fine points across a thread pitch, at least: edges fade over one point, and the covered share
 is then true to 0.02 points (tests/loom/test_loom_truth.py)."""
 BAND_POINTS = 4_000_000

@@ -54,15 +54,10 @@ def surface(fibres: Fibres, thread: Nearest, along: Floats, diameter_mm: float) 
     own = thread.thread.astype(np.float32)
     x = run + side * np.float32(SLANT) + own * np.float32(97.3)
     y = side - run * np.float32(SLANT) + own * np.float32(41.7)
-    return np.asarray(
-        cv2.remap(
-            fibres.tile,
-            np.mod(x, TILE),
-            np.mod(y, TILE),
-            cv2.INTER_LINEAR,
-            borderMode=cv2.BORDER_WRAP,
-        )
-    )
+    for each in (x, y):
+        each -= np.float32(TILE) * np.floor(each * np.float32(1 / TILE))
+    seen = cv2.remap(fibres.tile, x, y, cv2.INTER_LINEAR, borderMode=cv2.BORDER_WRAP)
+    return np.asarray(seen, dtype=np.float32)
 
 
 def through(

@@ -63,6 +63,15 @@ class Truth:
     largest_pore: float
     corners: tuple[tuple[float, float], ...]
 
+    @property
+    def upright(self) -> tuple[float, float]:
+        """Threads per mm of the set nearest to the vertical, and of the other.
+
+        On a swatch laid a quarter turn round these are picks and ends.
+        """
+        turned = abs(self.angle) > 45
+        return (self.picks, self.ends) if turned else (self.ends, self.picks)
+
 
 @dataclass(frozen=True, slots=True)
 class Lines:
