@@ -35,7 +35,7 @@ class ImgcoverError(Exception):
         self.remedy = remedy
 
     def __str__(self) -> str:
-        return f"{self.where}: {self.fault}. {self.remedy}"
+        return f"{self.where}: {self.fault}; {self.remedy}"
 
 
 class PictureError(ImgcoverError):

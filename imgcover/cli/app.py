@@ -7,7 +7,7 @@ from typing import Annotated
 import typer
 
 from imgcover import __version__
-from imgcover.cli import measure
+from imgcover.cli import measure, predict
 
 EPILOG = "Exit codes, findings and what no picture can tell: README.md."
 
@@ -25,6 +25,7 @@ def assembled() -> typer.Typer:
     )
     app.callback()(_top)
     app.command("measure", epilog=measure.EXAMPLES)(measure.measure)
+    app.command("predict", epilog=predict.EXAMPLES)(predict.predict)
     return app
 
 

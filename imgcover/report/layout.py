@@ -1,4 +1,4 @@
-"""Text for people: numbers rounded by their u, tables in columns, lines no longer than a terminal."""
+"""Text for people: numbers rounded by their u, columns, no line longer than a terminal."""
 
 from __future__ import annotations
 
@@ -78,9 +78,19 @@ def table(rows: Sequence[Sequence[str]], *, indent: int = 2, gap: int = 2) -> li
     return lines
 
 
+def facts(rows: Sequence[tuple[str, str]], *, indent: int = 2) -> list[str]:
+    """Set names and what is said of them in two columns, the second wrapped."""
+    width = max(columns(name) for name, _ in rows) + 2
+    lines = []
+    for name, said in rows:
+        first = " " * indent + name + " " * (width - columns(name))
+        lines += wrapped(said, first=first, then=" " * (indent + width))
+    return lines
+
+
 def wrapped(text: str, *, first: str = "  ", then: str = "    ") -> list[str]:
     """Break a sentence into lines that fit; words longer than a line are cut."""
     return textwrap.wrap(text, WIDTH, initial_indent=first, subsequent_indent=then)
 
 
-__all__ = ["WIDTH", "Shown", "Units", "figure", "near", "shown_as", "table", "wrapped"]
+__all__ = ["WIDTH", "Shown", "Units", "facts", "figure", "near", "shown_as", "table", "wrapped"]

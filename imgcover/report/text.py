@@ -6,7 +6,7 @@ from collections.abc import Mapping, Sequence
 from typing import Any
 
 from imgcover.report.headline import headline
-from imgcover.report.layout import Units, figure, near, shown_as, table, wrapped
+from imgcover.report.layout import Units, facts, figure, near, shown_as, table, wrapped
 from imgcover.report.plain import plain
 
 SUSPECTS_SHOWN = 3
@@ -32,7 +32,7 @@ def record_text(record: Mapping[str, Any], *, units: Units) -> str:
     lines += _numbers(record, units)
     lines += _why(record["verdict"], units)
     lines += _diagnosis(record["verdict"])
-    lines += _findings(record["findings"])
+    lines += findings_text(record["findings"])
     return "\n".join(lines).rstrip() + "\n"
 
 
@@ -43,7 +43,7 @@ def lot_text(record: Mapping[str, Any], *, units: Units) -> str:
     lines += _judged(record["lines"], units)
     lines += _why(record, units)
     lines += _diagnosis(record)
-    lines += _findings(record["findings"])
+    lines += findings_text(record["findings"])
     return "\n".join(lines).rstrip() + "\n"
 
 
@@ -60,10 +60,8 @@ def _circumstances(record: Mapping[str, Any]) -> list[str]:
 def _numbers(record: Mapping[str, Any], units: Units) -> list[str]:
     verdict = record["verdict"]
     lines = _judged(verdict["lines"], units) if verdict is not None else _bare(record, units)
-    facts = [*_counted(record["threads"], units), *_seen(record, units)]
-    if facts:
-        lines += ["", *table(facts)]
-    return lines
+    also = [*_counted(record["threads"], units), *_seen(record, units)]
+    return [*lines, "", *facts(also)] if also else lines
 
 
 def _bare(record: Mapping[str, Any], units: Units) -> list[str]:
@@ -208,7 +206,8 @@ def _diagnosis(verdict: Mapping[str, Any] | None) -> list[str]:
     return lines
 
 
-def _findings(findings: Sequence[Mapping[str, str]]) -> list[str]:
+def findings_text(findings: Sequence[Mapping[str, str]]) -> list[str]:
+    """Tell what was noticed, as the last lines of any report."""
     if not findings:
         return []
     lines = ["", "  Findings"]
@@ -218,4 +217,4 @@ def _findings(findings: Sequence[Mapping[str, str]]) -> list[str]:
     return lines
 
 
-__all__ = ["lot_text", "record_text"]
+__all__ = ["findings_text", "lot_text", "record_text"]
