@@ -42,6 +42,51 @@ class Flag(Enum):
         "part of the picture is at the largest value the file can hold",
         "lower the exposure and take the picture again",
     )
+    CLIPPED_DARK = (
+        Severity.INFO,
+        "part of the picture is at zero, the darkest the file can hold",
+        "raise the exposure if that is cloth, not the bed around it",
+    )
+    MISNAMED_PICTURE = (
+        Severity.INFO,
+        "the file is another kind of picture than its name says",
+        "rename the file",
+    )
+    PICTURE_TURNED = (
+        Severity.INFO,
+        "the picture was turned as its orientation mark says",
+        "check that the warp runs as --warp says in the picture as shown",
+    )
+    ORIENTATION_UNKNOWN = (
+        Severity.WARNING,
+        "the stored orientation is none that exists: no turn was applied",
+        "check that the warp runs as --warp says",
+    )
+    EXIF_UNREADABLE = (
+        Severity.WARNING,
+        "the EXIF block could not be read: no turn was applied",
+        "check that the warp runs as --warp says",
+    )
+    DPI_CONTRADICTS_ITSELF = (
+        Severity.WARNING,
+        "the file states two resolutions: neither was used",
+        "give --pitch, or lay a rule in the picture (--rule auto)",
+    )
+    CHANNEL_CHOSEN = (
+        Severity.INFO,
+        "the channel of a colour picture that was measured",
+        "scan in grey to leave no choice",
+    )
+    TONE_FROM_FILE = (
+        Severity.INFO,
+        "the transfer curve is the one the file states, not sRGB",
+        "give --tone if the file states it wrongly",
+    )
+    TONE_AGAINST_FILE = (
+        Severity.WARNING,
+        "the stated transfer curve is not the one the file claims",
+        "leave --tone out to follow the file",
+    )
     # scale
     NO_SCALE = (
         Severity.REFUSAL,
@@ -52,6 +97,26 @@ class Flag(Enum):
         Severity.INFO,
         "the stated pitch was taken as exact",
         "give --pitch-u if it is not",
+    )
+    SCALE_FROM_METADATA = (
+        Severity.INFO,
+        "the scale is what the file claims of itself; nothing in the picture bears it out",
+        "lay a rule in the picture (--rule auto), or make a device certificate",
+    )
+    METADATA_NOT_TRUSTED = (
+        Severity.INFO,
+        "the resolution in the file was not used",
+        "say --metadata to use it, or better, lay a rule in the picture",
+    )
+    METADATA_DISAGREES = (
+        Severity.WARNING,
+        "the file claims another resolution than the one used",
+        "check the stated pitch, and that the picture was not resampled",
+    )
+    SCALES_DISAGREE = (
+        Severity.WARNING,
+        "two ways of finding the scale disagree by more than twice their uncertainty",
+        "find out which is wrong: check the rule, the stated pitch and the device",
     )
     # threads
     TOO_COARSE = (
