@@ -257,11 +257,16 @@ def _parse(content: bytes, shown: str) -> dict[str, Any]:
 def _refused(errors: list[ErrorDetails], shown: str) -> DeclarationError:
     # a misspelled key is also a missing one: what was written tells more than what was not
     first = min(errors, key=lambda error: error["type"] != "extra_forbidden")
-    path = ".".join(str(part) for part in first["loc"])
+    path = ".".join(_plain(str(part)) for part in first["loc"])
     fault, remedy = _words(first)
     if len(errors) > 1:
         fault += f" (and {len(errors) - 1} more)"
     return DeclarationError(f"{shown}: {path}", fault, remedy)
+
+
+def _plain(key: str) -> str:
+    """A key from the file as it may be shown: it could hold terminal codes."""
+    return key if key.isprintable() else ascii(key)
 
 
 def _words(error: ErrorDetails) -> tuple[str, str]:

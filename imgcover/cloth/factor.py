@@ -37,6 +37,10 @@ class CoverFactor:
     sett: Sett
     count: Count
 
+    def __post_init__(self) -> None:
+        if not isinstance(self.sett, Sett) or not isinstance(self.count, Count):
+            raise ValueError("sett and count must be a Sett and a Count, which know their units")
+
     @property
     def value(self) -> float:
         """K = threads an inch over √Ne."""

@@ -16,6 +16,9 @@ NUMBER = r"[+-]?(?:\d+(?:\.\d*)?|\.\d+)"
 LEAST_VALUE_OVER_U = 3.0
 """Below three u a positive figure is not told from zero."""
 
+LONGEST_FIGURE = 100
+"""Characters: a blend of five fibres fits; what is longer is not a figure."""
+
 
 class StatementError(ValueError):
     """A figure whose text cannot be read in exactly one way.
@@ -23,7 +26,7 @@ class StatementError(ValueError):
     Parameters
     ----------
     fault : str
-        What was expected and what came.
+        What was expected and what came; it never repeats control characters.
     remedy : str
         The next thing to try.
     """
@@ -74,7 +77,7 @@ def as_text(value: object, example: str) -> str:
     Raises
     ------
     StatementError
-        When it is not text, or holds a decimal comma.
+        When it is not text, is too long, has control characters or a decimal comma.
     """
     if isinstance(value, bool) or not isinstance(value, str | int | float):
         raise StatementError(
@@ -86,6 +89,8 @@ def as_text(value: object, example: str) -> str:
             "write the number with its unit, in quotes",
         )
     text = tidy(value)
+    if not text.isprintable() or len(text) > LONGEST_FIGURE:
+        raise StatementError(f'expected a short text such as "{example}"', f'write "{example}"')
     if re.search(r"\d,\d", text):
         raise StatementError(
             f'expected a decimal point, got "{text}" with a comma', f'write it as in "{example}"'

@@ -101,7 +101,7 @@ def read_tolerance(
 
 
 def _read_side(part: str, units: Mapping[str, float], example: str) -> tuple[str, float, bool]:
-    sign = part[0] if part[:1] in "+-" else ""
+    sign = part[:1] if part[:1] in ("+", "-") else ""
     stated = read_figure(part.lstrip("+- "), units=units, example=example)
     if stated.u is not None:
         raise StatementError(f'a tolerance has no u, got "{part}"', f'write "{example}"')
