@@ -1,10 +1,10 @@
 """How a ledger shows that nothing in it was changed: every row is sealed to the one before.
 
-A row's seal is the SHA-256 of seven lines of text, each ended by a newline: the seal before (64
+A row's seal is the SHA-256 of eight lines of text, each ended by a newline: the seal before (64
 zeros for row 1), the row's number, the schema, the key, the number of the row it supersedes (0 for
-none), the SHA-256 of the subject, and the SHA-256 of the body as stored (both of the UTF-8 bytes).
-Anyone with a hash tool can follow it. The time of a row is not sealed: the same measurements give
-the same seals on every machine and every day.
+none), and the SHA-256 of the subject, of the body and of the evidence as stored (of their UTF-8
+bytes). Anyone with a hash tool can follow it. The time of a row is not sealed: the same
+measurements give the same seals on every machine and every day.
 """
 
 from __future__ import annotations
@@ -84,6 +84,8 @@ class Entry:
         JSON text without its envelope, kept to the byte.
     made_at : str
         UTC, from the envelope; not sealed.
+    evidence : str
+        What a lot's verdict takes from a picture, as JSON; empty where there is none.
     """
 
     schema: str
@@ -91,6 +93,7 @@ class Entry:
     key: str
     body: str
     made_at: str
+    evidence: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -133,7 +136,7 @@ def sealed(entry: Entry, *, after: Head, supersedes: int | None) -> Row:
     """
     n = after.n + 1
     lines = (after.seal, str(n), entry.schema, entry.key, str(supersedes or 0))
-    hashed = (_digest(entry.subject), _digest(entry.body))
+    hashed = (_digest(entry.subject), _digest(entry.body), _digest(entry.evidence))
     text = "".join(f"{line}\n" for line in (*lines, *hashed))
     return Row(n, entry, supersedes, after.seal, _digest(text))
 

@@ -19,7 +19,8 @@ def exported(rows: Iterable[Row]) -> Iterator[str]:
     Yields
     ------
     str
-        A line, ended. `body` is text, to the byte what was sealed (`imgcover.ledger.chain`).
+        A line, ended. `body` and `evidence` are text, to the byte what was sealed
+        (`imgcover.ledger.chain`).
     """
     for row in rows:
         entry = row.entry
@@ -33,6 +34,7 @@ def exported(rows: Iterable[Row]) -> Iterator[str]:
             "seal": row.seal,
             "made_at": entry.made_at,
             "body": entry.body,
+            "evidence": entry.evidence,
         }
         yield json.dumps(line) + "\n"
 

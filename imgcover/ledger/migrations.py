@@ -26,6 +26,7 @@ STEPS: tuple[Step, ...] = (
             supersedes INTEGER REFERENCES entry (n) CHECK (supersedes < n),
             body TEXT NOT NULL,
             made_at TEXT NOT NULL,
+            evidence TEXT NOT NULL,
             previous TEXT NOT NULL,
             seal TEXT NOT NULL UNIQUE
         ) STRICT
@@ -47,6 +48,7 @@ STEPS: tuple[Step, ...] = (
             schema TEXT NOT NULL,
             body TEXT NOT NULL,
             made_at TEXT NOT NULL,
+            evidence TEXT NOT NULL,
             PRIMARY KEY (subject, key)
         ) STRICT
         """,

@@ -6,6 +6,7 @@ import sqlite3
 import time
 from collections.abc import Iterable, Iterator, Sequence
 from contextlib import contextmanager
+from dataclasses import astuple
 from pathlib import Path
 from types import TracebackType
 from typing import Self
@@ -18,7 +19,8 @@ from imgcover.ledger.trouble import told
 
 PATIENCE_S = 30.0
 """How long to wait for another writer: an audit's turn takes milliseconds, a copy seconds."""
-COLUMNS = "n, schema, subject, key, body, made_at, supersedes, previous, seal"
+ENTRY = "schema, subject, key, body, made_at, evidence"
+COLUMNS = f"n, {ENTRY}, supersedes, previous, seal"
 
 
 class Ledger:
@@ -148,17 +150,15 @@ class Ledger:
         """Keep entries that finished out of turn; `append` puts each in its place later."""
         with told(self.path), self._turn():
             self._connection.executemany(
-                "INSERT OR REPLACE INTO waiting (subject, key, schema, body, made_at) "
-                "VALUES (?, ?, ?, ?, ?)",
-                [(e.subject, e.key, e.schema, e.body, e.made_at) for e in entries],
+                f"INSERT OR REPLACE INTO waiting ({ENTRY}) VALUES (?, ?, ?, ?, ?, ?)",
+                [astuple(entry) for entry in entries],
             )
 
     def find(self, subject: str, key: str) -> Entry | None:
         """Look up what was said about a subject under a key, be it in place or waiting."""
         for table, order in (("entry", "ORDER BY n DESC"), ("waiting", "")):
             row = self._one(
-                f"SELECT schema, subject, key, body, made_at FROM {table} "
-                f"WHERE subject = ? AND key = ? {order} LIMIT 1",
+                f"SELECT {ENTRY} FROM {table} WHERE subject = ? AND key = ? {order} LIMIT 1",
                 (subject, key),
             )
             if row is not None:
@@ -218,11 +218,8 @@ class Ledger:
             return
         row = sealed(entry, after=self._head(), supersedes=said.n if said else None)
         self._connection.execute(
-            f"INSERT INTO entry ({COLUMNS}) VALUES (?, ?, ?, ?, ?, ?, ?, ?, ?)",
-            (
-                *(row.n, entry.schema, entry.subject, entry.key, entry.body, entry.made_at),
-                *(row.supersedes, row.previous, row.seal),
-            ),
+            f"INSERT INTO entry ({COLUMNS}) VALUES (?, ?, ?, ?, ?, ?, ?, ?, ?, ?)",
+            (row.n, *astuple(entry), row.supersedes, row.previous, row.seal),
         )
         yield row
 
@@ -240,8 +237,8 @@ class Ledger:
 
 
 def _row(found: Sequence[object]) -> Row:
-    n, schema, subject, key, body, made_at, supersedes, previous, seal = found
-    entry = Entry(str(schema), str(subject), str(key), str(body), str(made_at))
+    n, *said, supersedes, previous, seal = found
+    entry = Entry(*map(str, said))
     earlier = supersedes if isinstance(supersedes, int) else None
     return Row(int(str(n)), entry, earlier, str(previous), str(seal))
 

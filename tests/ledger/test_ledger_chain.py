@@ -23,10 +23,10 @@ def chain(*entries: Entry):
         yield row
 
 
-def test_a_seal_is_the_digest_of_the_seven_lines_that_are_described():
+def test_a_seal_is_the_digest_of_the_eight_lines_that_are_described():
     first, second = chain(entry("a"), entry("a", '{"é": 1}'))
     lines = [first.seal, "2", "imgcover/record/1", "k1", "1"]
-    lines += [hashlib.sha256(text.encode()).hexdigest() for text in ("a", '{"é": 1}')]
+    lines += [hashlib.sha256(text.encode()).hexdigest() for text in ("a", '{"é": 1}', "")]
     by_hand = hashlib.sha256("".join(f"{line}\n" for line in lines).encode()).hexdigest()
     assert second.seal == by_hand
 
