@@ -1,0 +1,1 @@
+"""The picture room: from a file, or the bytes of one, to linear light."""
