@@ -118,6 +118,27 @@ class Flag(Enum):
         "two ways of finding the scale disagree by more than twice their uncertainty",
         "find out which is wrong: check the rule, the stated pitch and the device",
     )
+    # scale: rule
+    NO_RULE_FOUND = (
+        Severity.WARNING,
+        "no rule was found in the picture",
+        "lay a clean rule flat on the cloth, its lines fully in the frame, 10 lines or more",
+    )
+    RULE_UNIT_OPEN = (
+        Severity.WARNING,
+        "the rule's unit is not certain from its lines",
+        "say --rule mm or --rule inch, or let more of the rule into the frame",
+    )
+    RULE_REFUSED = (
+        Severity.WARNING,
+        "a rule was found but its scale cannot be trusted",
+        "lay the rule flat beside the cloth and take the picture square from above",
+    )
+    RULE_TILT_CORRECTED = (
+        Severity.INFO,
+        "the rule lies slightly aslant to the camera; its graduations show by how much",
+        "take the picture square from above, or scan it",
+    )
     # threads
     TOO_COARSE = (
         Severity.REFUSAL,
