@@ -28,6 +28,8 @@ class Glance:
     ----------
     name : str
         Of the picture.
+    number : int or None
+        Of its place in the lot; None where it was not counted as one.
     piece, place : str or None
         Where in the lot.
     light : str or None
@@ -43,10 +45,11 @@ class Glance:
     row : int or None
         Of the ledger.
     thumbnail : bytes or None
-        A small picture with what was counted drawn over it (PNG, JPEG or WebP).
+        A small picture with what was counted drawn over it (PNG or JPEG).
     """
 
     name: str
+    number: int | None
     piece: str | None
     place: str | None
     light: str | None
@@ -66,13 +69,18 @@ class Glance:
 
 
 def glance(
-    record: Mapping[str, Any], *, row: int | None = None, thumbnail: bytes | None = None
+    record: Mapping[str, Any],
+    *,
+    number: int | None,
+    row: int | None = None,
+    thumbnail: bytes | None = None,
 ) -> Glance:
     """Take from a record what a lot's page shows of it."""
     threads, cover, verdict = record["threads"] or {}, record["cover"] or {}, record["verdict"]
     scale = record["scale"]
     return Glance(
         name=record["picture"]["name"],
+        number=number,
         piece=record["sample"]["piece"],
         place=record["sample"]["place"],
         light=record["light"],

@@ -13,6 +13,8 @@ from imgcover.report.plain import columns, shortened
 WIDTH = 80
 """Columns of the narrowest terminal and of a printed page."""
 CM_PER_INCH = 2.54
+MOST_DIGITS = 5
+"""A thread in a thousand metres is nobody's concern: past it digits only widen a column."""
 
 Units = Literal["inch", "cm"]
 
@@ -51,7 +53,7 @@ def figure(measured: Mapping[str, Any] | None, units: Units) -> str:
     if measured is None:
         return "–"
     how = shown_as(measured["unit"], units)
-    value, u = rounded(measured["value"] * how.factor, measured["u"] * how.factor)
+    value, u = _for_people(measured["value"] * how.factor, measured["u"] * how.factor)
     return f"{value} {how.unit}" if u == "0" else f"{value} ± {u} {how.unit}"
 
 
@@ -59,7 +61,24 @@ def near(value: float | None, u: float | None) -> str:
     """Write a number with the digits that `u` deserves, four where there is none."""
     if value is None:
         return ""
-    return rounded(value, u)[0] if u else f"{value:.4g}"
+    return _for_people(value, u)[0] if u else f"{value:.4g}"
+
+
+def _for_people(value: float, u: float) -> tuple[str, str]:
+    """Round by u, but to no more digits than anyone reads."""
+    if u == 0:
+        return rounded(value, u)
+    shown, shown_u = rounded(value, u)
+    most = MOST_DIGITS - max(1, len(str(int(abs(value)))))
+    if len(shown.partition(".")[2]) <= most:
+        return shown, shown_u
+    smallest = 10.0**-most
+    return f"{value:.{most}f}", f"{u:.{most}f}" if u >= smallest else f"<{smallest:g}"
+
+
+def brief(value: float) -> str:
+    """Write a number that has no u of its own, such as a limit, to four digits."""
+    return f"{value:.4g}"
 
 
 def table(rows: Sequence[Sequence[str]], *, indent: int = 2, gap: int = 2) -> list[str]:
@@ -93,4 +112,15 @@ def wrapped(text: str, *, first: str = "  ", then: str = "    ") -> list[str]:
     return textwrap.wrap(text, WIDTH, initial_indent=first, subsequent_indent=then)
 
 
-__all__ = ["WIDTH", "Shown", "Units", "facts", "figure", "near", "shown_as", "table", "wrapped"]
+__all__ = [
+    "WIDTH",
+    "Shown",
+    "Units",
+    "brief",
+    "facts",
+    "figure",
+    "near",
+    "shown_as",
+    "table",
+    "wrapped",
+]

@@ -86,6 +86,8 @@ def overlay(
             title = f"{name}: {set_.counted:.2f} counted over {set_.length_px:.0f} px"
             length = (record["threads"] or {}).get(f"length_{name}_mm")
             title += "" if length is None else f" = {length:.2f} mm"
+            turned = abs(set_.frequency[1]) > abs(set_.frequency[0])
+            title += "  (laid from top to bottom)" if turned else ""
             sheets.append(
                 counting_strip(
                     picture.stored,

@@ -13,7 +13,7 @@ if TYPE_CHECKING:
 
 WIDTH_INCH = 7.0
 """The type area of an A4 page with the margins of the lot page."""
-PANEL_INCH = 1.55
+PANEL_INCH = 1.25
 INK = "#1c2026"
 FAINT = "#80868e"
 LIMIT = "#b3261e"
@@ -91,8 +91,10 @@ def places_drawing(panels: Sequence[Panel], *, places: int) -> str:
         foot.set_xlabel("place, as numbered in the table", color=FAINT)
         step = math.ceil(places / MOST_TICKS)
         foot.set_xticks(range(1, places + 1, step))
-        figure.subplots_adjust(left=0.1, right=0.985, top=0.97, bottom=0.3 / len(panels) * 0.75)
-        figure.subplots_adjust(hspace=0.22)
+        height = figure.get_figheight()
+        figure.subplots_adjust(
+            left=0.1, right=0.985, top=1 - 0.06 / height, bottom=0.38 / height, hspace=0.2
+        )
         return _element(figure_svg(figure))
 
 
@@ -110,11 +112,9 @@ def _draw(axis: Axes, panel: Panel) -> None:
     _style(axis, panel)
     low, high = _span(panel)
     axis.set_ylim(low, high)
-    accept_low = panel.accept_lower if panel.accept_lower is not None else panel.lower
-    accept_high = panel.accept_upper if panel.accept_upper is not None else panel.upper
-    if accept_low is not None or accept_high is not None:
-        floor = low if accept_low is None else accept_low
-        ceiling = high if accept_high is None else accept_high
+    if panel.accept_lower is not None or panel.accept_upper is not None:
+        floor = low if panel.accept_lower is None else panel.accept_lower
+        ceiling = high if panel.accept_upper is None else panel.accept_upper
         if ceiling > floor:
             axis.axhspan(floor, ceiling, color=INSIDE, lw=0, zorder=0)
     for limit in (panel.lower, panel.upper):

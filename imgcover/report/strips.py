@@ -74,8 +74,11 @@ def path_across(threads: ThreadSet, tiles: Sequence[Tile]) -> Path:
     size = math.hypot(*threads.frequency)
     across = (threads.frequency[0] / size, threads.frequency[1] / size)
     box = (float(left), float(top), float(right - 1), float(bottom - 1))
-    middles = {(tile.x + tile.width / 2, tile.y + tile.height / 2) for tile in used}
-    paths = [_clipped(middle, across, box) for middle in sorted(middles)]
+    centre = ((left + right) / 2, (top + bottom) / 2)
+    middles = [(tile.x + tile.width / 2, tile.y + tile.height / 2) for tile in used]
+    # of ways that meet equally many tiles, the one nearest to the middle of the field
+    middles.sort(key=lambda middle: math.dist(middle, centre))
+    paths = [_clipped(middle, across, box) for middle in middles]
     return max(paths, key=lambda path: sum(_meets(path, tile) for tile in used))
 
 

@@ -6,7 +6,7 @@ from collections.abc import Mapping, Sequence
 from typing import Any
 
 from imgcover.report.headline import headline
-from imgcover.report.layout import Units, facts, figure, near, shown_as, table, wrapped
+from imgcover.report.layout import Units, brief, facts, figure, near, shown_as, table, wrapped
 from imgcover.report.plain import plain
 
 SUSPECTS_SHOWN = 3
@@ -82,22 +82,21 @@ def _judged(judged: Sequence[Mapping[str, Any]], units: Units) -> list[str]:
         measured = None
         if line["measured"] is not None:
             measured = {"value": line["measured"], "u": line["u"], "unit": line["unit"]}
-        digits = None if line["u"] is None else line["u"] * how.factor
         rows.append(
             (
                 line["quantity"],
                 figure(measured, units),
-                f"{near(line['declared'] * how.factor, digits)} {line['basis']}",
-                _limits(line, how.factor, digits),
+                f"{brief(line['declared'] * how.factor)} {line['basis']}",
+                _limits(line, how.factor),
                 line["decision"],
             )
         )
     return table(rows)
 
 
-def _limits(line: Mapping[str, Any], factor: float, u: float | None) -> str:
+def _limits(line: Mapping[str, Any], factor: float) -> str:
     lower, upper = (
-        None if line[key] is None else near(line[key] * factor, u) for key in ("lower", "upper")
+        None if line[key] is None else brief(line[key] * factor) for key in ("lower", "upper")
     )
     if lower is None and upper is None:
         return "none"
@@ -150,7 +149,7 @@ def _why(verdict: Mapping[str, Any] | None, units: Units) -> list[str]:
     if verdict is None:
         return []
     said = [
-        f"{line['quantity']}: {_reason(line, units)}"
+        f"{line['quantity']}: {reason(line, units)}"
         for line in verdict["lines"]
         if line["decision"] != "conforms"
     ]
@@ -165,7 +164,8 @@ def _why(verdict: Mapping[str, Any] | None, units: Units) -> list[str]:
     )
 
 
-def _reason(line: Mapping[str, Any], units: Units) -> str:
+def reason(line: Mapping[str, Any], units: Units) -> str:
+    """Say why a line that does not simply conform ended as it did, in the shown units."""
     if line["measured"] is None:
         return str(line["reason"])
     how = shown_as(line["unit"], units)
@@ -217,4 +217,4 @@ def findings_text(findings: Sequence[Mapping[str, str]]) -> list[str]:
     return lines
 
 
-__all__ = ["findings_text", "lot_text", "record_text"]
+__all__ = ["findings_text", "lot_text", "reason", "record_text"]

@@ -105,9 +105,9 @@ def draw_whole(
     sheet.put(pixels, (view.x, view.y))
     for tile in tiles:
         corner = view.at(tile.x, tile.y)
-        size = (tile.width * view.scale - 1, tile.height * view.scale - 1)
+        size = (tile.width * view.scale, tile.height * view.scale)
         if tile.used:
-            sheet.box(corner, size, PAPER)
+            sheet.box(corner, size, FAINT)
     for tile in tiles:
         if not tile.used:
             _cross_out(sheet, view, tile)
@@ -153,7 +153,10 @@ def draw_region(
 ) -> None:
     """Outline the part of the picture that was asked for (x, y, width, height), px."""
     x, y, width, height = region
-    sheet.box(view.at(x, y), (width * view.scale, height * view.scale), colour)
+    left, top = view.at(x, y)
+    size = (width * view.scale, height * view.scale)
+    sheet.box((left - 1, top - 1), (size[0] + 2, size[1] + 2), PAPER)
+    sheet.box((left, top), size, colour)
 
 
 def _tint_window(pixels: Pixels, view: View, window: Seen) -> Pixels:

@@ -1,0 +1,103 @@
+"""What an inspector reads: the decision in the first line, nothing wider than a terminal.
+
+Truth is the record that is told: every figure shown is one of its numbers, converted.
+"""
+
+from __future__ import annotations
+
+import unicodedata
+
+import pytest
+from hypothesis import given, settings
+from hypothesis import strategies as st
+from report_records import per_cm, record, unreadable
+
+from imgcover.findings import Flag, found
+from imgcover.quantity import Measured
+from imgcover.report.headline import headline
+from imgcover.report.layout import figure
+from imgcover.report.plain import columns
+from imgcover.report.text import record_text
+
+CONFORMING = {"ends": per_cm(26.8), "picks": per_cm(25.3), "cover": Measured(0.66, 0.005, "1")}
+
+
+def test_a_conforming_swatch_says_so_first() -> None:
+    assert headline(record(**CONFORMING), units="inch") == (
+        "harrow-02.png conforms: ends, picks and cover as declared"
+    )
+
+
+def test_short_picks_are_named_with_both_figures_in_the_asked_unit() -> None:
+    short = record(**CONFORMING | {"picks": per_cm(22.8)})
+    inch, cm = (headline(short, units=units) for units in ("inch", "cm"))
+    assert inch == "harrow-02.png does not conform: picks 57.91 /in, declared 64.00"
+    assert cm == "harrow-02.png does not conform: picks 22.800 /cm, declared 25.197"
+
+
+def test_a_value_at_its_limit_is_undecided() -> None:
+    near = record(**CONFORMING | {"ends": per_cm(27.3)})
+    assert "undecided: ends 69.34 /in too near its limits to prove" in headline(near, units="inch")
+
+
+def test_without_a_declaration_the_figures_are_the_answer() -> None:
+    told = headline(record(**CONFORMING, declared=False), units="cm")
+    assert told == "harrow-02.png measured: 26.800 ends × 25.300 picks /cm, cover 66.00 %"
+
+
+@pytest.mark.parametrize("declared", [True, False])
+def test_an_unreadable_picture_says_why(declared: bool) -> None:
+    told = headline(unreadable(declared=declared), units="cm")
+    assert "the JPEG ends before its last line" in told
+    assert told.startswith("torn.jpg undecided" if declared else "torn.jpg not measured")
+
+
+def test_the_table_holds_measured_limits_and_decision() -> None:
+    text = record_text(record(**CONFORMING | {"picks": per_cm(22.8)}), units="inch")
+    row = next(line for line in text.splitlines() if line.startswith("  picks  "))
+    # 64 /in less 2 %, plus 5 %
+    for shown in ("57.91", "/in", "64 declared", "62.72 to 67.2", "does not conform"):
+        assert shown in row
+
+
+def test_findings_come_with_what_to_do() -> None:
+    text = record_text(record(findings=(found(Flag.NO_SCALE),)), units="cm")
+    assert "refusal no-scale: nothing says how many pixels" in text
+    assert "give --pitch" in text.replace("\n      ", " ")
+
+
+def test_a_held_line_says_what_holds_it() -> None:
+    held = record(**CONFORMING, findings=(found(Flag.SCALES_DISAGREE),))
+    text = record_text(held, units="inch")
+    assert "undecided" in text.splitlines()[0]
+    assert "held open" in text.splitlines()[0]
+    assert "left undecided" in text
+
+
+NAMES = st.text(st.characters(exclude_categories=()), min_size=1, max_size=90)
+DENSITIES = st.none() | st.builds(
+    per_cm, st.floats(0.5, 250.0), st.floats(1e-5, 5.0).filter(lambda u: u > 0)
+)
+COVERS = st.none() | st.builds(Measured, st.floats(0.0, 1.0), st.floats(1e-5, 0.3), st.just("1"))
+
+
+@settings(max_examples=25, deadline=None)
+@given(NAMES, DENSITIES, DENSITIES, COVERS, st.booleans(), st.sampled_from(["inch", "cm"]))
+def test_no_line_is_wider_than_a_terminal_and_none_steers_it(
+    name: str,
+    ends: Measured | None,
+    picks: Measured | None,
+    cover: Measured | None,
+    declared: bool,
+    units: str,
+) -> None:
+    told = record(name=name, ends=ends, picks=picks, cover=cover, declared=declared, lot=name)
+    text = record_text(told, units=units)  # type: ignore[arg-type]
+    assert max(columns(line) for line in text.splitlines()) <= 80
+    assert not [each for each in text if unicodedata.category(each) in ("Cf", "Cs")]
+    assert not [each for each in text if unicodedata.category(each) == "Cc" and each != "\n"]
+
+
+def test_a_number_is_rounded_by_its_uncertainty() -> None:
+    assert figure({"value": 0.83714, "u": 0.0123, "unit": "1"}, "cm") == "83.7 ± 1.2 %"
+    assert figure(None, "cm") == "–"
