@@ -1,0 +1,1 @@
+"""Pixels to millimetres: stated pitch, metadata, a rule, a printed sheet, a certificate."""

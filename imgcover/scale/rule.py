@@ -1,0 +1,286 @@
+"""Is there a rule in the picture, and how many pixels make its millimetre?
+
+The search goes from coarse to fine copies of the picture: spots of parallel lines (`rule_seeds`)
+are followed along their row (`rule_band`), the pattern of long and short lines tells rule from
+cloth and millimetre from inch (`rule_hierarchy`, `rule_proof`), and every line is placed on the
+finest copy (`rule_fit`). Nothing is known about the cloth, and nothing of it is used.
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass, replace
+from typing import Literal
+
+import numpy as np
+from numpy.typing import NDArray
+
+from imgcover.findings import Finding, Flag, found
+from imgcover.quantity import Measured
+from imgcover.scale.rule_area import rule_corners
+from imgcover.scale.rule_band import Row, follow_row
+from imgcover.scale.rule_class import RuleClass, rule_u
+from imgcover.scale.rule_fit import FittedRow, fit_row
+from imgcover.scale.rule_hierarchy import Graduation
+from imgcover.scale.rule_levels import Level, Pictured, levels_of
+from imgcover.scale.rule_proof import Proof, prove
+from imgcover.scale.rule_seeds import Seed, even_out, find_seeds
+
+MOST_SEEDS = 24
+"""Spots followed on each level: on drawn pictures a rule's row is among the first eight."""
+LARGEST_SCATTER = 0.06
+"""Pitches: lines that stray more from equal distances belong to a bent tape or to no rule."""
+LARGEST_CHANGE = 0.03
+"""Relative change of scale over the frame up to which a tilt is corrected; beyond, refused."""
+
+Unit = Literal["auto", "mm", "inch"]
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class RuleReading:
+    """One graduated edge, read.
+
+    Parameters
+    ----------
+    px_per_mm : Measured
+        Along the rule, at the picture's middle; u holds fit, tilt and the rule's class.
+    angle : float
+        Direction of the rule in the picture, rad.
+    graduations : tuple of Graduation
+        What its lines can be; one when the unit is proven.
+    u_fit, u_class : float
+        Relative standard uncertainties of the fitted lines and of the rule itself.
+    lines, dropped : int
+        Graduations fitted, and strays left out.
+    length_mm : float
+        From the first to the last.
+    tilt : float
+        Relative change of scale over the frame that was corrected.
+    corners : ndarray, shape (4, 2)
+        The rule's body in picture pixels, x and y; it may reach outside the frame.
+    """
+
+    px_per_mm: Measured
+    angle: float
+    graduations: tuple[Graduation, ...]
+    u_fit: float
+    u_class: float
+    lines: int
+    dropped: int
+    length_mm: float
+    tilt: float
+    corners: NDArray[np.float64]
+
+    def read_as(self, graduation: Graduation) -> RuleReading:
+        """Return the same lines read as another graduation."""
+        factor = self.graduations[0].step_mm / graduation.step_mm
+        return replace(
+            self,
+            px_per_mm=self.px_per_mm.times(factor, "px/mm"),
+            graduations=(graduation,),
+            length_mm=self.length_mm / factor,
+        )
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class RuleSearch:
+    """What was found: readings that hold, the areas that are no cloth, and what was noticed."""
+
+    readings: tuple[RuleReading, ...]
+    areas: tuple[NDArray[np.float64], ...]
+    findings: tuple[Finding, ...]
+
+
+def find_rules(
+    picture: Pictured, *, unit: Unit = "auto", rule_class: RuleClass = RuleClass.II
+) -> RuleSearch:
+    """Find the rules in a picture.
+
+    Parameters
+    ----------
+    picture : Pictured
+        A picture, or whatever gives block means of its linear light.
+    unit : {"auto", "mm", "inch"}
+        Which graduations to believe; with "auto" the pattern of the lines must tell.
+    rule_class : RuleClass
+        Sets how far the rule itself may be wrong.
+
+    Returns
+    -------
+    RuleSearch
+        `readings` is empty where no rule was found or its unit stayed open; the finding
+        (`no-rule-found`, `rule-unit-open`, `rule-refused`) says which.
+    """
+    levels = levels_of(picture)
+    found_rows: list[tuple[RuleReading, Proof]] = []
+    refused: list[str] = []
+    for level in reversed(levels):
+        for row, proof in _rows_on(level, unit):
+            reading = _read(picture, levels[0], level, row, proof, rule_class)
+            if isinstance(reading, str):
+                refused.append(reading)
+            else:
+                found_rows.append((reading, proof))
+        if any(proof.proven for _, proof in found_rows):
+            break
+    return _agree([reading for reading, _ in found_rows], refused)
+
+
+def _rows_on(level: Level, unit: Unit) -> list[tuple[Row, Proof]]:
+    """Follow and judge the seeds of one level; of rows that overlap keep the longest."""
+    kept: list[tuple[Row, Proof]] = []
+    for seed in find_seeds(even_out_tone(level), most=MOST_SEEDS):
+        if any(_inside(row, seed) for row, _ in kept):
+            continue
+        for row in follow_row(level.tone, seed):
+            proof = prove(row, unit)
+            if proof is not None:
+                kept.append((row, proof))
+                break
+    return kept
+
+
+def even_out_tone(level: Level) -> NDArray[np.float32]:
+    """Return the level's picture evened for the search."""
+    return even_out(level.tone * level.tone)
+
+
+def _inside(row: Row, seed: Seed) -> bool:
+    """Whether a seed lies on the lines of a row that is already read."""
+    offset = np.array([seed.x - row.frame.x, seed.y - row.frame.y])
+    axes = np.array(
+        [
+            [math.cos(row.frame.along), math.cos(row.frame.upright)],
+            [math.sin(row.frame.along), math.sin(row.frame.upright)],
+        ]
+    )
+    s, t = np.linalg.solve(axes, offset)
+    tall = float(np.quantile(row.reach, 0.95))
+    beyond = 4 * row.pitch
+    return bool(
+        -beyond < t < tall + beyond
+        and row.positions[0] - beyond < s < row.positions[-1] + beyond
+    )
+
+
+def _read(
+    picture: Pictured,
+    finest: Level,
+    level: Level,
+    row: Row,
+    proof: Proof,
+    rule_class: RuleClass,
+) -> RuleReading | str:
+    """Place a row's lines on the finest level; return the reading, or why it is refused."""
+    fitted = fit_row(finest.tone, row, level.factor / finest.factor)
+    if fitted is None:
+        return "its lines do not stand at equal distances"
+    comb, graduation = fitted.comb, proof.graduations[0]
+    if comb.scatter > LARGEST_SCATTER * comb.pitch:
+        return "its lines stray from equal distances: it is bent, or not flat on the cloth"
+    scale = _scale_at_middle(picture, finest, fitted)
+    if scale is None:
+        return "it lies too much aslant to the camera"
+    pitch, u_relative, tilt = scale
+    px_per_mm = pitch * finest.factor / graduation.step_mm
+    numbers = fitted.numbers[comb.kept]
+    length = float(numbers[-1] - numbers[0]) * graduation.step_mm
+    u_class = rule_u(length, rule_class)
+    ends = comb.position(numbers[[0, -1]])
+    corners = rule_corners(
+        finest.tone,
+        fitted.frame,
+        px_per_mm=px_per_mm / finest.factor,
+        first=float(ends[0]),
+        last=float(ends[1]),
+        longest_mm=proof.pattern.lengths[-1] * graduation.step_mm,
+    )
+    return RuleReading(
+        px_per_mm=Measured(px_per_mm, px_per_mm * math.hypot(u_relative, u_class), "px/mm"),
+        angle=fitted.frame.along,
+        graduations=proof.graduations,
+        u_fit=u_relative,
+        u_class=u_class,
+        lines=int(comb.kept.sum()),
+        dropped=len(row.numbers) - int(comb.kept.sum()),
+        length_mm=length,
+        tilt=tilt,
+        corners=finest.to_picture(corners),
+    )
+
+
+def _scale_at_middle(
+    picture: Pictured, finest: Level, fitted: FittedRow
+) -> tuple[float, float, float] | None:
+    """Carry the pitch from the row to the picture's middle; None where that is too far aslant.
+
+    Along the row the comb's own tilt is used. Up the lines the change of pitch between foot and
+    tip is weighed against what the tilt along the row makes likely: a picture taken upright has
+    neither, and none is then invented from noise.
+    """
+    comb, frame = fitted.comb, fitted.frame
+    middle = finest.from_picture(np.array([picture.columns / 2, picture.rows / 2]))
+    offset = middle - np.array([frame.x, frame.y])
+    s = offset[0] * math.cos(frame.along) + offset[1] * math.sin(frame.along)
+    t = offset[0] * math.cos(frame.upright) + offset[1] * math.sin(frame.upright)
+    number = comb.middle + (s - comb.origin) / comb.pitch
+    extent = math.hypot(picture.columns, picture.rows) / finest.factor
+    along = 2 * comb.tilt / comb.pitch
+    known = abs(fitted.across) > 4 * fitted.u_across
+    likely = max(abs(along), abs(fitted.across) if known else 0.0)
+    weight = likely**2 / (likely**2 + fitted.u_across**2) if likely else 0.0
+    across = weight * fitted.across if weight else 0.0
+    u_across = math.sqrt(weight) * fitted.u_across if weight else 0.0
+    change = math.hypot(along, across) * extent
+    if change > LARGEST_CHANGE:
+        return None
+    pitch = comb.pitch_at(number) * (1 + across * t)
+    u_along = 2 * comb.u_tilt * abs(number - comb.middle) if comb.tilt else 0.0
+    relative = math.sqrt((comb.u_pitch / comb.pitch) ** 2 + u_along**2 + (u_across * t) ** 2)
+    return pitch, relative, change
+
+
+def _agree(readings: list[RuleReading], refused: list[str]) -> RuleSearch:
+    """Hold all rows against each other; one that is open may be closed by another."""
+    areas = tuple(each.corners for each in readings)
+    proven = [each for each in readings if len(each.graduations) == 1]
+    open_ones = [each for each in readings if len(each.graduations) > 1]
+    if not readings:
+        if refused:
+            return RuleSearch((), (), (found(Flag.RULE_REFUSED, f"a rule shows, but {refused[0]}"),))
+        return RuleSearch((), (), (found(Flag.NO_RULE_FOUND),))
+    if not proven:
+        return _open(open_ones, areas)
+    for each in open_ones:
+        proven += [
+            read
+            for read in (each.read_as(graduation) for graduation in each.graduations)
+            if _near(read, proven[0])
+        ]
+    if not all(_near(each, proven[0]) for each in proven):
+        named = " and ".join(_said(each) for each in proven)
+        message = f"rules in the picture contradict each other: {named}"
+        return RuleSearch((), areas, (found(Flag.RULE_REFUSED, message),))
+    proven.sort(key=lambda each: each.px_per_mm.u / each.px_per_mm.value)
+    return RuleSearch(tuple(proven), areas, ())
+
+
+def _open(readings: list[RuleReading], areas: tuple[NDArray[np.float64], ...]) -> RuleSearch:
+    named = " or ".join(_said(readings[0].read_as(each)) for each in readings[0].graduations)
+    message = f"the rule's unit is not certain from its lines: {named}"
+    return RuleSearch((), areas, (found(Flag.RULE_UNIT_OPEN, message),))
+
+
+def _near(one: RuleReading, other: RuleReading) -> bool:
+    """Whether two readings can be of one picture: scanners' axes differ by up to one per cent."""
+    apart = abs(math.sin(one.angle - other.angle))
+    ratio = one.px_per_mm.value / other.px_per_mm.value
+    return abs(ratio - 1) < 0.006 + 0.02 * apart
+
+
+def _said(reading: RuleReading) -> str:
+    value = reading.px_per_mm.value
+    return f"{reading.graduations[0]} lines at {value:.4g} px/mm"
+
+
+__all__ = ["RuleReading", "RuleSearch", "Unit", "find_rules"]

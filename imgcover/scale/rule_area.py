@@ -1,0 +1,78 @@
+"""Which part of the picture is the rule, and so not cloth?"""
+
+from __future__ import annotations
+
+import cv2
+import numpy as np
+from numpy.typing import NDArray
+
+from imgcover.scale.rule_band import Frame
+
+BEYOND_ENDS_MM = 15.0
+"""A rule's body goes on past its first and last graduation by up to this."""
+WIDEST_MM = 60.0
+DEFAULT_WIDTH_MM = 42.0
+"""Taken when the far edge does not show: wider than most rules."""
+SEEN_EDGE = 0.03
+"""Step in the square root of linear light that counts as an edge."""
+
+
+def rule_corners(
+    tone: NDArray[np.float32],
+    frame: Frame,
+    *,
+    px_per_mm: float,
+    first: float,
+    last: float,
+    longest_mm: float,
+) -> NDArray[np.float64]:
+    """Return the corners of the rule's body on this level, shape (4, 2), x and y.
+
+    Parameters
+    ----------
+    tone : ndarray, shape (rows, columns), float32
+        Square root of linear light.
+    frame : Frame
+        Of the row of lines; t runs from the lines' foot to their tips.
+    px_per_mm : float
+        On this level.
+    first, last : float
+        Positions along the row of its first and last line, px.
+    longest_mm : float
+        Height of the longest lines.
+    """
+    step = max(1.0, px_per_mm / 8)
+    t = np.arange(-5 * px_per_mm, WIDEST_MM * px_per_mm, step)
+    s = np.arange(first, last, max(1.0, px_per_mm / 4))
+    edge = _edge_strength(frame.sample(tone, s, t), int(round(px_per_mm / step)))
+    near = _strongest(edge, t, (-4.5 * px_per_mm, 0.4 * px_per_mm))
+    far = _strongest(edge, t, ((longest_mm + 1.0) * px_per_mm, t[-1]))
+    low = (near if near is not None else 0.0) - 1.0 * px_per_mm
+    high = (far if far is not None else DEFAULT_WIDTH_MM * px_per_mm) + 1.0 * px_per_mm
+    ends = np.array([first, last]) + np.array([-1, 1]) * BEYOND_ENDS_MM * px_per_mm
+    x, y = frame.place(ends[[0, 1, 1, 0]], np.array([low, low, high, high]))
+    return np.stack([x, y], axis=1)
+
+
+def _edge_strength(band: NDArray[np.float32], width: int) -> NDArray[np.float64]:
+    """Return how strong a step along the whole row each height shows: the median over stretches."""
+    stretches = np.array_split(band, 12, axis=1)
+    means = np.stack([each.mean(axis=1) for each in stretches if each.shape[1]], axis=1)
+    smooth = cv2.blur(means, (1, max(1, width // 2)))
+    step = np.zeros_like(smooth)
+    half = max(1, width // 2)
+    step[half:-half] = smooth[2 * half :] - smooth[: -2 * half]
+    return np.asarray(np.abs(np.median(step, axis=1)), dtype=np.float64)
+
+
+def _strongest(
+    edge: NDArray[np.float64], t: NDArray[np.float64], between: tuple[float, float]
+) -> float | None:
+    inside = (t >= between[0]) & (t <= between[1])
+    if not inside.any():
+        return None
+    index = int(np.flatnonzero(inside)[np.argmax(edge[inside])])
+    return float(t[index]) if edge[index] > SEEN_EDGE else None
+
+
+__all__ = ["rule_corners"]

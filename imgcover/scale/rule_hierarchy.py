@@ -1,0 +1,183 @@
+"""Which unit do the long and short lines spell?
+
+Decimal scales lengthen every fifth and tenth line, half-millimetre scales every second, tenth and
+twentieth, inch scales every second, fourth, eighth and so on. The pattern is read from the lines'
+reach alone. What the pattern leaves open, the lines' proportions may close: a rule's shortest
+lines are 2 to 6 mm long whatever its unit, so ten lines to the unit standing closer together than
+half their height are millimetres; standing wider, they may be tenths of an inch, and it is said.
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+from enum import StrEnum
+
+import numpy as np
+from numpy.typing import NDArray
+
+from imgcover.scale.rule_band import Row
+
+INCH_MM = 25.4
+
+
+class Graduation(StrEnum):
+    """The distance of a rule's neighbouring lines."""
+
+    MM = "1 mm"
+    HALF_MM = "1/2 mm"
+    TENTH_INCH = "1/10 in"
+    EIGHTH_INCH = "1/8 in"
+    SIXTEENTH_INCH = "1/16 in"
+    THIRTYSECOND_INCH = "1/32 in"
+    SIXTYFOURTH_INCH = "1/64 in"
+
+    @property
+    def step_mm(self) -> float:
+        """Its length in mm."""
+        return STEP_MM[self]
+
+    @property
+    def metric(self) -> bool:
+        """Whether it divides the millimetre."""
+        return self in (Graduation.MM, Graduation.HALF_MM)
+
+
+STEP_MM = {
+    Graduation.MM: 1.0,
+    Graduation.HALF_MM: 0.5,
+    Graduation.TENTH_INCH: INCH_MM / 10,
+    Graduation.EIGHTH_INCH: INCH_MM / 8,
+    Graduation.SIXTEENTH_INCH: INCH_MM / 16,
+    Graduation.THIRTYSECOND_INCH: INCH_MM / 32,
+    Graduation.SIXTYFOURTH_INCH: INCH_MM / 64,
+}
+
+PATTERNS: tuple[tuple[tuple[int, ...], tuple[Graduation, ...]], ...] = (
+    ((1, 5, 10), (Graduation.MM, Graduation.TENTH_INCH)),
+    ((1, 5), (Graduation.MM, Graduation.TENTH_INCH)),
+    ((1, 10), (Graduation.MM, Graduation.TENTH_INCH)),
+    ((1, 2, 10, 20), (Graduation.HALF_MM,)),
+    ((1, 2, 10), (Graduation.HALF_MM,)),
+    ((1, 2, 20), (Graduation.HALF_MM,)),
+    ((1, 2, 4, 8), (Graduation.EIGHTH_INCH,)),
+    ((1, 2, 4, 8, 16), (Graduation.SIXTEENTH_INCH,)),
+    ((1, 4, 8, 16), (Graduation.SIXTEENTH_INCH,)),
+    ((1, 2, 4, 8, 16, 32), (Graduation.THIRTYSECOND_INCH,)),
+    ((1, 4, 8, 16, 32), (Graduation.THIRTYSECOND_INCH,)),
+    ((1, 2, 4, 8, 16, 32, 64), (Graduation.SIXTYFOURTH_INCH,)),
+    ((1, 4, 8, 16, 32, 64), (Graduation.SIXTYFOURTH_INCH,)),
+    ((1, 2, 8, 16, 32, 64), (Graduation.SIXTYFOURTH_INCH,)),
+)
+"""Every how many lines one grows longer, and what such a scale can be."""
+
+LOST = 4.0
+"""Cost, in units of a line's usual scatter, beyond which a line's reach is taken for an accident
+(dust, a digit, a scratch): a straight line fit's usual bound."""
+A_LEVEL = 4.0
+"""Cost of one more length: near half the logarithm of the number of lines, twice (BIC)."""
+
+
+@dataclass(frozen=True, slots=True)
+class Pattern:
+    """How well one pattern fits a row: the lengths (in pitches) of its levels, and its cost."""
+
+    steps: tuple[int, ...]
+    graduations: tuple[Graduation, ...]
+    phase: int
+    lengths: tuple[float, ...]
+    cost: float
+    explained: float
+
+
+def match_patterns(row: Row) -> list[Pattern]:
+    """Fit every pattern to a row's lines, the best first.
+
+    Parameters
+    ----------
+    row : Row
+        From `follow_row`.
+
+    Returns
+    -------
+    list of Pattern
+        One for each of `PATTERNS` that fits with its lengths in order; cost in scatters.
+    """
+    reach = row.reach / row.pitch
+    scatter = max(0.12, 0.8 / row.pitch)
+    fitted = []
+    for steps, graduations in PATTERNS:
+        if steps[-1] <= len(reach):
+            best = _best_phase(row.numbers, reach, scatter, steps, graduations)
+            if best is not None:
+                fitted.append(best)
+    return sorted(fitted, key=lambda each: each.cost)
+
+
+def flat_cost(row: Row) -> float:
+    """Return what it costs to say that all lines are equally long."""
+    reach = row.reach / row.pitch
+    scatter = max(0.12, 0.8 / row.pitch)
+    return float(_costs(reach - np.median(reach), scatter).sum()) + A_LEVEL
+
+
+def _costs(difference: NDArray[np.float64], scatter: float) -> NDArray[np.float64]:
+    return np.minimum(np.abs(difference) / scatter, LOST)
+
+
+def _best_phase(
+    numbers: NDArray[np.int_],
+    reach: NDArray[np.float64],
+    scatter: float,
+    steps: tuple[int, ...],
+    graduations: tuple[Graduation, ...],
+) -> Pattern | None:
+    """Fit one pattern at each of its phases; return the cheapest."""
+    best = None
+    for phase in _likely_phases(numbers, reach, steps):
+        level = levels(numbers - phase, steps)
+        lengths = [float(np.median(reach[level == i])) for i in range(len(steps))]
+        if min(np.diff(lengths)) < 1.5 * scatter:
+            continue
+        each = _costs(reach - np.array(lengths)[level], scatter)
+        cost = float(each.sum()) + A_LEVEL * len(steps)
+        if best is None or cost < best.cost:
+            explained = float((each < LOST).mean())
+            best = Pattern(steps, graduations, phase, tuple(lengths), cost, explained)
+    return best
+
+
+def _likely_phases(
+    numbers: NDArray[np.int_], reach: NDArray[np.float64], steps: tuple[int, ...]
+) -> list[int]:
+    """Fold the reaches on the pattern's period; return the phases whose levels part them best."""
+    period = steps[-1]
+    kept = np.clip(reach, *(np.median(reach) + np.array([-20.0, 20.0])))
+    count = np.bincount(numbers % period, minlength=period).astype(float)
+    fold = np.bincount(numbers % period, kept, period) / np.maximum(count, 1)
+    turned = (np.arange(period)[:, None] + np.arange(period)) % period
+    folded, weight = fold[turned], count[turned]
+    level = levels(np.arange(period), steps)
+    rest = np.zeros(period)
+    for index in range(len(steps)):
+        mine, mass = folded[:, level == index], weight[:, level == index]
+        mean = (mine * mass).sum(axis=1) / np.maximum(mass.sum(axis=1), 1e-9)
+        rest += (np.abs(mine - mean[:, None]) * mass).sum(axis=1)
+    return [int(phase) for phase in np.argsort(rest, kind="stable")[:5]]
+
+
+def levels(numbers: NDArray[np.int_], steps: tuple[int, ...]) -> NDArray[np.int_]:
+    """Return the index of the largest step that divides each number.
+
+    Examples
+    --------
+    >>> levels(np.arange(11), (1, 5, 10)).tolist()
+    [2, 0, 0, 0, 0, 1, 0, 0, 0, 0, 2]
+    """
+    level = np.zeros(len(numbers), dtype=int)
+    for index, step in enumerate(steps):
+        level[numbers % step == 0] = index
+    return level
+
+
+__all__ = ["INCH_MM", "Graduation", "Pattern", "flat_cost", "levels", "match_patterns"]
