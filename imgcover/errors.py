@@ -6,6 +6,7 @@
     ├── DeclarationError    an article file that says something impossible or unknown
     ├── CertificateError    a device certificate that is damaged or of another kind
     ├── LotSheetError       a lot sheet with unknown columns, bad cells or escaping paths
+    ├── ClusterError        a scheduler that cannot be trusted, reached or used
     ├── LedgerError         a ledger that cannot be read or written
     └── OutputError         an output file that cannot be written
 
@@ -56,6 +57,10 @@ class CertificateError(ImgcoverError):
 
 class LotSheetError(ImgcoverError):
     """A lot sheet with unknown columns, bad cells, or paths that lead out of its folder."""
+
+
+class ClusterError(ImgcoverError):
+    """A scheduler that cannot be trusted, reached, or used because its workers differ."""
 
 
 class LedgerError(ImgcoverError):
