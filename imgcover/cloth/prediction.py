@@ -23,8 +23,8 @@ from imgcover.quantity import Measured
 COVERAGE = 2.0
 """A declared figure is only called unlike the prediction when it differs by more than two u."""
 NOMINAL_MASS = 0.05
-"""Relative: declared masses are nominal, and the trade's widest tolerance is five percent; a sheet
-is not called wrong within it (tests/outside/test_published_mass.py)."""
+"""Relative: declared masses are nominal, and the widest tolerance usual in the trade is five
+percent; within it a sheet is not called at odds with itself."""
 
 
 @dataclass(frozen=True, slots=True)

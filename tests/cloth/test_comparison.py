@@ -8,7 +8,7 @@ from __future__ import annotations
 from dataclasses import replace
 
 import pytest
-from sheets import sheet
+from declared_sheets import sheet
 
 from imgcover.cloth.comparison import Comparison, ComparisonLine, compare
 from imgcover.cloth.declaration import Declaration

@@ -9,9 +9,9 @@ import math
 from dataclasses import replace
 
 import pytest
+from declared_sheets import sheet
 from hypothesis import given, settings
 from hypothesis import strategies as st
-from sheets import sheet
 
 from imgcover.cloth.prediction import Prediction, predict
 from imgcover.findings import Flag, has

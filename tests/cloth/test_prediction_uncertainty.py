@@ -10,7 +10,7 @@ import math
 
 import numpy as np
 import pytest
-from sheets import sheet
+from declared_sheets import sheet
 from uncertainties import ufloat, umath
 
 from imgcover.cloth.constant import Constant, combined

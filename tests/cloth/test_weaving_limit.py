@@ -8,9 +8,9 @@ from __future__ import annotations
 import math
 
 import pytest
+from declared_sheets import sheet
 from hypothesis import given, settings
 from hypothesis import strategies as st
-from sheets import sheet
 
 from imgcover.cloth.count import read_count
 from imgcover.cloth.diameter import Section
