@@ -179,16 +179,19 @@ def _pixels_hash(array: Stored) -> str:
 def _clipped(stored: Stored, channel: Channel) -> tuple[float, float]:
     """Count the shares of pixels at the smallest and the largest value that can be stored."""
     top = np.iinfo(stored.dtype).max
-    unlit = unclipped = 0
+    dark = bright = 0
     step = max(1, STRIPE // stored.shape[1])
     for first in range(0, len(stored), step):
         stripe = stored[first : first + step]
         if channel in PRIMARIES:
             stripe = cast("Stored", cv2.extractChannel(stripe, PRIMARIES.index(channel)))
-        unlit += _count_within(stripe, 0, 0)
-        unclipped += _count_within(stripe, 0, top - 1)
+        pixels = stripe.shape[0] * stripe.shape[1]
+        inside = _count_within(stripe, 1, top - 1)
+        if inside < pixels:  # most stripes need no second look
+            dark += _count_within(stripe, 0, 0)
+            bright += pixels - _count_within(stripe, 0, top - 1)
     pixels = stored.shape[0] * stored.shape[1]
-    return unlit / pixels, 1 - unclipped / pixels
+    return dark / pixels, bright / pixels
 
 
 def _count_within(stored: Stored, low: int, high: int) -> int:

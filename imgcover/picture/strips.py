@@ -8,6 +8,7 @@ TIFF revision 6.0 (Adobe, 1992), sections 3, 9, 13, 14, 15, 22.
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator
+from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass
 from typing import cast
 
@@ -31,8 +32,20 @@ CODECS: dict[int, Callable[[bytes, int], bytes | bytearray]] = {
 """Compression tag to the decoder of one piece, given the bytes it must yield; 7 is JPEG, which
 yields pixels and is decoded apart."""
 PLAIN, JPEG = 1, 7
+UNPACKERS = 2
+"""Threads: one would take longer over an LZW scan than over the same scan as PNG."""
 LARGEST_TILE = 1 << 26
 """Pixels. A tile may be larger than its picture, but not so that decoding it fills the memory."""
+
+
+@dataclass(frozen=True, slots=True)
+class Piece:
+    """One strip or tile: its packed bytes, its plane, its first row and its first column."""
+
+    packed: memoryview
+    plane: int
+    row: int
+    column: int
 
 
 @dataclass(frozen=True, slots=True)
@@ -56,15 +69,15 @@ class Layout:
     offsets: tuple[int, ...]
     counts: tuple[int, ...]
 
-    def pieces(self) -> Iterator[tuple[memoryview, int, int, int]]:
-        """Yield the packed bytes of each piece with its plane, first row and first column."""
+    def pieces(self) -> Iterator[Piece]:
+        """Yield the strips or tiles in the order in which the file lists them."""
         down = -(-self.height // self.rows)
         across = -(-self.width // self.columns)
         view = memoryview(self.data)  # slices of it copy nothing
         for index, (at, count) in enumerate(zip(self.offsets, self.counts, strict=True)):
             plane, inside = divmod(index, down * across)
             row, column = divmod(inside, across)
-            yield view[at : at + count], plane, row * self.rows, column * self.columns
+            yield Piece(view[at : at + count], plane, row * self.rows, column * self.columns)
 
     def expected(self) -> int:
         """Count the pieces a whole page has; 0 when the sizes make no sense."""
@@ -104,13 +117,18 @@ def decode_layout(layout: Layout, name: str, *, lookup: Stored | None, inverted:
         raise damaged(name, "the TIFF is damaged: strips or tiles are missing")
     dtype = np.uint8 if layout.bits == 8 else np.uint16
     page = cast("Stored", np.empty((layout.height, layout.width, layout.samples), dtype=dtype))
-    for packed, plane, row, column in layout.pieces():
-        height = layout.rows if layout.tiled else min(layout.rows, layout.height - row)
-        piece = _piece(layout, packed, height, name)
-        place = page[row : row + height, column : column + layout.columns]
+
+    def place(piece: Piece) -> None:
+        height = layout.rows if layout.tiled else min(layout.rows, layout.height - piece.row)
+        pixels = _pixels(layout, piece.packed, height, name)
+        room = page[piece.row : piece.row + height, piece.column : piece.column + layout.columns]
         if layout.planar:
-            place = place[..., plane : plane + 1]
-        place[...] = piece[: place.shape[0], : place.shape[1]]
+            room = room[..., piece.plane : piece.plane + 1]
+        room[...] = pixels[: room.shape[0], : room.shape[1]]
+
+    with ThreadPoolExecutor(UNPACKERS) as beside:  # decoders release the interpreter
+        for _ in beside.map(place, layout.pieces()):
+            pass
     if inverted:
         np.subtract(np.iinfo(dtype).max, page[..., 0], out=page[..., 0])
     if lookup is not None:
@@ -118,7 +136,7 @@ def decode_layout(layout: Layout, name: str, *, lookup: Stored | None, inverted:
     return page[..., 0] if layout.samples == 1 else page
 
 
-def _piece(layout: Layout, packed: memoryview, height: int, name: str) -> Stored:
+def _pixels(layout: Layout, packed: memoryview, height: int, name: str) -> Stored:
     """Decode one strip or tile to its shape (height, columns, samples of the piece)."""
     samples = 1 if layout.planar else layout.samples
     shape = (height, layout.columns, samples)
