@@ -19,8 +19,8 @@ EXAMPLES = """\b
 Examples:
   imgcover draw harrow.toml --dpi 1200 --light backlit -o drawn
   imgcover draw harrow.toml --departs picks=0.92 --turn 2 --seed 7 -o drawn
-  imgcover draw --orders samples-synthetic/drawn.toml -o anew
-  imgcover draw --check samples-synthetic/drawn.toml
+  imgcover draw --recorded samples-synthetic/drawn.toml -o anew
+  imgcover draw --recorded samples-synthetic/drawn.toml --compare
 """
 MM_PER_INCH = 25.4
 COARSEST, FINEST = 50.0, 12_800.0
@@ -32,16 +32,16 @@ SMALLEST, LARGEST = 16, 20_000
 def draw(
     articles: Annotated[
         list[Path] | None,
-        typer.Argument(metavar="[ARTICLE]", help="Declarations (TOML) of the cloths to draw."),
+        typer.Argument(metavar="ARTICLE", help="Declarations (TOML) of the cloths to draw."),
     ] = None,
-    orders: Annotated[
+    recorded: Annotated[
         Path | None,
-        typer.Option(metavar="FILE", help="Draw every picture that a file of orders records."),
+        typer.Option(metavar="FILE", help="Draw every picture that this file records, anew."),
     ] = None,
-    check: Annotated[
-        Path | None,
-        typer.Option(metavar="FILE", help="Draw them anew and compare them with those kept."),
-    ] = None,
+    compare: Annotated[
+        bool,
+        typer.Option("--compare", help="Hold them against the recorded ones; write nothing."),
+    ] = False,
     light: Annotated[
         Literal["backlit", "reflected"], typer.Option(help="From which side the light comes.")
     ] = "backlit",
@@ -70,13 +70,15 @@ def draw(
     from imgcover.loom.camera import CameraSpec
     from imgcover.loom.redraw import draw_into, redraw
 
-    if sum(bool(each) for each in (articles, orders, check)) != 1:
-        raise typer.BadParameter("give articles to draw, or --orders FILE, or --check FILE")
-    if check is not None:
-        return _checked(check)
+    if bool(articles) == (recorded is not None):
+        raise typer.BadParameter("give articles to draw, or --recorded FILE")
+    if compare and recorded is None:
+        raise typer.BadParameter("--compare goes with --recorded FILE")
+    if recorded is not None and compare:
+        return _compared(recorded)
     with opened(None, encoding=None) as write:
-        if orders is not None:
-            for path in redraw(orders, output):
+        if recorded is not None:
+            for path in redraw(recorded, output):
                 write(f"{path}\n")
             return ExitCode.CONFORMS
         camera = _camera(CameraSpec, light=light, dpi=dpi, turn=turn)
@@ -96,15 +98,15 @@ def draw(
     return ExitCode.CONFORMS
 
 
-def _checked(orders: Path) -> ExitCode:
+def _compared(recorded: Path) -> ExitCode:
     """Compare kept pictures with the same drawn anew; what differs does not conform."""
     from imgcover.loom.redraw import compare
 
     code = ExitCode.CONFORMS
     with opened(None, encoding=None) as write:
-        for compared in compare(orders):
-            write(f"{compared.file}: {compared.differs or 'the same'}\n")
-            code = code if compared.same else ExitCode.DOES_NOT_CONFORM
+        for each in compare(recorded):
+            write(f"{each.file}: {each.differs or 'the same'}\n")
+            code = code if each.same else ExitCode.DOES_NOT_CONFORM
     return code
 
 
