@@ -8,6 +8,7 @@
     ├── LotSheetError       a lot sheet with unknown columns, bad cells or escaping paths
     ├── ClusterError        a scheduler that cannot be trusted, reached or used
     ├── LedgerError         a ledger that cannot be read or written
+    ├── OptionError         an option, or a lot sheet's cell, that says something impossible
     └── OutputError         an output file that cannot be written
 
 A weak number is not an error: it is a finding (`imgcover.findings`). A wrong call is a `ValueError`.
@@ -65,6 +66,10 @@ class ClusterError(ImgcoverError):
 
 class LedgerError(ImgcoverError):
     """A ledger that cannot be opened, read or written."""
+
+
+class OptionError(ImgcoverError):
+    """An option, or a lot sheet's cell, that says something impossible."""
 
 
 class OutputError(ImgcoverError):

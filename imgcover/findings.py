@@ -87,6 +87,17 @@ class Flag(Enum):
         "the stated transfer curve is not the one the file claims",
         "leave --tone out to follow the file",
     )
+    # request
+    REGION_OUTSIDE = (
+        Severity.REFUSAL,
+        "the region that was asked for does not lie inside the picture",
+        "give --region as X,Y,W,H in pixels of the picture as shown",
+    )
+    EXPOSURE_OTHER_SIZE = (
+        Severity.REFUSAL,
+        "the blank or dark exposure has another size than the picture",
+        "take it with the same camera, place and resolution",
+    )
     # scale
     NO_SCALE = (
         Severity.REFUSAL,
@@ -149,6 +160,51 @@ class Flag(Enum):
         Severity.WARNING,
         "only 3 to 5 pixels a thread",
         "scan at a higher resolution to be safe",
+    )
+    NO_CROSSING_THREADS = (
+        Severity.REFUSAL,
+        "no two crossing sets of threads stand out: nothing was counted",
+        "take a sharp picture of flat cloth that fills the frame, at 10 or more pixels a thread",
+    )
+    NOT_WOVEN = (
+        Severity.REFUSAL,
+        "what repeats in the picture does not look like ends crossing picks: nothing was counted",
+        "if it is woven cloth, scan it at a higher resolution or on a light table",
+    )
+    TWO_READINGS = (
+        Severity.REFUSAL,
+        "two readings of the threads stay possible: not counted",
+        "look at the cloth under a glass, or scan it at a higher resolution",
+    )
+    TOO_FEW_THREADS = (
+        Severity.REFUSAL,
+        "fewer than six threads lie in the picture",
+        "take in more of the cloth",
+    )
+    RESTS_ON_DECLARED_WEAVE = (
+        Severity.WARNING,
+        "two readings were possible and the declared weave decided between them",
+        "confirm the weave under a glass",
+    )
+    WARP_UNCERTAIN = (
+        Severity.WARNING,
+        "the swatch is turned by about 45 degrees: which set is the warp is a guess",
+        "lay the warp along an edge of the picture",
+    )
+    SWATCH_TURNED = (
+        Severity.INFO,
+        "the swatch does not lie straight",
+        "nothing to do: densities are taken at right angles to the threads",
+    )
+    TILES_LEFT_OUT = (
+        Severity.INFO,
+        "parts of the field could not be followed and were left out",
+        "look at the overlay",
+    )
+    MIDDLE_COUNTED = (
+        Severity.INFO,
+        "the picture is large; its middle was counted",
+        "give --region to count another part",
     )
     # cover
     LIGHT_NOT_STATED = (
