@@ -97,7 +97,7 @@ def _fineness(cloth: ClothSpec, camera: CameraSpec) -> int:
     """Choose how many fine points a pixel gets in each direction."""
     per_mm = min(camera.px_per_mm, camera.y_per_mm)
     pitch_px = per_mm / max(cloth.ends_per_mm, cloth.picks_per_mm)
-    return min(max(math.ceil(FINE_A_PITCH / pitch_px), 2), 10)
+    return min(max(math.ceil(FINE_A_PITCH / pitch_px), 2), 8)
 
 
 def _halo(camera: CameraSpec) -> int:
