@@ -284,6 +284,37 @@ class Flag(Enum):
         "pictures of one place give densities further apart than their uncertainties",
         "see whether they show the same place and have the right scale",
     )
+    # audit
+    PICTURE_OUT_OF_REACH = (
+        Severity.REFUSAL,
+        "the picture lies outside the audited folder, or is no ordinary file",
+        "copy the picture itself into the folder",
+    )
+    MEASURING_DIED = (
+        Severity.REFUSAL,
+        "measuring ended its process twice, the second time alone on the machine",
+        "export the picture again; if it is sound, give the machine more memory",
+    )
+    MEASURING_TOOK_TOO_LONG = (
+        Severity.REFUSAL,
+        "measuring was not done within its time limit, twice",
+        "audit again with a longer --time-limit, or export the picture again",
+    )
+    PROGRAM_FAULT = (
+        Severity.REFUSAL,
+        "the program itself failed on this picture",
+        "run imgcover measure on it with IMGCOVER_DEBUG=1 and report what it says",
+    )
+    DECLARATION_UNREADABLE = (
+        Severity.WARNING,
+        "the declaration could not be read, so nothing was decided",
+        "correct the article file and audit again",
+    )
+    SAME_PICTURE_TWICE = (
+        Severity.WARNING,
+        "two pictures of a lot show the same pixels and were counted once",
+        "take a picture of each place",
+    )
 
     @property
     def code(self) -> str:
