@@ -156,14 +156,18 @@ class Ledger:
 
     def find(self, subject: str, key: str) -> Entry | None:
         """Look up what was said about a subject under a key, be it in place or waiting."""
-        for table, order in (("entry", "ORDER BY n DESC"), ("waiting", "")):
-            row = self._one(
-                f"SELECT {ENTRY} FROM {table} WHERE subject = ? AND key = ? {order} LIMIT 1",
-                (subject, key),
-            )
-            if row is not None:
-                return Entry(*row)
-        return None
+        row = self._one(
+            f"SELECT {ENTRY} FROM entry WHERE subject = ? AND key = ? ORDER BY n DESC LIMIT 1",
+            (subject, key),
+        )
+        return self.waiting(subject, key) if row is None else Entry(*row)
+
+    def waiting(self, subject: str, key: str) -> Entry | None:
+        """Look up what waits for its place."""
+        row = self._one(
+            f"SELECT {ENTRY} FROM waiting WHERE subject = ? AND key = ?", (subject, key)
+        )
+        return None if row is None else Entry(*row)
 
     def last(self, subject: str) -> Row | None:
         """Look up what the ledger says now about a subject."""

@@ -53,3 +53,8 @@ def broken_order() -> object:
 class _Unloadable:
     def __reduce__(self) -> tuple[object, tuple[str]]:
         return (__import__, ("no_such_library",))
+
+
+def unlike() -> int:
+    """What no two processes agree on."""
+    return os.getpid()

@@ -1,0 +1,126 @@
+"""Where an audit writes: everything inside one folder, each file whole or not at all."""
+
+from __future__ import annotations
+
+import contextlib
+import hashlib
+import os
+import re
+from collections.abc import Callable, Iterator
+from pathlib import Path
+
+from imgcover.errors import OutputError
+
+LONGEST_STEM = 40
+"""Letters of a lot's name in its page's name; the whole name stands in the page."""
+
+
+class OutFolder:
+    """The folder of an audit's reports.
+
+    Parameters
+    ----------
+    root : Path
+        Made where there is none.
+
+    Raises
+    ------
+    OutputError
+        When it cannot be made or is no folder.
+    """
+
+    def __init__(self, root: Path) -> None:
+        self.root = root
+        with _told(root):
+            for folder in (root, root / "lots", root / "small"):
+                folder.mkdir(parents=True, exist_ok=True)
+
+    @property
+    def ledger(self) -> Path:
+        """Where the ledger is unless another place was named."""
+        return self.root / "ledger.sqlite"
+
+    def write(self, name: str, content: bytes | str) -> None:
+        """Write a file beside its place and rename it.
+
+        Raises
+        ------
+        OutputError
+            When it cannot be written.
+        """
+        with self.writing(name) as write:
+            write(content if isinstance(content, bytes) else content.encode())
+
+    @contextlib.contextmanager
+    def writing(self, name: str) -> Iterator[Callable[[bytes], None]]:
+        """Open a file that appears whole when this ends well, and not at all otherwise."""
+        place = self.root / name
+        # two audits may write here at once
+        beside = place.with_name(f".{place.name}.{os.getpid()}.part")
+        with _told(place):
+            try:
+                with beside.open("wb") as file:
+
+                    def write(content: bytes) -> None:
+                        file.write(content)
+
+                    yield write
+                    file.flush()
+                    os.fsync(file.fileno())
+                beside.replace(place)
+            finally:
+                beside.unlink(missing_ok=True)
+
+    def small(self, key: str) -> Path:
+        """Where the small picture of a record lies."""
+        return self.root / "small" / f"{key[:32]}.jpg"
+
+    def keep_small(self, key: str, content: bytes) -> None:
+        """Keep a small picture; it is drawn, not measured, so the disk may take its time."""
+        place = self.small(key)
+        beside = place.with_name(f".{place.name}.{os.getpid()}.part")
+        with _told(place):
+            beside.write_bytes(content)
+            beside.replace(place)
+
+    def small_content(self, key: str) -> bytes | None:
+        """Read a small picture; None where none was kept."""
+        try:
+            return self.small(key).read_bytes()
+        except OSError:
+            return None
+
+
+def page_name(lot: str, article: str) -> str:
+    """Name a lot's page by plain letters that every system and address takes.
+
+    Examples
+    --------
+    >>> page_name("4711", "")
+    'lots/4711.html'
+    >>> page_name("../4711 é", "")
+    'lots/4711-07bc2718.html'
+    """
+    stem = re.sub(r"[^A-Za-z0-9]+", "-", lot).strip("-")[:LONGEST_STEM]
+    if stem != lot or article or stem.lower() in RESERVED:
+        told = hashlib.sha256(f"{lot}\n{article}".encode("utf-8", "surrogatepass")).hexdigest()
+        stem = f"{stem}-{told[:8]}".lstrip("-")
+    return f"lots/{stem}.html"
+
+
+RESERVED = frozenset({"con", "prn", "aux", "nul", *(f"{d}{n}" for d in ("com", "lpt") for n in range(10))})
+"""Names of devices on Windows, whatever ending they are given."""
+
+
+@contextlib.contextmanager
+def _told(place: Path) -> Iterator[None]:
+    try:
+        yield
+    except OSError as fault:
+        reason = fault.strerror or type(fault).__name__
+        raise OutputError(
+            str(place), f"cannot be written ({reason})", "choose another --out, or make room"
+        ) from fault
+
+
+__all__ = ["OutFolder", "page_name"]
