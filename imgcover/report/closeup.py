@@ -2,15 +2,16 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 
 import numpy as np
 from numpy.typing import NDArray
 
 from imgcover.cover.reading import Seen
-from imgcover.report.canvas import ENDS, PICKS, PORE, Canvas, Colour, eight_bits, resized, tinted
-from imgcover.report.strips import Path, thread_places
-from imgcover.threads.reading import ThreadReading, ThreadSet, Tile
+from imgcover.report.canvas import PORE, Canvas, eight_bits, resized, tinted
+from imgcover.report.strips import Marked, Path, thread_places
+from imgcover.threads.reading import Tile
 
 THREADS_SHOWN = 14
 """Threads across the close-up: as many as are counted at a glance."""
@@ -34,7 +35,8 @@ def middle_of_interest(
 def close_up(
     shown: NDArray[np.uint8 | np.uint16],
     *,
-    reading: ThreadReading,
+    marked: Sequence[Marked],
+    tiles: Sequence[Tile],
     seen: Sequence[Seen],
     side: int,
 ) -> Canvas:
@@ -44,15 +46,17 @@ def close_up(
     ----------
     shown : ndarray, shape (rows, columns) or (rows, columns, 3), uint8 or uint16
         The picture as stored.
-    reading : ThreadReading
+    marked : sequence of Marked
         Its threads.
+    tiles : sequence of Tile
+        The pieces of the field.
     seen : sequence of Seen
         Its pores, where cover was measured.
     side : int
         Of the sheet, px.
     """
-    middle = middle_of_interest(shown.shape, reading.tiles, seen)
-    pitches = [each.pixels_a_thread for each in (reading.ends, reading.picks) if each is not None]
+    middle = middle_of_interest(shown.shape, tiles, seen)
+    pitches = [each.threads.pixels_a_thread for each in marked]
     reach = int(min(THREADS_SHOWN * max(pitches, default=10.0), *shown.shape[:2]))
     left = int(np.clip(middle[0] - reach / 2, 0, shown.shape[1] - reach))
     top = int(np.clip(middle[1] - reach / 2, 0, shown.shape[0] - reach))
@@ -63,43 +67,34 @@ def close_up(
     sheet = Canvas.blank(side, side)
     sheet.put(pixels, (0, 0))
     scale = side / reach
-    for threads, phase, colour in (
-        (reading.ends, reading.phase[0], ENDS),
-        (reading.picks, reading.phase[1], PICKS),
-    ):
-        if threads is not None:
-            _lines(
-                sheet, shown, threads, phase, colour, corner=(left, top), reach=reach, scale=scale
-            )
+    for each in marked:
+        _lines(sheet, each, corner=(left, top), reach=reach, scale=scale)
     return sheet
 
 
 def _lines(
     sheet: Canvas,
-    shown: NDArray[np.uint8 | np.uint16],
-    threads: ThreadSet,
-    phase: float,
-    colour: Colour,
+    marked: Marked,
     *,
     corner: tuple[int, int],
     reach: int,
     scale: float,
 ) -> None:
-    """Draw each thread's line over the half of the square nearer to where counting starts."""
-    size = 1.0 / threads.pixels_a_thread
-    across = (threads.frequency[0] / size, threads.frequency[1] / size)
+    """Draw each thread's line right across the square."""
+    fx, fy = marked.threads.frequency
+    size = math.hypot(fx, fy)
+    across = (fx / size, fy / size)
     middle = (corner[0] + reach / 2, corner[1] + reach / 2)
-    # a longer way than is shown, so that the threads are followed from outside the square
     half = 0.75 * reach
     path = Path((middle[0] - half * across[0], middle[1] - half * across[1]), across, 2 * half)
     along = (-across[1], across[0])
-    for place in thread_places(shown, path, threads=threads, phase=phase):
-        x, y = path.at(float(place))
+    for _, place in thread_places(marked, path):
+        x, y = path.at(place)
         ends = [
             ((x + far * along[0] - corner[0]) * scale, (y + far * along[1] - corner[1]) * scale)
             for far in (-reach, reach)
         ]
-        sheet.line(ends[0], ends[1], colour)
+        sheet.line(ends[0], ends[1], marked.colour)
 
 
 def _open_share(

@@ -7,7 +7,7 @@ the mean cell and the light levels; and the counted ways, row under row, each th
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from pathlib import Path
 from typing import Any
 
@@ -32,7 +32,7 @@ from imgcover.report.closeup import close_up
 from imgcover.report.headline import headline
 from imgcover.report.layout import Units
 from imgcover.report.levels import draw_histogram, draw_mean_cell
-from imgcover.report.strips import MARGIN, counting_strip, path_across
+from imgcover.report.strips import MARGIN, Marked, counting_strip, marked_sets, path_across
 from imgcover.report.wholeview import draw_path, draw_region, draw_scale_bar, draw_whole, fitted
 from imgcover.scale.scale import Scale
 from imgcover.threads.reading import ThreadReading
@@ -72,34 +72,35 @@ def overlay(
     ndarray, shape (rows, 1600, 3), uint8, RGB
     """
     reading = CoverReading() if cover is None else cover
+    marked = marked_sets(threads, backlit=record["light"] == "backlit")
     sheets = [
         _header(record, units, has_pores=bool(reading.seen)),
-        _views(picture, threads, scale, reading, region),
+        _views(picture, threads, marked, scale, reading, region),
     ]
     if reading.histogram is not None or reading.mean_cell is not None:
         sheets.append(_levels(reading))
-    for set_, phase, colour, name in (
-        (threads.ends, threads.phase[0], ENDS, "ends"),
-        (threads.picks, threads.phase[1], PICKS, "picks"),
-    ):
-        if set_ is not None:
-            title = f"{name}: {set_.counted:.2f} counted over {set_.length_px:.0f} px"
-            length = (record["threads"] or {}).get(f"length_{name}_mm")
-            title += "" if length is None else f" = {length:.2f} mm"
-            turned = abs(set_.frequency[1]) > abs(set_.frequency[0])
-            title += "  (laid from top to bottom)" if turned else ""
-            sheets.append(
-                counting_strip(
-                    picture.stored,
-                    threads=set_,
-                    phase=phase,
-                    tiles=threads.tiles,
-                    colour=colour,
-                    title=title,
-                    width=SHEET,
-                )
-            )
+    sheets += [
+        counting_strip(
+            picture.stored,
+            each,
+            tiles=threads.tiles,
+            title=_title(each, record["threads"]),
+            width=SHEET,
+        )
+        for each in marked
+    ]
     return stacked(sheets).pixels
+
+
+def _title(marked: Marked, section: Mapping[str, Any] | None) -> str:
+    """What was counted over which length, in the numbers of the record."""
+    threads = marked.threads
+    title = f"{marked.name}: {threads.counted:.2f} counted over {threads.length_px:.0f} px"
+    length = None if section is None else section[f"length_{marked.name}_mm"]
+    if length is not None:
+        title += f" = {length:.2f} mm"
+    fx, fy = threads.frequency
+    return f"{title}  (laid from top to bottom)" if abs(fy) > abs(fx) else title
 
 
 def write_overlay(pixels: Pixels, path: Path) -> None:
@@ -141,6 +142,7 @@ def _header(record: Mapping[str, Any], units: Units, *, has_pores: bool) -> Canv
 def _views(
     picture: Picture,
     threads: ThreadReading,
+    marked: Sequence[Marked],
     scale: Scale | None,
     cover: CoverReading,
     region: tuple[int, int, int, int] | None,
@@ -155,14 +157,15 @@ def _views(
         seen=cover.seen,
         light_field=cover.light_field,
     )
-    for set_, colour in ((threads.ends, ENDS), (threads.picks, PICKS)):
-        if set_ is not None:
-            draw_path(sheet, view, path_across(set_, threads.tiles), colour)
+    for each in marked:
+        draw_path(sheet, view, path_across(each.threads, threads.tiles), each.colour)
     if region is not None:
         draw_region(sheet, view, region, INK)
     if scale is not None:
         draw_scale_bar(sheet, view, scale.x.value)
-    large = close_up(picture.stored, reading=threads, seen=cover.seen, side=CLOSE_UP)
+    large = close_up(
+        picture.stored, marked=marked, tiles=threads.tiles, seen=cover.seen, side=CLOSE_UP
+    )
     corner = (SHEET - MARGIN - CLOSE_UP, 8)
     sheet.image.paste(large.image, corner)
     return sheet

@@ -10,9 +10,10 @@ from itertools import pairwise
 import cv2
 import numpy as np
 from numpy.typing import NDArray
+from scipy.ndimage import map_coordinates
 
-from imgcover.report.canvas import LEFT_OUT, Canvas, Colour, Pixels, eight_bits
-from imgcover.threads.reading import ThreadSet, Tile
+from imgcover.report.canvas import ENDS, LEFT_OUT, PICKS, Canvas, Colour, Pixels, eight_bits
+from imgcover.threads.reading import ThreadReading, ThreadSet, Tile, Track
 
 MARGIN = 24
 """White left and right of a strip, px."""
@@ -26,9 +27,6 @@ RULER = 26
 """Height of the numbers and ticks above it, px."""
 ROWS = 24
 """Most rows a strip is broken into; what is beyond them is said, not drawn."""
-FOLLOWED = 3.0
-"""Standard deviation, in threads, of the window that follows the threads: wide enough to keep the
-weave repeat out, narrow enough to go with a missing end."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -136,60 +134,102 @@ def strip_pixels(
     return eight_bits(cut)
 
 
-def thread_places(
-    shown: NDArray[np.uint8 | np.uint16], path: Path, *, threads: ThreadSet, phase: float
-) -> NDArray[np.float64]:
+@dataclass(frozen=True, slots=True, eq=False)
+class Marked:
+    """One set of threads as it is drawn.
+
+    Parameters
+    ----------
+    threads : ThreadSet
+        What was counted.
+    track : Track
+        Where it was followed.
+    phase : ndarray, shape of the track's grid, float64
+        Its phase there, cycles; whole numbers lie on the middle of each thread.
+    name : str
+        "ends" or "picks".
+    colour : tuple of int
+        Of its marks.
+    """
+
+    threads: ThreadSet
+    track: Track
+    phase: NDArray[np.float64]
+    name: str
+    colour: Colour
+
+
+def marked_sets(reading: ThreadReading, *, backlit: bool) -> list[Marked]:
+    """The counted sets of a reading, with their phases turned to the middle of the threads.
+
+    The track's whole numbers lie on the lightest line: before light, that is the gap.
+    """
+    if reading.track is None:
+        return []
+    aside = 0.5 if backlit else 0.0
+    sides = (
+        (reading.ends, reading.track.ends, "ends", ENDS),
+        (reading.picks, reading.track.picks, "picks", PICKS),
+    )
+    return [
+        Marked(threads, reading.track, phase + aside, name, colour)
+        for threads, phase, name, colour in sides
+        if threads is not None
+    ]
+
+
+def thread_places(marked: Marked, path: Path) -> list[tuple[int, float]]:
     """Where along the path each thread's middle lies.
 
     Parameters
     ----------
-    shown : ndarray, shape (rows, columns) or (rows, columns, 3)
-        The picture as stored.
+    marked : Marked
+        The set that is crossed.
     path : Path
-        A way across the threads.
-    threads : ThreadSet
-        What was read of them.
-    phase : float
-        Cycles at pixel (0, 0), as `ThreadReading.phase` gives it.
+        A way across it.
 
     Returns
     -------
-    ndarray, shape (n,), float64
-        px from the start of the path, rising.
-
-    Notes
-    -----
-    The picture's own threads are followed, not a comb of even teeth laid over it: where a count
-    were wrong, lines and threads would part.
+    list of (int, float)
+        The thread's number, counted on through places that could not be followed, and px from
+        the start of the path; threads in such places are left out.
     """
-    frequency = 1.0 / threads.pixels_a_thread
-    thick = max(25, round(8 * threads.pixels_a_thread))
-    profile = strip_pixels(shown, path, scale=1.0, height=thick).mean(axis=(0, 2))
-    walked = np.arange(profile.size)
-    carrier = np.exp(-2j * np.pi * frequency * walked) * (profile - profile.mean())
-    sigma = FOLLOWED * threads.pixels_a_thread
-    parts = [
-        cv2.GaussianBlur(part[None, :], (0, 0), sigma)[0] for part in (carrier.real, carrier.imag)
+    track = marked.track
+    walked = np.arange(0.0, path.length, 0.5)
+    x = path.start[0] + walked * path.across[0]
+    y = path.start[1] + walked * path.across[1]
+    column = np.interp(x, track.x, np.arange(track.x.size))
+    row = np.interp(y, track.y, np.arange(track.y.size))
+    deviation = marked.phase - _plane(marked.threads, track)
+    at = np.stack([row, column])
+    cycles = map_coordinates(deviation, at, order=1, mode="nearest")
+    cycles += marked.threads.frequency[0] * x + marked.threads.frequency[1] * y
+    followed = map_coordinates(track.valid.astype(np.float32), at, order=0, mode="nearest") > 0
+    if followed.sum() < 2:
+        return []
+    rising = np.maximum.accumulate(cycles[followed])
+    first = math.ceil(rising[0])
+    numbers = np.arange(first, math.floor(rising[-1]) + 1)
+    places = np.interp(numbers, rising, walked[followed])
+    near = np.clip(np.searchsorted(walked, places), 0, walked.size - 1)
+    return [
+        (int(number) - first + 1, float(place))
+        for number, place, seen in zip(numbers, places, followed[near], strict=True)
+        if seen
     ]
-    followed = np.unwrap(np.arctan2(parts[1], parts[0])) / (2 * np.pi)
-    cycles = frequency * walked + followed
-    # threads are the dark or the bright half of the cycle: the reading knows which
-    read = frequency * walked + (
-        threads.frequency[0] * path.start[0] + threads.frequency[1] * path.start[1] + phase
-    )
-    apart = np.angle(np.mean(np.exp(2j * np.pi * (read - cycles)))) / (2 * np.pi)
-    cycles = np.maximum.accumulate(cycles + round(2 * apart) / 2)
-    counted = np.arange(math.ceil(cycles[0]), math.floor(cycles[-1]) + 1)
-    return np.interp(counted, cycles, walked)
+
+
+def _plane(threads: ThreadSet, track: Track) -> NDArray[np.float64]:
+    """The even part of the phase: what is left varies slowly enough to be interpolated."""
+    fx, fy = threads.frequency
+    return np.asarray(fx * track.x[None, :] + fy * track.y[:, None])
 
 
 def counting_strip(
     shown: NDArray[np.uint8 | np.uint16],
+    marked: Marked,
     *,
-    threads: ThreadSet,
-    phase: float,
     tiles: Sequence[Tile],
-    colour: Colour,
     title: str,
     width: int,
 ) -> Canvas:
@@ -199,40 +239,43 @@ def counting_strip(
     ----------
     shown : ndarray, shape (rows, columns) or (rows, columns, 3), uint8 or uint16
         The picture as stored.
-    threads, phase, tiles
-        The reading of one set.
-    colour : tuple of int
-        Of the marks.
+    marked : Marked
+        The set that is crossed.
+    tiles : sequence of Tile
+        The pieces of the field.
     title : str
         What was counted.
     width : int
         Of the sheet, px.
     """
-    path = path_across(threads, tiles)
-    pitch = threads.pixels_a_thread
-    scale = (
-        math.ceil(THREAD_SHOWN / pitch) if pitch < THREAD_SHOWN else min(1.0, WIDEST_SHOWN / pitch)
-    )
-    places = thread_places(shown, path, threads=threads, phase=phase)
+    path = path_across(marked.threads, tiles)
+    scale = _magnification(marked.threads.pixels_a_thread)
+    places = thread_places(marked, path)
     room = (width - 2 * MARGIN) / scale
     needed = math.ceil(path.length / room)
     rows = min(ROWS, needed)
     sheet = Canvas.blank(width, 44 + rows * (RULER + STRIP + 8))
     left = f"  (the first {rows} of {needed} rows)" if needed > rows else ""
-    sheet.words(title + left, (MARGIN, 12), size=17, colour=colour)
+    sheet.words(title + left, (MARGIN, 12), size=17, colour=marked.colour)
     for row in range(rows):
         piece = Path(path.at(row * room), path.across, min(room, path.length - row * room))
         top = 44 + row * (RULER + STRIP + 8)
-        pixels = strip_pixels(shown, piece, scale=scale, height=STRIP)
         numbered = [
-            (number + 1, MARGIN + (place - row * room) * scale)
-            for number, place in enumerate(places)
+            (number, MARGIN + (place - row * room) * scale)
+            for number, place in places
             if 0 <= place - row * room <= piece.length
         ]
-        sheet.put(pixels, (MARGIN, top + RULER))
+        sheet.put(strip_pixels(shown, piece, scale=scale, height=STRIP), (MARGIN, top + RULER))
         _mark_left_out(sheet, piece, tiles, scale=scale, top=top + RULER + STRIP)
-        _mark_threads(sheet, numbered, top=top, colour=colour)
+        _mark_threads(sheet, numbered, top=top, colour=marked.colour)
     return sheet
+
+
+def _magnification(pitch: float) -> float:
+    """Strip pixels a picture pixel, whole where larger, for threads that far apart."""
+    if pitch < THREAD_SHOWN:
+        return float(math.ceil(THREAD_SHOWN / pitch))
+    return min(1.0, WIDEST_SHOWN / pitch)
 
 
 def _mark_threads(
@@ -265,4 +308,7 @@ def _holds(tile: Tile, x: float, y: float) -> bool:
     return 0 <= x - tile.x < tile.width and 0 <= y - tile.y < tile.height
 
 
-__all__ = ["Path", "counting_strip", "path_across", "strip_pixels", "thread_places"]
+__all__ = [
+    *("Marked", "Path", "counting_strip", "marked_sets"),
+    *("path_across", "strip_pixels", "thread_places"),
+]
