@@ -160,7 +160,6 @@ def _strip(
         shown = hidden if isinstance(hidden, float) else hidden[keep]
         tally.add(end.covered[keep], pick.covered[keep], shown, inside)
         met.add(end, pick, inside, own, halo * s)
-    at = cross(end, pick, loom.woven)
     textures = (
         surface(loom.fibres, end, v, cloth.end_diameter_mm),
         surface(loom.fibres, pick, u, cloth.pick_diameter_mm),
@@ -169,10 +168,11 @@ def _strip(
     backlit = camera.light == "backlit"
     fold = creased(cloth.faults, frame, grid.x_mm, grid.y_mm, backlit=backlit)
     if backlit:
-        passed = through(cloth, at, loom.warp, loom.weft, textures, dirt)
+        passed = through(cloth, (end, pick), (loom.warp, loom.weft), textures, dirt)
         light = _tinted(loom, passed * (1 - (1 - HAIR_PASSES) * hidden), passed)
         bare = (1 - end.covered) * (1 - pick.covered)
         return light * np.asarray(bare + (1 - bare) * fold, dtype=np.float32)[..., None]
+    at = cross(end, pick, loom.woven)
     parts = reflected(cloth, at, loom.warp, loom.weft, textures, dirt, bed=camera.bed)
     return _mixed(loom, parts, hidden) * np.asarray(fold, dtype=np.float32)[..., None]
 

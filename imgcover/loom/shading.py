@@ -62,9 +62,8 @@ def surface(fibres: Fibres, thread: Nearest, along: Floats, diameter_mm: float) 
 
 def through(
     cloth: ClothSpec,
-    at: Crossing,
-    warp: System,
-    weft: System,
+    threads: tuple[Nearest, Nearest],
+    systems: tuple[System, System],
     textures: tuple[Floats, Floats],
     stain: Floats | float,
 ) -> Floats:
@@ -78,7 +77,7 @@ def through(
     section = _section(cloth.section)
     passed = np.float32(1)
     darker = np.float32(np.log(cloth.tau)) * (1 + stain)
-    for thread, system, texture in ((at.end, warp, textures[0]), (at.pick, weft, textures[1])):
+    for thread, system, texture in zip(threads, systems, textures, strict=True):
         depth = np.take(section, (np.abs(thread.across) * (section.size - 1)).astype(np.int32))
         depth *= thread.half * np.float32(1 / system.half_mm)
         depth *= 1 + np.float32(0.4 * cloth.twist) * texture
