@@ -1,55 +1,41 @@
-"""What must be wrong? Weighs every cause against all that was seen. It indicates, it never proves.
-
-Every cause predicts, at each of its sizes, what would be seen and how unsure that is. Its weight
-is its prior times the probability of what was seen, averaged over its sizes: a cause that could
-explain anything is thereby weaker than one that predicted just this (Jeffreys' Bayes factor, with
-the Occam factor that comes from averaging).
-"""
+"""What must be wrong? Names what would explain a disagreement. It indicates, it never proves."""
 
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from collections.abc import Iterator
 
 import numpy as np
 
 from imgcover.quantity import rounded
-from imgcover.verdict.causes import Cause, causes
 from imgcover.verdict.decision import DEFAULT_RISK
-from imgcover.verdict.departure import SEEN, Departure, Floats, expected
+from imgcover.verdict.departure import SEEN, Floats
 from imgcover.verdict.evidence import Evidence, agrees
+from imgcover.verdict.other_cloth import causes_in_cloth
 from imgcover.verdict.sheet import Sheet
+from imgcover.verdict.slips import slips
 from imgcover.verdict.verdict import Suspect
+from imgcover.verdict.weighing import (
+    NOTHING_FITS,
+    Weighed,
+    log_sum,
+    shows_other_weave,
+    weigh,
+    weigh_declared,
+    weigh_nothing,
+)
 
-NOTHING_FITS = "nothing fits: more than one figure may be off"
-NOTHING_PRIOR = 0.05
-"""Beside 1 for a common cause: two things wrong at once is rarer than any one."""
-NOTHING_U = 0.25
-"""Relative u of everything seen when no cause is supposed: any common deviation lies within it."""
-TIED = 3.0
-"""A weight within this factor of the best is a tie: a Bayes factor below 3 is "not worth more than
-a bare mention" (Jeffreys, Theory of Probability, appendix B)."""
+TIED = 0.5 * math.log(10)
+"""Two causes under which what was seen is equally probable but for a factor of √10 are a tie: such
+a Bayes factor is "not worth more than a bare mention" (Jeffreys, Theory of Probability, app. B).
+How common the causes are orders them, but is no evidence."""
 LEAST_WEIGHT = 0.02
 """Causes below this are left out of the list."""
 MOST_LISTED = 6
+"""More than these nobody would check."""
 TELLING = 2.0
 """Standard uncertainties beyond which a number speaks for or against."""
-FORKED = 20.0
-"""How much a reading that could not choose between pairs and threads favours pairs."""
-REPEAT_MISREAD = 0.05
-"""Probability that the picture shows another repeat than the cloth has."""
-
-
-@dataclass(frozen=True, slots=True, eq=False)
-class _Weighed:
-    """A cause with its evidence, and what it leads one to see, in the order of the evidence."""
-
-    cause: Cause
-    log_weight: float
-    mean: Floats
-    u: Floats
-    size: float
-    size_u: float
+SPOKEN_UNIT = {"ends": " a cm", "picks": " a cm", "mass": " g/m²"}
 
 
 def diagnose(
@@ -62,187 +48,120 @@ def diagnose(
     sheet : Sheet
     evidence : Evidence
     risk : float, optional
-        The share of deliveries that are as declared for which a cause may yet be named.
+        The share of deliveries that are as declared for which a cause may yet be named; None is
+        what U = 2 u leaves on one side.
     failed : bool
-        Whether a line does not conform; a cause is then wanted whatever the whole looks like.
+        Whether a line does not conform: a cause is then wanted whatever the whole looks like.
 
     Returns
     -------
     tuple of Suspect
         Empty where everything can be the declared cloth.
     """
-    shows_other = _other_weave(sheet.repeat, evidence.repeat)
-    forked = evidence.ends_forked or evidence.picks_forked
-    asked = failed or shows_other or forked
+    asked = failed or shows_other_weave(sheet, evidence)
+    asked = asked or bool(evidence.ends_forks or evidence.picks_forks)
     if not asked and agrees(sheet, evidence, risk=DEFAULT_RISK if risk is None else risk):
         return ()
-    if not len(evidence.values) and not asked:
-        return ()
-    weighed = [_weigh(cause, sheet, evidence, shows_other) for cause in causes(sheet)]
-    weighed.append(_weigh_nothing(sheet, evidence))
-    weighed.sort(key=lambda each: -each.log_weight)
-    total = _log_sum(np.array([each.log_weight for each in weighed]))
-    weights = [math.exp(each.log_weight - total) for each in weighed]
-    tied = [
-        each.cause.name
-        for each, weight in zip(weighed, weights, strict=True)
-        if weight * TIED >= weights[0]
+    causes = (*causes_in_cloth(sheet), *slips(sheet))
+    weighed = [*weigh(causes, sheet, evidence), weigh_nothing(sheet, evidence)]
+    weighed.sort(key=lambda each: each.log_weight, reverse=True)
+    total = log_sum(each.log_weight for each in weighed)
+    listed = [
+        (each, weight)
+        for each in weighed[:MOST_LISTED]
+        if (weight := math.exp(each.log_weight - total)) >= LEAST_WEIGHT or each is weighed[0]
     ]
-    plain = _weigh_plain(sheet, evidence)
-    listed = list(zip(weighed, weights, strict=True))[:MOST_LISTED]
+    tied = _tied([each for each, _ in listed])
+    declared = weigh_declared(sheet, evidence)
     return tuple(
-        _suspect(each, weight, plain, evidence, tied)
+        Suspect(
+            cause=each.cause.name,
+            weight=weight,
+            speaks_for=tuple(_speaks_for(each, declared, sheet, evidence)),
+            speaks_against=tuple(_speaks_against(each, sheet, evidence)),
+            settle=each.cause.settle,
+            tied_with=tuple(name for name in tied if name != each.cause.name)
+            if each.cause.name in tied
+            else (),
+        )
         for each, weight in listed
-        if weight >= LEAST_WEIGHT or each is weighed[0]
     )
 
 
-def _weigh(cause: Cause, sheet: Sheet, evidence: Evidence, shows_other: bool) -> _Weighed:
-    means, effects = expected(sheet, cause.departure)
-    mean, effect = means[:, evidence.present], effects[:, :, evidence.present]
-    covariance = np.einsum("nki,nkj->nij", effect, effect) + evidence.covariance
-    log_likelihood = _log_normal(evidence.values - mean, covariance)
-    with np.errstate(divide="ignore"):
-        joint = log_likelihood + np.log(cause.weights)
-    log_evidence = _log_sum(joint)
-    share = np.exp(joint - log_evidence)
-    best = int(np.argmax(joint))
-    size = float(share @ cause.sizes)
-    spread = math.sqrt(max(float(share @ (cause.sizes - size) ** 2), 0.0))
-    prior = math.log(cause.prior * _context(cause, evidence, shows_other))
-    u = np.sqrt(np.diagonal(covariance[best]))
-    return _Weighed(cause, log_evidence + prior, mean[best], u, size, spread)
-
-
-def _weigh_plain(sheet: Sheet, evidence: Evidence) -> _Weighed:
-    """The declared cloth itself, to say what disagrees with it."""
-    as_declared = Cause("as declared", 1.0, Departure(), np.zeros(1), np.ones(1))
-    return _weigh(as_declared, sheet, evidence, False)
-
-
-def _weigh_nothing(sheet: Sheet, evidence: Evidence) -> _Weighed:
-    """No cause: everything may lie anywhere round the declared."""
-    plain = _weigh_plain(sheet, evidence)
-    _, effects = expected(sheet, Departure())
-    effect = effects[0][:, evidence.present]
-    wide = np.diag((NOTHING_U * plain.mean) ** 2)
-    covariance = effect.T @ effect + evidence.covariance + wide
-    residual = (evidence.values - plain.mean)[None, :]
-    log_evidence = float(_log_normal(residual, covariance[None])[0])
-    cause = Cause(
-        NOTHING_FITS,
-        NOTHING_PRIOR,
-        Departure(),
-        np.zeros(1),
-        np.ones(1),
-        settle="have the swatch dissected (ISO 7211-2 method A) and its yarns weighed",
-    )
-    u = np.sqrt(np.diagonal(covariance))
-    return _Weighed(cause, log_evidence + math.log(NOTHING_PRIOR), plain.mean, u, 0.0, 0.0)
-
-
-def _context(cause: Cause, evidence: Evidence, shows_other: bool) -> float:
-    """What the weave's repeat and forked readings say of a cause, beside the numbers."""
-    factor = 1.0
-    if shows_other:
-        factor *= 1.0 if cause.other_weave else REPEAT_MISREAD
-    elif cause.other_weave:
-        factor *= REPEAT_MISREAD
-    if evidence.ends_forked and "ends" in cause.forks:
-        factor *= FORKED
-    if evidence.picks_forked and "picks" in cause.forks:
-        factor *= FORKED
-    return factor
-
-
-def _other_weave(declared: tuple[int, int] | None, seen: tuple[int, int] | None) -> bool:
-    """Whether the repeat seen cannot belong to the declared weave.
-
-    A part of the repeat may be all that shows, and colours may make it several times as long;
-    only a repeat that is neither a part nor a multiple belongs to another weave.
-    """
-    if declared is None or seen is None:
-        return False
-    return any(a % b and b % a for a, b in zip(declared, seen, strict=True))
-
-
-def _log_normal(residuals: Floats, covariances: Floats) -> Floats:
-    """Log density of the multivariate normal, node by node."""
-    _, determinants = np.linalg.slogdet(covariances)
-    solved = np.linalg.solve(covariances, residuals[..., None])[..., 0]
-    n = residuals.shape[-1]
-    squared = np.einsum("ni,ni->n", residuals, solved)
-    return np.asarray(-0.5 * (squared + determinants + n * math.log(2 * math.pi)))
-
-
-def _log_sum(logs: Floats) -> float:
-    largest = float(np.max(logs))
-    return largest + math.log(float(np.sum(np.exp(logs - largest))))
-
-
-def _suspect(
-    weighed: _Weighed, weight: float, plain: _Weighed, evidence: Evidence, tied: list[str]
-) -> Suspect:
-    name = weighed.cause.name
-    others = tuple(each for each in tied if each != name) if name in tied else ()
-    return Suspect(
-        cause=name,
-        weight=weight,
-        speaks_for=_speaks_for(weighed, plain, evidence),
-        speaks_against=_speaks_against(weighed, evidence),
-        settle=weighed.cause.settle,
-        tied_with=others,
-    )
-
-
-def _speaks_for(weighed: _Weighed, plain: _Weighed, evidence: Evidence) -> tuple[str, ...]:
-    """The numbers that the sheet does not explain and this cause does, and what it takes."""
-    without = (evidence.values - plain.mean) / plain.u
-    with_it = (evidence.values - weighed.mean) / weighed.u
-    explained = (np.abs(without) > TELLING) & (np.abs(with_it) <= TELLING)
-    if not explained.any() and len(without):
-        better = np.abs(without) - np.abs(with_it)
-        explained[int(np.argmax(better))] = bool(np.max(better) > 0)
-    said = [
-        f"{SEEN[seen]} {_shown(seen, value, u)}: the sheet leads to "
-        f"{_shown(seen, was, u)}, this to {_shown(seen, now, u)}"
-        for seen, value, u, was, now, counts in zip(
-            evidence.present,
-            evidence.values,
-            np.sqrt(np.diagonal(evidence.covariance)),
-            plain.mean,
-            weighed.mean,
-            explained,
-            strict=True,
-        )
-        if counts
+def _tied(listed: list[Weighed]) -> tuple[str, ...]:
+    """Causes that the evidence cannot tell from the first; empty where that stands alone."""
+    best = listed[0]
+    if best.cause.name == NOTHING_FITS:
+        return ()
+    names = [
+        each.cause.name
+        for each in listed
+        if each.log_evidence >= best.log_evidence - TIED and each.cause.name != NOTHING_FITS
     ]
-    if weighed.cause.takes:
-        said.append(weighed.cause.takes.format(100 * weighed.size))
-    return tuple(said)
+    return tuple(names) if len(names) > 1 else ()
 
 
-def _speaks_against(weighed: _Weighed, evidence: Evidence) -> tuple[str, ...]:
-    distance = np.abs(evidence.values - weighed.mean) / weighed.u
-    return tuple(
-        f"{SEEN[seen]} {_shown(seen, value, own)}: this would lead to {_shown(seen, mean, u)} ± "
-        f"{rounded(mean, u)[1]}"
-        for seen, value, own, mean, u, far in zip(
-            evidence.present,
-            evidence.values,
-            np.sqrt(np.diagonal(evidence.covariance)),
-            weighed.mean,
-            weighed.u,
-            distance,
-            strict=True,
+def _speaks_for(
+    weighed: Weighed, declared: Weighed, sheet: Sheet, evidence: Evidence
+) -> Iterator[str]:
+    """Say the numbers that the sheet does not explain and this cause does, and what it takes."""
+    without = np.abs(evidence.values - declared.mean) / declared.u
+    with_it = np.abs(evidence.values - weighed.mean) / weighed.u
+    explained = (without > TELLING) & (with_it <= TELLING)
+    better = without - with_it
+    if not explained.any() and better.size and better.max() > 0:
+        explained[int(np.argmax(better))] = True
+    own_u = np.sqrt(np.diagonal(evidence.covariance))
+    for i in np.flatnonzero(explained):
+        name, u = SEEN[evidence.present[i]], own_u[i]
+        yield (
+            f"{name} {_shown(name, evidence.values[i], u)}: {_origin(name, sheet)} leads to "
+            f"{_shown(name, declared.mean[i], u)}, this to {_shown(name, weighed.mean[i], u)}"
         )
-        if far > TELLING
+    yield from _forks_for(weighed, evidence)
+    if weighed.cause.other_weave and shows_other_weave(sheet, evidence):
+        yield _repeats(sheet, evidence)
+    if weighed.cause.takes:
+        size, size_u = rounded(100 * weighed.size, 100 * weighed.size_u)
+        yield weighed.cause.takes.format(f"{size} ± {size_u}")
+
+
+def _forks_for(weighed: Weighed, evidence: Evidence) -> Iterator[str]:
+    for which, forks in (("ends", evidence.ends_forks), ("picks", evidence.picks_forks)):
+        if forks and weighed.cause.forks == which:
+            readings = " or ".join(f"{each:.4g}" for each in forks)
+            yield f"the {which} could be read as {readings} a cm"
+
+
+def _speaks_against(weighed: Weighed, sheet: Sheet, evidence: Evidence) -> Iterator[str]:
+    """Say the numbers that this cause does not explain."""
+    distance: Floats = np.abs(evidence.values - weighed.mean) / weighed.u
+    own_u = np.sqrt(np.diagonal(evidence.covariance))
+    for i in np.flatnonzero(distance > TELLING):
+        name = SEEN[evidence.present[i]]
+        mean, u = rounded(float(weighed.mean[i]), float(weighed.u[i]))
+        yield (
+            f"{name} {_shown(name, evidence.values[i], own_u[i])}: this would lead to "
+            f"{mean} ± {u}{SPOKEN_UNIT.get(name, '')}"
+        )
+    if not weighed.cause.other_weave and shows_other_weave(sheet, evidence):
+        yield _repeats(sheet, evidence)
+
+
+def _repeats(sheet: Sheet, evidence: Evidence) -> str:
+    seen, declared = evidence.repeat or (), sheet.repeat or ()
+    return (
+        f"the picture shows a repeat of {' × '.join(map(str, seen))} threads, the declared weave "
+        f"has {' × '.join(map(str, declared))}"
     )
 
 
-def _shown(seen: int, value: float, u: float) -> str:
-    unit = {0: " a cm", 1: " a cm", 5: " g/m²"}.get(int(seen), "")
-    return f"{rounded(float(value), float(u))[0]}{unit}"
+def _origin(name: str, sheet: Sheet) -> str:
+    return "the approved swatch" if sheet.approved and "cover" in name else "the sheet"
 
 
-__all__ = ["NOTHING_FITS", "diagnose"]
+def _shown(name: str, value: float, u: float) -> str:
+    return f"{rounded(float(value), float(u))[0]}{SPOKEN_UNIT.get(name, '')}"
+
+
+__all__ = ["diagnose"]

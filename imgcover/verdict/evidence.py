@@ -7,16 +7,15 @@ from dataclasses import dataclass
 
 import numpy as np
 from scipy.optimize import lsq_linear
-from scipy.stats import chi2
+from scipy.stats import binom, chi2
 
 from imgcover.quantity import Measured
 from imgcover.verdict.departure import SEEN, Departure, Floats, expected, natural_u
+from imgcover.verdict.mean_count import moisture_u
 from imgcover.verdict.observed import Observed
 from imgcover.verdict.sheet import Sheet
 
-COVER_CORRELATION = 0.5
-"""Between the whole cover and each system's own: both rest on the same levels and edges of one
-picture, but take them from different pixels."""
+MASS = SEEN.index("mass")
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -31,22 +30,24 @@ class Evidence:
     covariance : ndarray, shape (n, n), float64
     repeat : tuple of int or None
         (ends, picks) in the weave repeat that was seen.
-    ends_forked, picks_forked : bool
-        Whether two readings of the density stayed possible.
+    ends_forks, picks_forks : tuple of float
+        Where two readings of the density stayed possible, 1/cm.
     """
 
     present: np.typing.NDArray[np.intp]
     values: Floats
     covariance: Floats
     repeat: tuple[int, int] | None
-    ends_forked: bool
-    picks_forked: bool
+    ends_forks: tuple[float, ...]
+    picks_forks: tuple[float, ...]
 
 
 def evidence_of(observed: Observed) -> Evidence:
     """Gather what was seen of a place or of a lot's mean.
 
-    The densities share the error of the scale, the covers that of the picture's levels.
+    The densities share the error of the scale. The three covers come from one picture, but how far
+    they err together is not known; taking them as independent is the cautious side where they
+    contradict one another, and where they shift together the model's own u outweighs theirs.
     """
     listed: tuple[Measured | None, ...] = (
         *(observed.ends, observed.picks),
@@ -55,10 +56,9 @@ def evidence_of(observed: Observed) -> Evidence:
     values = np.array([math.nan if each is None else each.value for each in listed])
     u = np.array([0.0 if each is None else each.u for each in listed])
     spread = (observed.ends_spread.u_relative, observed.picks_spread.u_relative)
-    correlation = np.eye(len(SEEN))
-    correlation[[2, 3, 4, 4], [4, 4, 2, 3]] = COVER_CORRELATION
-    covariance = correlation * np.outer(u, u)
+    covariance = np.diag(u**2)
     covariance[[0, 1], [0, 1]] += (values[:2] * spread) ** 2
+    covariance[MASS, MASS] += (values[MASS] * moisture_u(observed)) ** 2
     shared = min(observed.scale_u, *(u[:2] / np.abs(values[:2])))
     covariance[[0, 1], [1, 0]] = shared**2 * values[0] * values[1]
     present = np.flatnonzero(np.isfinite(values))
@@ -67,8 +67,8 @@ def evidence_of(observed: Observed) -> Evidence:
         values[present],
         covariance[np.ix_(present, present)],
         observed.repeat,
-        bool(observed.ends_forks),
-        bool(observed.picks_forks),
+        observed.ends_forks,
+        observed.picks_forks,
     )
 
 
@@ -85,9 +85,22 @@ def agrees(sheet: Sheet, evidence: Evidence, *, risk: float) -> bool:
     lower = np.linalg.cholesky(covariance + _jitter(covariance))
     residual = np.linalg.solve(lower, evidence.values - mean)
     steps, bounds = _steps(sheet, effect[-2:], lower)
-    least = lsq_linear(steps, residual, bounds) if len(evidence.values) else None
-    distance = 0.0 if least is None else 2.0 * float(least.cost)
-    return distance <= float(chi2.ppf(1.0 - risk, max(len(evidence.values), 1)))
+    if not len(evidence.values):
+        return True
+    distance = 2.0 * float(lsq_linear(steps, residual, bounds).cost)
+    setts = int(np.sum(evidence.present < 2))
+    return _tail(distance, len(evidence.values), setts) > risk
+
+
+def _tail(distance: float, n: int, setts: int) -> float:
+    """Probability of such a distance or more, for a cloth at the very limits of its tolerances.
+
+    Each sett at its limit is half the time pulled back into the tolerance, which takes one degree
+    of freedom: a mixture of chi-squares (Kudô 1963). Inside the limits it is smaller still.
+    """
+    shares = binom.pmf(np.arange(setts + 1), setts, 0.5)
+    tails = [float(chi2.sf(distance, n - k)) if n > k else 0.0 for k in range(setts + 1)]
+    return float(shares @ np.array(tails))
 
 
 def _steps(sheet: Sheet, natural: Floats, lower: Floats) -> tuple[Floats, tuple[Floats, Floats]]:

@@ -72,6 +72,9 @@ class LotVerdict:
             "decision": self.decision.value,
             "risk": self.verdict.risk,
             "diagnosis": [each.record() for each in self.verdict.diagnosis],
+            "mean_count": None
+            if self.verdict.mean_count is None
+            else self.verdict.mean_count.record(),
             "findings": [_finding_record(each) for each in self.verdict.findings],
         }
 
@@ -118,6 +121,39 @@ def judge_lot(
         risk=risk,
     )
     return LotVerdict(lot, declaration.article.code, places, required, means, verdict)
+
+
+def measured_lot(
+    pictures: Iterable[Observed], *, lot: str, required: int = PLACES
+) -> dict[str, Any]:
+    """Lay out the record of a lot of which nothing was declared: means, and nothing to decide.
+
+    Parameters
+    ----------
+    pictures : iterable of Observed
+        As in `judge_lot`.
+    lot : str
+        The lot's name.
+    required : int
+        Places that the standard asks for.
+    """
+    places = merged(pictures)
+    means = {q: mean for q in Quantity if (mean := _mean(places, q)) is not None}
+    return {
+        "schema": SCHEMA,
+        "lot": lot,
+        "article": None,
+        "n_places": sum(p.ends is not None or p.picks is not None for p in places),
+        "required": required,
+        "places": [_place_record(each) for each in places],
+        "means": {str(each): _mean_record(mean) for each, mean in means.items()},
+        "lines": [],
+        "decision": None,
+        "risk": None,
+        "diagnosis": [],
+        "mean_count": None,
+        "findings": [_finding_record(each) for each in _findings(places, means, required)],
+    }
 
 
 def _mean(places: Sequence[Observed], quantity: Quantity) -> Pooled | None:
@@ -174,6 +210,7 @@ def _as_observed(
         warp_cover=system([p.warp_cover for p in places]),
         weft_cover=system([p.weft_cover for p in places]),
         gsm=mean(Quantity.MASS),
+        conditioned=all(p.conditioned for p in places if p.gsm is not None),
         scale_u=max((p.scale_u for p in places), default=0.0),
         repeat=repeats.pop() if len(repeats) == 1 else None,
         ends_forks=() if ends else next((p.ends_forks for p in places if p.ends_forks), ()),
@@ -253,4 +290,4 @@ def _finding_record(finding: Finding) -> dict[str, str]:
     }
 
 
-__all__ = ["LotVerdict", "judge_lot"]
+__all__ = ["LotVerdict", "judge_lot", "measured_lot"]

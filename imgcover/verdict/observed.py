@@ -42,6 +42,8 @@ class Observed:
         Optical cover, and each system's own share of the width, fractions ("1").
     gsm : Measured or None
         Mass per unit area from the balance ("g/m2").
+    conditioned : bool
+        Whether it was weighed conditioned (ISO 139); otherwise moisture adds to its u.
     ends_spread, picks_spread : Spread
         Variation of the density over the field.
     scale_u : float
@@ -65,6 +67,7 @@ class Observed:
     warp_cover: Measured | None = None
     weft_cover: Measured | None = None
     gsm: Measured | None = None
+    conditioned: bool = False
     ends_spread: Spread = Spread()
     picks_spread: Spread = Spread()
     scale_u: float = 0.0

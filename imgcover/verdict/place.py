@@ -54,6 +54,7 @@ def _merge(pictures: Sequence[Observed]) -> Observed:
         warp_cover=_mean([p.warp_cover for p in pictures], 0.0)[0],
         weft_cover=_mean([p.weft_cover for p in pictures], 0.0)[0],
         gsm=_mean([p.gsm for p in pictures], 0.0)[0],
+        conditioned=all(p.conditioned for p in pictures if p.gsm is not None),
         ends_spread=_widest([p.ends_spread for p in sound if p.ends is not None]),
         picks_spread=_widest([p.picks_spread for p in sound if p.picks is not None]),
         scale_u=scale_u,

@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 
 from imgcover.cloth.constant import Constant
 from imgcover.cloth.construction import Construction, construction_of
-from imgcover.cloth.declaration import Declaration, State
+from imgcover.cloth.declaration import Declaration, Reference, State
 from imgcover.cloth.sett import Sett
 from imgcover.cloth.tolerance import Tolerance
 from imgcover.quantity import Measured
@@ -50,6 +50,10 @@ class Sheet:
         Yarn width over spacing, not capped.
     warp_mass, weft_mass : float
         g/m², finishing included.
+    size : float or None
+        On the warp, as a share of its mass; None where not declared.
+    finish : float
+        Mass after finishing over the mass before, as declared; 1 where nothing was.
     effects : ndarray, shape (constants, 4), float64
         What one u of each constant does to the logarithm of warp width, weft width, warp mass
         and weft mass.
@@ -63,6 +67,8 @@ class Sheet:
         (ends, picks) in the declared weave's repeat.
     state : State or None
         Grey or finished, where declared.
+    approved : bool
+        Whether the widths come from an approved swatch.
     """
 
     ends: float
@@ -71,6 +77,8 @@ class Sheet:
     weft_width: float
     warp_mass: float
     weft_mass: float
+    size: float | None
+    finish: float
     effects: NDArray[np.float64]
     ends_room: tuple[float, float]
     picks_room: tuple[float, float]
@@ -80,6 +88,7 @@ class Sheet:
     picks_in_inch: bool
     repeat: tuple[int, int] | None
     state: State | None
+    approved: bool
 
 
 def sheet_of(declaration: Declaration) -> Sheet:
@@ -95,6 +104,8 @@ def sheet_of(declaration: Declaration) -> Sheet:
         weft_width=widths[1],
         warp_mass=cloth.warp.mass({}) * finish,
         weft_mass=cloth.weft.mass({}) * finish,
+        size=None if warp.size is None else warp.size.value,
+        finish=finish,
         effects=effects,
         ends_room=_room(declaration.tolerance.ends, warp.threads),
         picks_room=_room(declaration.tolerance.picks, weft.threads),
@@ -104,7 +115,13 @@ def sheet_of(declaration: Declaration) -> Sheet:
         picks_in_inch="in" in weft.threads.text,
         repeat=_repeat(declaration.article.weave),
         state=declaration.article.state,
+        approved=_is_approved(declaration.reference),
     )
+
+
+def _is_approved(reference: Reference) -> bool:
+    both = reference.warp_cover is not None and reference.weft_cover is not None
+    return both or reference.optical_cover is not None
 
 
 def _widths(

@@ -14,6 +14,7 @@ from imgcover.verdict.decision import Decision
 from imgcover.verdict.diagnosis import diagnose
 from imgcover.verdict.evidence import evidence_of
 from imgcover.verdict.line import Quantity, Sample, judge_line
+from imgcover.verdict.mean_count import mean_count
 from imgcover.verdict.observed import Observed, Spread
 from imgcover.verdict.sheet import sheet_of
 from imgcover.verdict.standing import holds
@@ -103,7 +104,8 @@ def judge_samples(
         risk=risk,
         failed=any(line.decision is Decision.DOES_NOT_CONFORM for line in lines),
     )
-    return whole(scope, lines, diagnosis, (*findings, *(f for f in more if f is not None)))
+    said = (*findings, *(finding for finding in more if finding is not None))
+    return whole(scope, lines, diagnosis, said, mean_count(declaration, observed))
 
 
 def is_asked(quantity: Quantity, value: Measured | None, has_limits: bool) -> bool:

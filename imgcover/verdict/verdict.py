@@ -9,6 +9,7 @@ from typing import Any
 from imgcover.findings import Finding
 from imgcover.verdict.decision import Decision, overall
 from imgcover.verdict.line import Line
+from imgcover.verdict.mean_count import MeanCount
 
 
 class Scope(StrEnum):
@@ -72,6 +73,8 @@ class Verdict:
     diagnosis : tuple of Suspect
         Best first; empty where all agrees within its uncertainty.
     findings : tuple of Finding
+    mean_count : MeanCount or None
+        Of all yarn in the cloth, where it was weighed and both systems were counted.
     """
 
     scope: Scope
@@ -80,6 +83,7 @@ class Verdict:
     lines: tuple[Line, ...]
     diagnosis: tuple[Suspect, ...]
     findings: tuple[Finding, ...]
+    mean_count: MeanCount | None = None
 
     def record(self) -> dict[str, Any]:
         """Lay it out as the record holds it; the findings go to the record's own list."""
@@ -89,6 +93,7 @@ class Verdict:
             "risk": self.risk,
             "lines": [line_record(line) for line in self.lines],
             "diagnosis": [each.record() for each in self.diagnosis],
+            "mean_count": None if self.mean_count is None else self.mean_count.record(),
         }
 
 
@@ -103,10 +108,12 @@ def whole(
     lines: tuple[Line, ...],
     diagnosis: tuple[Suspect, ...],
     findings: tuple[Finding, ...],
+    mean: MeanCount | None,
 ) -> Verdict:
     """Draw the lines together into one verdict."""
     decision = overall(tuple(line.decision for line in lines))
-    return Verdict(scope, decision, overall_risk(lines, decision), lines, diagnosis, findings)
+    risk = overall_risk(lines, decision)
+    return Verdict(scope, decision, risk, lines, diagnosis, findings, mean)
 
 
 def overall_risk(lines: tuple[Line, ...], decision: Decision) -> float | None:
