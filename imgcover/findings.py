@@ -212,6 +212,11 @@ class Flag(Enum):
         "optical cover was not measured: the light was not stated",
         "say --light backlit for a picture on a light table, --light reflected otherwise",
     )
+    NO_CLOTH_TO_COVER = (
+        Severity.REFUSAL,
+        "optical cover was not measured: no woven cloth was found in the picture",
+        "show nothing but cloth before the light, or give its place with --region",
+    )
     COVER_NEEDS_BACKLIGHT = (
         Severity.INFO,
         "optical cover was not measured: the picture was taken in reflected light",

@@ -15,7 +15,7 @@ ROOT = Path(__file__).resolve().parent.parent
 GROUND = ("quantity", "findings", "weave", "tone", "errors")
 ORDER = (
     *("picture", "repeat", "scale", "threads", "cover", "cloth", "verdict"),
-    *("ledger", "report", "request", "inspection", "audit", "plan", "cli"),
+    *("ledger", "report", "request", "asking", "inspection", "audit", "plan", "cli"),
 )
 LOOM_MAY = {*GROUND, "cloth", "loom"}
 LOOM_FOR = {"plan", "cli", "loom"}

@@ -8,14 +8,13 @@ says why.
 
 from __future__ import annotations
 
-from collections.abc import Mapping
-from dataclasses import asdict, dataclass, field
-from typing import Any
+from dataclasses import asdict, dataclass
 
 from imgcover.cloth.prediction import Prediction
 from imgcover.cover.reading import CoverReading, Pores
 from imgcover.findings import Finding
 from imgcover.ledger.canonical import Record, number
+from imgcover.ledger.provenance import Provenance
 from imgcover.ledger.sections import findings_section, laid, predicted_section, quantity, tidied
 from imgcover.picture.picture import Picture
 from imgcover.quantity import Measured
@@ -40,31 +39,6 @@ class Sample:
     note: str | None = None
 
 
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Provenance:
-    """What the numbers were made with and from.
-
-    Parameters
-    ----------
-    imgcover : str
-        This program's version.
-    libraries : mapping of str to str
-        Versions of what computes.
-    article_sha256, device, blank, dark : str or None
-        SHA-256 of the files that were used.
-    options : mapping of str to object
-        Everything asked that can touch a digit or a decision.
-    """
-
-    imgcover: str
-    libraries: Mapping[str, str]
-    article_sha256: str | None = None
-    device: str | None = None
-    blank: str | None = None
-    dark: str | None = None
-    options: Mapping[str, Any] = field(default_factory=dict)
-
-
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
 class Answers:
     """What each room said of one picture; None is a room that had nothing to say.
@@ -87,19 +61,19 @@ class Answers:
     """
 
     name: str
-    sha256: str | None
-    picture: Picture | None
+    provenance: Provenance
     sample: Sample
     light: str | None
     warp: str
-    scale: Scale | None
-    threads: ThreadReading | None
-    density: Density | None
-    cover: CoverReading | None
-    prediction: Prediction | None
-    verdict: Verdict | None
-    findings: tuple[Finding, ...]
-    provenance: Provenance
+    sha256: str | None = None
+    picture: Picture | None = None
+    scale: Scale | None = None
+    threads: ThreadReading | None = None
+    density: Density | None = None
+    cover: CoverReading | None = None
+    prediction: Prediction | None = None
+    verdict: Verdict | None = None
+    findings: tuple[Finding, ...] = ()
 
 
 def record_of(answers: Answers, *, made_at: str) -> Record:
@@ -114,16 +88,16 @@ def record_of(answers: Answers, *, made_at: str) -> Record:
     return {
         "schema": SCHEMA,
         "picture": _picture(answers),
-        "sample": asdict(answers.sample),
+        "sample": laid(asdict(answers.sample)),
         "light": answers.light,
         "warp": answers.warp,
         "scale": _scale(answers.scale),
         "threads": _threads(answers.threads, answers.density),
         "cover": _cover(answers.cover),
         "predicted": predicted_section(answers.prediction),
-        "verdict": None if answers.verdict is None else tidied(answers.verdict.record()),
+        "verdict": None if answers.verdict is None else laid(answers.verdict.record()),
         "findings": findings_section(answers.findings),
-        "provenance": tidied(asdict(answers.provenance)),
+        "provenance": laid(answers.provenance.record()),
         "envelope": {"made_at": made_at},
     }
 
@@ -226,4 +200,4 @@ AREA_PERCENTILES = ("5", "25", "50", "75", "95")
 """The percentiles in which `Pores.areas` gives the distribution."""
 
 
-__all__ = ["AREA_PERCENTILES", "SCHEMA", "Answers", "Provenance", "Sample", "record_of"]
+__all__ = ["AREA_PERCENTILES", "SCHEMA", "Answers", "Sample", "record_of"]

@@ -1,0 +1,176 @@
+"""How each room is asked: from the options of a request to what the room takes."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from functools import lru_cache
+from pathlib import Path
+
+import numpy as np
+from numpy.typing import NDArray
+
+from imgcover.cover.reader import read_cover
+from imgcover.cover.reading import CoverReading, Lattice, Pitch
+from imgcover.errors import OptionError, PictureError
+from imgcover.findings import Finding, Flag, found
+from imgcover.picture.picture import Picture
+from imgcover.picture.reader import read_picture
+from imgcover.request import Options
+from imgcover.scale.choice import ScaleChoice, choose_scale
+from imgcover.scale.pitch import scale_from
+from imgcover.scale.scale import Scale
+from imgcover.threads.density import Density, density_of
+from imgcover.threads.field import Region
+from imgcover.threads.reader import read_threads
+from imgcover.threads.reading import ThreadReading
+from imgcover.tone import Tone
+from imgcover.weave import weave
+
+SWAPPED_FROM = 5
+"""From this orientation on, stored columns became shown rows (TIFF 6.0, tag 274)."""
+
+
+def find_scale(picture: Picture, options: Options) -> ScaleChoice:
+    """Ask the scale room for everything that was offered to find the scale with."""
+    stated = None
+    if options.pitch is not None:
+        stated = scale_from(
+            options.pitch,
+            options.pitch_y,
+            pitch_u=options.pitch_u,
+            swapped=picture.orientation >= SWAPPED_FROM,
+        )
+    return choose_scale([stated], dpi=picture.dpi, use_metadata=options.metadata)
+
+
+def count_threads(
+    picture: Picture, options: Options, *, declared_weave: str | None
+) -> ThreadReading:
+    """Ask the threads room for the ends and picks of the region.
+
+    Parameters
+    ----------
+    picture : Picture
+    options : Options
+    declared_weave : str or None
+        Handed on as what may break a tie; densities and counts never are.
+    """
+    region = options.region
+    if region is not None and not _lies_in(region, picture):
+        message = (
+            f"the region {region.x},{region.y},{region.width},{region.height} does not lie inside "
+            f"the picture of {picture.columns} × {picture.rows} pixels"
+        )
+        return ThreadReading(None, None, None, (), None, (), (found(Flag.REGION_OUTSIDE, message),))
+    return read_threads(
+        picture,
+        warp=options.warp,
+        weave=None if declared_weave is None else weave(declared_weave),
+        region=region,
+    )
+
+
+def density_in(threads: ThreadReading, scale: Scale | None, options: Options) -> Density | None:
+    """Put the scale to the threads, where there is one."""
+    return None if scale is None else density_of(threads, scale, warp=options.warp)
+
+
+def noticed(threads: ThreadReading, density: Density | None) -> tuple[Finding, ...]:
+    """What was noticed of the threads; said in lengths where the density can."""
+    if density is None:
+        return threads.findings
+    exacter = {each.flag for each in density.findings}
+    return (*(each for each in threads.findings if each.flag not in exacter), *density.findings)
+
+
+def measure_cover(
+    picture: Picture, threads: ThreadReading, scale: Scale | None, options: Options
+) -> CoverReading:
+    """Ask the cover room for the cover of what was found to be cloth."""
+    if options.light is None:
+        return CoverReading(findings=(found(Flag.LIGHT_NOT_STATED),))
+    if not any(tile.used for tile in threads.tiles):
+        return CoverReading(findings=(found(Flag.NO_CLOTH_TO_COVER),))
+    blank, dark = (exposure(path, options.tone) for path in (options.blank, options.dark))
+    for taken in (blank, dark):
+        if taken is not None and taken.stored.shape[:2] != picture.stored.shape[:2]:
+            return CoverReading(findings=(_other_size(taken, picture),))
+    lattice, warp_across = _lattice(threads)
+    reading = read_cover(
+        picture,
+        light=options.light,
+        field=_field(picture, threads),
+        lattice=lattice,
+        pitch=None if scale is None else Pitch(scale.x, scale.y),
+        backing=options.backing,
+        blank=blank,
+        dark=dark,
+    )
+    return reading if warp_across else _exchanged(reading)
+
+
+def exposure(path: Path | None, tone: Tone | None) -> Picture | None:
+    """Read a blank or dark exposure, once for all pictures that share it.
+
+    Raises
+    ------
+    OptionError
+        When it cannot be read.
+    """
+    if path is None:
+        return None
+    try:
+        state = path.stat()
+    except OSError as fault:
+        raise OptionError(
+            path.name, f"cannot be read ({fault.strerror})", "check --blank and --dark"
+        ) from None
+    return _exposure(path, tone, state.st_mtime_ns, state.st_size)
+
+
+@lru_cache(maxsize=4)
+def _exposure(path: Path, tone: Tone | None, changed_ns: int, size: int) -> Picture:
+    """The file's time and size are part of the key: a watched folder may replace it."""
+    try:
+        return read_picture(path, name=path.name, tone=tone)
+    except PictureError as fault:
+        raise OptionError(path.name, fault.fault, fault.remedy) from fault
+
+
+def _lies_in(region: Region, picture: Picture) -> bool:
+    return region.x + region.width <= picture.columns and region.y + region.height <= picture.rows
+
+
+def _other_size(taken: Picture, picture: Picture) -> Finding:
+    message = (
+        f"{taken.name} has {taken.columns} × {taken.rows} pixels, the picture "
+        f"{picture.columns} × {picture.rows}: cover was not measured"
+    )
+    return found(Flag.EXPOSURE_OTHER_SIZE, message)
+
+
+def _lattice(threads: ThreadReading) -> tuple[Lattice | None, bool]:
+    """The thread lattice with its first vector across the picture, and whether that is the warp."""
+    ends, picks = threads.ends, threads.picks
+    if ends is None or picks is None:
+        return None, True
+    warp_across = abs(ends.frequency[0]) >= abs(ends.frequency[1])
+    first, second = (ends, picks) if warp_across else (picks, ends)
+    return Lattice(first.frequency, second.frequency), warp_across
+
+
+def _exchanged(reading: CoverReading) -> CoverReading:
+    """Name the systems' shares when the warp runs across the picture."""
+    return replace(reading, warp=reading.weft, weft=reading.warp)
+
+
+def _field(picture: Picture, threads: ThreadReading) -> NDArray[np.bool_] | None:
+    """Where the tiles lie that were counted; None where that is the whole picture."""
+    field = np.zeros(picture.stored.shape[:2], np.bool_)
+    for tile in threads.tiles:
+        if tile.used:
+            field[tile.y : tile.y + tile.height, tile.x : tile.x + tile.width] = True
+    return None if field.all() else field
+
+
+__all__ = ["count_threads", "density_in", "exposure", "find_scale", "measure_cover", "noticed"]
