@@ -310,6 +310,11 @@ class Flag(Enum):
         "the program itself failed on this picture",
         "run imgcover measure on it with IMGCOVER_DEBUG=1 and report what it says",
     )
+    OPTION_UNUSABLE = (
+        Severity.REFUSAL,
+        "a file that an option names cannot be used",
+        "correct the option and audit again",
+    )
     DECLARATION_UNREADABLE = (
         Severity.WARNING,
         "the declaration could not be read, so nothing was decided",
