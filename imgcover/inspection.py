@@ -99,6 +99,19 @@ def inspect(request: Request) -> Inspection:
     return _judged(measured, request)
 
 
+def refuse(request: Request, finding: Finding) -> Inspection:
+    """Make the record of a picture that was never opened; the finding says why.
+
+    Parameters
+    ----------
+    request : Request
+        Its source is not touched.
+    finding : Finding
+        A refusal.
+    """
+    return _judged(replace(_asked(request), findings=(finding,)), request)
+
+
 def _judged(answers: Answers, request: Request) -> Inspection:
     """Hold what was measured against what is declared, and lay down the record."""
     declaration, options = request.declaration, request.options
@@ -160,4 +173,4 @@ def _now() -> str:
     return datetime.now(UTC).strftime("%Y-%m-%dT%H:%M:%SZ")
 
 
-__all__ = ["Inspection", "inspect"]
+__all__ = ["Inspection", "inspect", "refuse"]
