@@ -16,9 +16,9 @@ from imgcover.tone import Tone
 Stored: TypeAlias = NDArray[np.uint8] | NDArray[np.uint16]
 Decoded = TypeVar("Decoded")
 
-RESCAN = "Scan or export it again"
+RESCAN = "scan or export it again"
 """The remedy for a file that is damaged: nothing in it can be mended here."""
-SAVE_PLAIN = "Save it as an 8- or 16-bit grey or RGB PNG or TIFF"
+SAVE_PLAIN = "save it as an 8- or 16-bit grey or RGB PNG or TIFF"
 """The remedy for a file that is whole but of a sort not read here."""
 
 
@@ -88,7 +88,7 @@ def through_codec(name: str, kind: str, call: Callable[[], Decoded]) -> Decoded:
         raise
     except MemoryError as error:
         raise PictureError(
-            name, "the picture does not fit in this machine's memory", "Crop it or scan a part"
+            name, "the picture does not fit in this machine's memory", "crop it or scan a part"
         ) from error
     except Exception as error:  # each codec has its own exception classes
         said = str(error).splitlines()[0] if str(error) else type(error).__name__

@@ -142,6 +142,11 @@ class Directory:
             raise DirectoryError(f"the value of tag {tag} lies past the end of the file")
         return form, count, at
 
+    def check(self, tag: int) -> None:
+        """Make sure that a tag's value lies inside the data; unknown types are passed over."""
+        if self.entries[tag][0] in FORMATS:
+            self._place(tag)
+
     def raw(self, tag: int) -> bytes:
         """Give the bytes of a tag's value, empty when it is absent."""
         if tag not in self.entries:

@@ -70,7 +70,7 @@ def read_png(data: bytes, name: str) -> Header:
     if depth not in DEPTHS.get(colour, ()) or packing or filtering or interlace > 1:
         raise damaged(name, "the PNG header is malformed")
     if depth == 1:
-        raise not_read_here(name, "the picture has only black and white, no levels between them")
+        raise not_read_here(name, "the picture has only two levels, and the cloth's own are lost")
     has_key = b"tRNS" in chunks.places
     samples = SAMPLES[colour] + (1 if has_key and colour in (0, 2, 3) else 0)
     raw_bytes = height * (1 + width * depth * (1 if colour == 3 else SAMPLES[colour]) // 8)

@@ -157,7 +157,7 @@ def profile_refused(name: str, fault: ProfileError) -> PictureError:
     return PictureError(
         name,
         f"the embedded colour profile {fault}",
-        "Convert the picture to sRGB, or save it without the profile and say --tone",
+        "convert the picture to sRGB, or save it without the profile and say --tone",
     )
 
 

@@ -100,7 +100,7 @@ def _check_size(header: Header, name: str) -> None:
             name,
             f"the {header.kind} claims {header.width} × {header.height} pixels, more than the "
             f"{MOST_PIXELS // 1_000_000} million accepted",
-            "Scan a part of the cloth, or at a lower resolution",
+            "scan a part of the cloth, or at a lower resolution",
         )
 
 
@@ -122,7 +122,7 @@ def _tone(header: Header, stated: Tone | None, name: str) -> tuple[Tone, tuple[F
     raise PictureError(
         name,
         f"{header.tone_from} says tone {claimed}, and --tone says {stated}",
-        "Leave --tone out to follow the file, or save the picture without that note",
+        "leave --tone out to follow the file, or save the picture without that note",
     )
 
 
@@ -147,7 +147,7 @@ def _without_alpha(array: Stored, name: str) -> Stored:
         raise PictureError(
             name,
             "parts of the picture are transparent, and what lies behind them is not known",
-            "Save it flattened, without transparency",
+            "save it flattened, without transparency",
         )
     if samples == 2:
         return cast("Stored", cv2.extractChannel(array, 0))

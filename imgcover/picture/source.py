@@ -52,34 +52,34 @@ def fetch(source: Path, name: str) -> bytes:
         # a pipe without a writer would block for ever
         handle = os.open(source, os.O_RDONLY | getattr(os, "O_NONBLOCK", 0))
     except FileNotFoundError as error:
-        raise PictureError(name, "there is no such file", "Check the path") from error
+        raise PictureError(name, "there is no such file", "check the path") from error
     except PermissionError as error:
         raise PictureError(
-            name, "the file may not be read", "Check that it is a file and its permissions"
+            name, "the file may not be read", "check that it is a file and its permissions"
         ) from error
     except (OSError, ValueError) as error:
         said = getattr(error, "strerror", None) or str(error)
-        raise PictureError(name, f"the file cannot be opened ({said})", "Check the path") from error
+        raise PictureError(name, f"the file cannot be opened ({said})", "check the path") from error
     try:
         with os.fdopen(handle, "rb") as file:
             status = os.fstat(file.fileno())
             _check_regular(status.st_mode, name)
             if status.st_size > MOST_BYTES:
-                raise PictureError(name, "the file is larger than 2 GiB", "Crop the picture")
+                raise PictureError(name, "the file is larger than 2 GiB", "crop the picture")
             return file.read(MOST_BYTES)
     except OSError as error:
         said = error.strerror or str(error)
         raise PictureError(
-            name, f"the file cannot be read ({said})", "Check that it is a file, not a folder"
+            name, f"the file cannot be read ({said})", "check that it is a file, not a folder"
         ) from error
 
 
 def _check_regular(mode: int, name: str) -> None:
     if stat.S_ISDIR(mode):
-        raise PictureError(name, "it is a folder, not a picture", "Name the pictures in it")
+        raise PictureError(name, "it is a folder, not a picture", "name the pictures in it")
     if not stat.S_ISREG(mode):
         raise PictureError(
-            name, "it is a pipe or a device, not a file", "Give a file, or - for standard input"
+            name, "it is a pipe or a device, not a file", "give a file, or - for standard input"
         )
 
 
@@ -95,13 +95,13 @@ def read_header(data: bytes, name: str) -> Header:
     if reader is not None:
         return reader(data, name)
     if not data:
-        raise PictureError(name, "the file is empty", "Scan or export it again")
+        raise PictureError(name, "the file is empty", "scan or export it again")
     for at, mark, told in OTHER_KINDS:
         if data[at:].startswith(mark) if at == 0 else data[at : at + len(mark)] == mark:
             raise PictureError(name, f"it is {told}, which is not read here", SAVE_PLAIN)
     told = "text" if _is_text(data[:512]) else "no picture of a known kind"
     raise PictureError(
-        name, f"the file holds {told}", "Give a PNG, JPEG, TIFF, BMP or WebP picture"
+        name, f"the file holds {told}", "give a PNG, JPEG, TIFF, BMP or WebP picture"
     )
 
 

@@ -73,6 +73,8 @@ def read_tiff(data: bytes, name: str) -> Header:
 
 
 def _check_whole(page: Directory, size: int, name: str) -> None:
+    for tag in page.entries:
+        page.check(tag)
     for offsets, counts in ((STRIP_OFFSETS, STRIP_BYTES), (TILE_OFFSETS, TILE_BYTES)):
         begins, lengths = page.numbers(offsets), page.numbers(counts)
         if len(begins) != len(lengths):

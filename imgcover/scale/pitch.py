@@ -21,7 +21,7 @@ LARGEST_U = 0.1
 """A pitch known to no better than 10 % says nothing about a cloth."""
 UNITS = {"dpi": "dpi", "px/mm": "px/mm", "um": "um", "µm": "um", "μm": "um"}
 """As written to as meant; the two mu are U+00B5 and U+03BC, which keyboards mix up."""
-WAYS = "Write it as 600dpi, 23.62px/mm or 42.3um"
+WAYS = "write it as 600dpi, 23.62px/mm or 42.3um"
 
 
 @dataclass(frozen=True, slots=True)
@@ -71,7 +71,7 @@ def parse_pitch(text: str, *, option: str = "--pitch") -> StatedPitch:
     >>> parse_pitch("42.3µm").px_per_mm
     23.64066193853428
     """
-    match = re.fullmatch(r"\s*([-+]?\d*\.?\d*(?:[eE][-+]?\d+)?)\s*(\S*)\s*", text)
+    match = re.fullmatch(r"\s*([-+]?\d*\.?\d*(?:[eE][-+]?\d+)?)\s*(\S*)\s*", text, re.ASCII)
     number, unit = match.groups() if match else ("", "")
     meant = UNITS.get(unit if unit in UNITS else unit.lower())
     try:
@@ -89,7 +89,7 @@ def parse_pitch(text: str, *, option: str = "--pitch") -> StatedPitch:
             option,
             f"{text!r} means {px_per_mm:.4g} pixels a millimetre, and no picture of cloth that "
             f"can be counted has under {LOWEST:g} or over {HIGHEST:g}",
-            "Check the number and its unit",
+            "check the number and its unit",
         )
     return StatedPitch(px_per_mm, STATED_DPI_U if meant == "dpi" else 0.0, text.strip())
 
@@ -125,7 +125,7 @@ def parse_pitch_u(text: str, *, option: str = "--pitch-u") -> float:
         raise ScaleError(
             option,
             f"{text!r} is not a share between 0 % and {100 * LARGEST_U:g} %",
-            "Write it as 0.2%",
+            "write it as 0.2%",
         )
     return share
 
