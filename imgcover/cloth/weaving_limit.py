@@ -33,10 +33,10 @@ RULE_U = (ASHENHURST_RANGE[1] - ASHENHURST_RANGE[0]) / 12**0.5 / ASHENHURST_FIRM
 """Relative u of a sett rule; no spread is published for Brierley's, so it is given the same."""
 BRIERLEY_COTTON = 200.0
 BRIERLEY_POWERS = (
-    (r"plain|tabby", 0.0),
-    (r"twill", 0.39),
-    (r"satin|sateen", 0.42),
-    (r"hopsack", 0.45),
+    ("plain|tabby", 0.0),
+    ("twill", 0.39),
+    ("satin|sateen", 0.42),
+    ("hopsack", 0.45),
 )
 """The power of the mean float by family of weaves; other families have none published."""
 COVERAGE = 2.0

@@ -150,6 +150,19 @@ def test_k_is_only_called_k_over_28_where_it_is_d_over_p(
         assert seen.warp_factor.value / 28 == pytest.approx(seen.warp.value, rel=1e-12)
 
 
+def test_a_declared_yarn_is_no_surer_than_its_packing_unless_it_says_so() -> None:
+    """Truth is theory: 0.05 of 0.60 is 8.3 %, half of it in the diameter."""
+    for declared, u in [
+        ('yarn_density = "0.9 g/cm3"', 0.05 / 0.60 / 2),
+        ('yarn_density = "0.9 g/cm3 u 0.02"', 0.02 / 0.9 / 2),
+        ('packing = "0.50"', math.hypot(0.05 / 0.50, 0.01) / 2),
+        ('packing = "0.50 u 0.01"', math.hypot(0.01 / 0.50, 0.01) / 2),
+    ]:
+        seen = predict(sheet("60 /in", "50 /in", "30 Ne", "40 Ne", of_warp=declared))
+        diameter = seen.ends.diameter
+        assert diameter.u / diameter.value == pytest.approx(u, rel=0.01), declared
+
+
 def test_flattening_widens_the_yarn_and_nothing_else() -> None:
     as_spun = predict(sheet("60 /in", "50 /in", "30 Ne", "40 Ne"))
     pressed = predict(sheet("60 /in", "50 /in", "30 Ne", "40 Ne", of_warp="flattening = 1.5"))
