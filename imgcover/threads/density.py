@@ -1,4 +1,4 @@
-"""From threads in pixels to threads a centimetre: the one place where counting meets the scale."""
+"""From counts over pixels to threads a centimetre: where the scale meets the threads."""
 
 from __future__ import annotations
 
@@ -6,36 +6,37 @@ import math
 from dataclasses import dataclass
 from typing import Literal
 
+import numpy as np
+
+from imgcover.findings import Finding, Flag, found
 from imgcover.quantity import Measured
 from imgcover.scale.scale import Scale
-from imgcover.threads.reading import ThreadReading, ThreadSet
+from imgcover.threads.reading import Fork, ThreadReading, ThreadSet
 
-PER_CM = 10.0
-"""Wave vectors are 1/mm here; densities are told by the centimetre."""
-
-Warp = Literal["vertical", "horizontal"]
-Vector = tuple[float, float]
+CM_PER_INCH = 2.54
 
 
 @dataclass(frozen=True, slots=True)
 class Density:
-    """Densities and directions of one field.
+    """Ends and picks in lengths, and how the two sets lie.
 
     Parameters
     ----------
     ends, picks : Measured or None
-        Threads at right angles to themselves, 1/cm; u of this field's count and of the scale.
+        Threads a centimetre at right angles to them; u is of this field's count and the scale.
     angle : Measured or None
-        Turn of the ends from the way the warp was said to run, clockwise as shown, deg.
+        Degrees the ends are turned from where the warp was said to run, clockwise as shown.
     skew : Measured or None
-        Further clockwise turn of the picks, away from the right angle to the ends, deg.
+        Degrees the picks are turned from the right angle to the ends, clockwise as shown.
     bow : Measured or None
-        Arc height of the picks over their chord in this field, signed as `ThreadSet.bow`.
+        Height of the picks' arc over its chord in this field, + where the middle lies lower (or
+        farther right, for a warp that runs across).
     length_ends_mm, length_picks_mm : float or None
-        The length over which each set was counted, at right angles to it.
-    scale_u : float
-        The part of the densities' relative u that the scale brings: common to all pictures that
-        share it. The larger of the two sets'.
+        Distances over which the threads were counted.
+    ends_forks, picks_forks : tuple of float
+        Where two readings stayed possible: both, threads a centimetre.
+    findings : tuple of Finding
+        Refusals that need a length to be said.
     """
 
     ends: Measured | None
@@ -45,106 +46,105 @@ class Density:
     bow: Measured | None
     length_ends_mm: float | None
     length_picks_mm: float | None
-    scale_u: float
+    ends_forks: tuple[float, ...]
+    picks_forks: tuple[float, ...]
+    findings: tuple[Finding, ...]
 
 
-def density_of(reading: ThreadReading, scale: Scale, *, warp: Warp) -> Density:
-    """Apply a scale to what was counted.
+def density_of(
+    reading: ThreadReading, scale: Scale, *, warp: Literal["vertical", "horizontal"]
+) -> Density:
+    """Put a scale to a reading of the threads.
 
     Parameters
     ----------
     reading : ThreadReading
-        In the pixel frame.
+        Counts in the pixel frame.
     scale : Scale
-        Along the shown axes; x and y may differ, so every vector is scaled by component.
+        Pixels a millimetre along x and y.
     warp : {"vertical", "horizontal"}
         How the warp was said to run.
     """
-    ends, picks = reading.ends, reading.picks
-    turn_ends = None if ends is None else _turn(ends, scale, upright=warp == "vertical")
-    turn_picks = None if picks is None else _turn(picks, scale, upright=warp == "horizontal")
+    ends = None if reading.ends is None else _per_cm(reading.ends, scale)
+    picks = None if reading.picks is None else _per_cm(reading.picks, scale)
+    across = warp == "vertical"
+    end_turn = None if reading.ends is None else _turn(reading.ends, scale, across=across)
+    pick_turn = None if reading.picks is None else _turn(reading.picks, scale, across=not across)
     skew = None
-    if turn_ends is not None and turn_picks is not None:
-        difference = _half_turn(turn_picks.value - turn_ends.value)
-        skew = Measured(difference, math.hypot(turn_ends.u, turn_picks.u), "deg")
+    if end_turn is not None and pick_turn is not None:
+        stretch = math.degrees(scale.ratio_u) * abs(math.sin(2 * math.radians(end_turn.value)))
+        u = math.hypot(end_turn.u, pick_turn.u, stretch)
+        skew = Measured(pick_turn.value - end_turn.value, u, "deg")
+    forks = {name: _fork_values(reading.forks, name, scale) for name in ("ends", "picks")}
     return Density(
-        ends=None if ends is None else _density(ends, scale),
-        picks=None if picks is None else _density(picks, scale),
-        angle=turn_ends,
-        skew=skew,
-        bow=_bow(ends, picks, scale),
-        length_ends_mm=None if ends is None else _length_mm(ends, scale),
-        length_picks_mm=None if picks is None else _length_mm(picks, scale),
-        scale_u=max(
-            (scale_u(each, scale) for each in (ends, picks) if each is not None), default=0.0
-        ),
+        ends,
+        picks,
+        end_turn,
+        skew,
+        _bow(reading.picks, scale, across=across),
+        _length_mm(reading.ends, ends),
+        _length_mm(reading.picks, picks),
+        forks["ends"],
+        forks["picks"],
+        tuple(_fork_said(name, values) for name, values in forks.items() if values),
     )
 
 
-def scale_u(threads: ThreadSet, scale: Scale) -> float:
-    """Relative u that the scale brings to the density of a set.
+def _vector(frequency: tuple[float, float], scale: Scale) -> tuple[float, float]:
+    """Cycles per mm."""
+    return frequency[0] * scale.x.value, frequency[1] * scale.y.value
+
+
+def _per_cm(threads: ThreadSet, scale: Scale) -> Measured:
+    """Length of the wave vector, with the scale's part of u.
 
     Notes
     -----
-    ρ² = X² + Y² with X = fx·sx and Y = fy·sy, so dρ/ρ = (X/ρ)² dsx/sx + (Y/ρ)² dsy/sy. The
-    covariance of both axes follows from their own u and that of their ratio (JCGM 100, 5.2.2).
+    ln density changes by cos² of the direction for x and sin² for y. What the two axes have in
+    common follows from the u of each and of their ratio (JCGM 100, 5.2.2).
     """
-    x, y = _in_mm(threads, scale)
-    share_x = x * x / (x * x + y * y)
-    share_y = 1.0 - share_x
-    u_x, u_y = scale.x.u / scale.x.value, scale.y.u / scale.y.value
-    covariance = (u_x**2 + u_y**2 - scale.ratio_u**2) / 2
-    variance = (share_x * u_x) ** 2 + (share_y * u_y) ** 2 + 2 * share_x * share_y * covariance
-    return math.sqrt(max(variance, 0.0))
+    fx, fy = _vector(threads.frequency, scale)
+    per_mm = math.hypot(fx, fy)
+    a, b = (fx / per_mm) ** 2, (fy / per_mm) ** 2
+    ux, uy = scale.x.u / scale.x.value, scale.y.u / scale.y.value
+    common = (ux**2 + uy**2 - scale.ratio_u**2) / 2
+    variance = (a * ux) ** 2 + (b * uy) ** 2 + 2 * a * b * common
+    relative = math.hypot(threads.u_relative, math.sqrt(max(0.0, variance)))
+    return Measured(10 * per_mm, 10 * per_mm * relative, "1/cm")
 
 
-def _in_mm(threads: ThreadSet, scale: Scale) -> Vector:
-    """The wave vector in cycles per mm."""
-    return threads.frequency[0] * scale.x.value, threads.frequency[1] * scale.y.value
+def _turn(threads: ThreadSet, scale: Scale, *, across: bool) -> Measured:
+    """Turn of threads from the vertical (across) or the horizontal, degrees clockwise."""
+    fx, fy = _vector(threads.frequency, scale)
+    turn = math.atan2(fy, fx) if across else math.atan2(-fx, fy)
+    # a phase error of the edges turns the threads as much as it stretches them
+    u = math.hypot(threads.u_relative, 0.5 * scale.ratio_u * math.sin(2 * turn))
+    return Measured(math.degrees(turn), math.degrees(u), "deg")
 
 
-def _density(threads: ThreadSet, scale: Scale) -> Measured:
-    value = PER_CM * math.hypot(*_in_mm(threads, scale))
-    return Measured(value, value * math.hypot(threads.u_relative, scale_u(threads, scale)), "1/cm")
-
-
-def _length_mm(threads: ThreadSet, scale: Scale) -> float:
-    """Threads over density: the length that the count and the density have in common."""
-    return threads.counted / math.hypot(*_in_mm(threads, scale))
-
-
-def _turn(threads: ThreadSet, scale: Scale, *, upright: bool) -> Measured:
-    """How far a set is turned, clockwise as shown, from upright or from level.
-
-    Notes
-    -----
-    A phase followed over a field gives the wave vector's two components alike well, so its
-    direction is as sure, in rad, as its length is relatively.
-    """
-    x, y = _in_mm(threads, scale)
-    turn = math.atan2(y, x) if upright else math.atan2(-x, y)
-    from_ratio = abs(math.sin(turn) * math.cos(turn)) * scale.ratio_u
-    u = math.hypot(threads.u_relative, from_ratio)
-    return Measured(_half_turn(math.degrees(turn)), math.degrees(u), "deg")
-
-
-def _half_turn(degrees: float) -> float:
-    """Bring the direction of a line into −90 … 90 degrees, 90 included."""
-    return 90.0 - (90.0 - degrees) % 180.0
-
-
-def _bow(ends: ThreadSet | None, picks: ThreadSet | None, scale: Scale) -> Measured | None:
-    """Bow of the picks over the width of the field, with what the phase leaves open of it.
-
-    Notes
-    -----
-    The count's u, in threads, is the u of a place; an arc height is read from such places, and is
-    told over the chord.
-    """
-    if ends is None or picks is None or picks.bow is None:
+def _bow(picks: ThreadSet | None, scale: Scale, *, across: bool) -> Measured | None:
+    if picks is None or picks.bow is None:
         return None
-    height, width = _length_mm(picks, scale), _length_mm(ends, scale)
-    return Measured(picks.bow, picks.u_relative * height / width, "1")
+    stretch = scale.x.value / scale.y.value if across else scale.y.value / scale.x.value
+    return picks.bow.times(stretch, "1")
 
 
-__all__ = ["Density", "Warp", "density_of", "scale_u"]
+def _length_mm(threads: ThreadSet | None, density: Measured | None) -> float | None:
+    if threads is None or density is None:
+        return None
+    return 10 * threads.counted / density.value
+
+
+def _fork_values(forks: tuple[Fork, ...], name: str, scale: Scale) -> tuple[float, ...]:
+    for fork in forks:
+        if fork.set_name == name:
+            return tuple(10 * float(np.hypot(*_vector(f, scale))) for f in fork.frequencies)
+    return ()
+
+
+def _fork_said(name: str, values: tuple[float, ...]) -> Finding:
+    readings = " or ".join(f"{v:.1f} a cm ({v * CM_PER_INCH:.1f} an inch)" for v in values)
+    return found(Flag.TWO_READINGS, f"two readings of the {name} stay possible: {readings}")
+
+
+__all__ = ["Density", "density_of"]

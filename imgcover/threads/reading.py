@@ -5,7 +5,11 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass
 
+import numpy as np
+from numpy.typing import NDArray
+
 from imgcover.findings import Finding
+from imgcover.quantity import Measured
 
 
 @dataclass(frozen=True, slots=True)
@@ -40,8 +44,11 @@ class ThreadSet:
         Relative standard deviation of the density between places of the field.
     local_low, local_high : float
         Extremes of the local density over the mean.
-    bow : float or None
-        Arc height over chord of these threads, signed (+ bulges towards +row or +column), or None
+    parts : int
+        How many places side by side, each with threads of its own, the scatter was taken over.
+    bow : Measured or None
+        Arc height over chord of these threads, signed (+ where the
+        middle lies beyond the ends along the wave vector), or None
         where fewer than three places along the chord could be read.
     """
 
@@ -53,12 +60,51 @@ class ThreadSet:
     local_scatter: float
     local_low: float
     local_high: float
-    bow: float | None
+    parts: int
+    bow: Measured | None
 
     @property
     def pixels_a_thread(self) -> float:
         """Distance between neighbouring threads, at right angles to them."""
         return 1.0 / math.hypot(*self.frequency)
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Track:
+    """Where the threads run: their phase at places of the field.
+
+    Parameters
+    ----------
+    x, y : ndarray, shapes (columns of the grid,) and (rows of the grid,), float64
+        Places in picture pixels.
+    ends, picks : ndarray, shape (rows of the grid, columns of the grid), float64
+        Phase in cycles. Whole numbers lie on the lightest line of each thread or, where the gaps
+        are the lightest (cloth before light), between two threads.
+    valid : ndarray, shape of the grid, bool
+        Where the phase was followed.
+    """
+
+    x: NDArray[np.float64]
+    y: NDArray[np.float64]
+    ends: NDArray[np.float64]
+    picks: NDArray[np.float64]
+    valid: NDArray[np.bool_]
+
+
+@dataclass(frozen=True, slots=True)
+class Fork:
+    """Two readings of one set that the picture cannot tell apart.
+
+    Parameters
+    ----------
+    set_name : str
+        "ends" or "picks".
+    frequencies : tuple of two (fx, fy)
+        Wave vectors of both readings, cycles per pixel.
+    """
+
+    set_name: str
+    frequencies: tuple[tuple[float, float], tuple[float, float]]
 
 
 @dataclass(frozen=True, slots=True)
@@ -69,23 +115,25 @@ class ThreadReading:
     ----------
     ends, picks : ThreadSet or None
         None where a set could not be counted; a finding says why.
-    phase : tuple of float
-        (ends, picks) in cycles: the phase of each lattice at pixel (0, 0); a thread's centre
-        lies where frequency · (x, y) + phase is an integer, as far as phase can tell.
+    track : Track or None
+        The followed phases, for drawing the threads and for folding them into one.
     tiles : tuple of Tile
         The field's pieces, used and left out.
     repeat : tuple of int or None
         (ends, picks) in the smallest repeat the spectrum shows.
+    forks : tuple of Fork
+        Sets that were refused because two readings stay possible.
     findings : tuple of Finding
         Refusals and warnings.
     """
 
     ends: ThreadSet | None
     picks: ThreadSet | None
-    phase: tuple[float, float]
+    track: Track | None
     tiles: tuple[Tile, ...]
     repeat: tuple[int, int] | None
+    forks: tuple[Fork, ...]
     findings: tuple[Finding, ...]
 
 
-__all__ = ["ThreadReading", "ThreadSet", "Tile"]
+__all__ = ["Fork", "ThreadReading", "ThreadSet", "Tile", "Track"]

@@ -1,0 +1,119 @@
+"""How many threads lie between the edges of a field: phases, read from edge to edge."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from imgcover.threads.follow import Followed
+
+
+@dataclass(frozen=True, slots=True)
+class Counted:
+    """One thread set's count over a field.
+
+    Parameters
+    ----------
+    frequency : tuple of float
+        Mean wave vector, cycles per pixel.
+    counted, length_px : float
+        Threads, and the distance at right angles to them over which they were counted.
+    noise, irregular : float
+        Parts of the relative standard uncertainty: disagreement of the phase between lines of
+        sight, and the unknown place of the outermost threads in an uneven set.
+    """
+
+    frequency: tuple[float, float]
+    counted: float
+    length_px: float
+    noise: float
+    irregular: float
+
+
+def count(
+    phase: NDArray[np.float64], followed: Followed, frequency: tuple[float, float]
+) -> Counted | None:
+    """Count one set from edge to edge.
+
+    Parameters
+    ----------
+    phase : ndarray, shape of the grid, float64
+        Phase over and above frequency · (x, y), cycles.
+    followed : Followed
+        Where the phase is valid, and where its values stand.
+    frequency : tuple of float
+        The wave vector the phase refers to, cycles per pixel.
+
+    Returns
+    -------
+    Counted or None
+        None where no row or no column of the grid is followed over three places.
+
+    Notes
+    -----
+    A slope fitted to the phase weighs the middle of the field most, a spectral peak the places of
+    high contrast. The difference between the edges is the number of threads between them, whatever
+    their spacing does on the way.
+    """
+    across_x = _edge_to_edge(phase, followed.valid, followed.x)
+    across_y = _edge_to_edge(phase.T, followed.valid.T, followed.y)
+    if across_x is None or across_y is None:
+        return None
+    slope_x, reach_x, error_x, walk_x = across_x
+    slope_y, reach_y, error_y, walk_y = across_y
+    fx, fy = frequency[0] + slope_x, frequency[1] + slope_y
+    density = math.hypot(fx, fy)
+    cos, sin = abs(fx) / density, abs(fy) / density
+    # the longest straight walk at right angles to the threads inside the followed field
+    length = min(
+        reach_x / cos if cos > 1e-6 else math.inf, reach_y / sin if sin > 1e-6 else math.inf
+    )
+    noise = math.hypot(cos * error_x, sin * error_y) / density
+    irregular = math.hypot(cos * walk_x, sin * walk_y) / density
+    return Counted((fx, fy), density * length, length, noise, irregular)
+
+
+def _edge_to_edge(
+    phase: NDArray[np.float64], valid: NDArray[np.bool_], places: NDArray[np.float64]
+) -> tuple[float, float, float, float] | None:
+    """Mean slope along the rows: summed phase differences over summed distances.
+
+    Returns
+    -------
+    slope : float
+        Cycles per pixel.
+    reach : float
+        Median distance between a row's first and last followed place, pixels.
+    error : float
+        Standard error of the slope from the scatter between rows.
+    walk : float
+        How far one threads' position strays at one place, as a slope over the reach.
+    """
+    rows = np.flatnonzero(valid.sum(axis=1) >= 3)
+    if rows.size == 0:
+        return None
+    first = valid[rows].argmax(axis=1)
+    last = valid.shape[1] - 1 - valid[rows, ::-1].argmax(axis=1)
+    gained = phase[rows, last] - phase[rows, first]
+    distance = places[last] - places[first]
+    slope = float(gained.sum() / distance.sum())
+    reach = float(np.median(distance))
+    rest = gained - slope * distance
+    # neighbouring rows share half their smoothing, and a steady turn (bow) is not noise
+    if rows.size >= 4:
+        steps = np.diff(rest)
+        error = float(np.sqrt((steps**2).mean() / 2) * math.sqrt(2 / rows.size)) / reach
+    else:
+        error = float(np.abs(rest).max()) / reach
+    profile = np.ma.masked_array(phase, ~valid)[rows].mean(axis=0)
+    plain = np.ma.filled(profile, np.nan)
+    bends = np.diff(plain, n=2) if plain.size >= 4 else np.zeros(1)
+    bends = bends[np.isfinite(bends)]
+    walk = float(np.sqrt((bends**2).mean() / 2)) * math.sqrt(2.0) / reach if bends.size else 0.0
+    return slope, reach, error, walk
+
+
+__all__ = ["Counted", "count"]

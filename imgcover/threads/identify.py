@@ -1,0 +1,135 @@
+"""Which pair of wave vectors is the threads': the whole road from a field to a decision."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+from fractions import Fraction
+
+from imgcover.repeat.phase import Transformed, transform
+from imgcover.repeat.spectrum import Peak, Spectrum, peaks, spectrum
+from imgcover.threads.candidates import Candidate, candidates
+from imgcover.threads.field import Field, flattened, windows_of
+from imgcover.threads.follow import Followed, follow
+from imgcover.threads.lattice import Lattice, fit_lattices
+from imgcover.threads.lines import lines_of, refined
+from imgcover.threads.profile import Multiple, which_multiple
+from imgcover.threads.witness import Evidence, weigh
+
+WINDOW = 256
+"""Pixels a side of the spectrum's windows: 12 to 80 threads of the sizes met at one zoom."""
+
+LOWEST_CUTS = (0.0, 1 / 30, 1 / 14, 1 / 8)
+"""Cycles per pixel below which peaks are set aside in turn: stripes and checks many threads wide
+lay a lattice of their own under everything else."""
+
+MOST_PEAKS = 40
+"""Peaks kept; a checked twill shows some thirty."""
+
+TOLERANCE = 0.8
+"""Bins a peak may lie from its place: irregular spacing broadens and splits lines."""
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Identified:
+    """The likeliest threads of a field, followed over it.
+
+    Parameters
+    ----------
+    candidate : Candidate
+        Wave vectors in cycles per field pixel.
+    evidence : Evidence
+        The spectral witnesses.
+    rivals : list of tuple
+        Other candidates with their evidence, best first.
+    origin : Field
+        The field that was read.
+    field : Transformed
+        The flattened field's transform.
+    followed : Followed
+        Phases of both sets.
+    sigma : float
+        Smoothing used to follow, field pixels.
+    ends, picks : Multiple
+        What the folded profiles say.
+    seen : Spectrum
+        Averaged power.
+    """
+
+    candidate: Candidate
+    evidence: Evidence
+    rivals: list[tuple[Candidate, Evidence]]
+    origin: Field
+    field: Transformed
+    followed: Followed
+    sigma: float
+    ends: Multiple
+    picks: Multiple
+    seen: Spectrum
+
+
+def identify(field: Field) -> Identified | None:
+    """Find the threads of a field.
+
+    Returns
+    -------
+    Identified or None
+        None where no two crossing sets of lines stand out.
+    """
+    side = min(WINDOW, min(field.light.shape))
+    seen = spectrum(windows_of(field, side))
+    least = 2.2 if seen.windows > 3 else 3.0
+    found = peaks(seen, excess=least, most=MOST_PEAKS)
+    if len(found) < 2:
+        return None
+    tolerance = TOLERANCE / side
+    heard = weigh(candidates(_lattices(found, tolerance)), seen, found, tolerance=tolerance)
+    if not heard:
+        return None
+    best, evidence = heard[0]
+    best = refined(best, found, tolerance=tolerance)
+    for _ in range(3):
+        tracked = _track(field, best, seen)
+        if tracked is None:
+            return None
+        flat, followed, sigma = tracked
+        ends = which_multiple(flat, followed, followed.ends, best.ends, sigma=sigma)
+        picks = which_multiple(flat, followed, followed.picks, best.picks, sigma=sigma)
+        if ends.factor == 1 == picks.factor:
+            break
+        best = _scaled(best, ends.factor, picks.factor)
+    return Identified(best, evidence, heard[1:], field, flat, followed, sigma, ends, picks, seen)
+
+
+def _lattices(found: list[Peak], tolerance: float) -> list[Lattice]:
+    out: list[Lattice] = []
+    for cut in LOWEST_CUTS:
+        kept = [each for each in found if math.hypot(each.fx, each.fy) > cut][:24]
+        if len(kept) >= 2:
+            out += fit_lattices(kept, tolerance=tolerance, most=4)
+    return out
+
+
+def _track(
+    field: Field, one: Candidate, seen: Spectrum
+) -> tuple[Transformed, Followed, float] | None:
+    period = max(one.pixels)
+    # two neighbouring lines of the lattice must not leak into each other
+    sigma = min(max(0.55 / one.lattice.shortest, 0.7 * period), 2 * period)
+    flat = transform(flattened(field.light, period), margin=math.ceil(4 * sigma))
+    lines = lines_of(one, seen)
+    followed = follow(flat, one.ends, one.picks, lines=lines, sigma=sigma)
+    return None if followed is None else (flat, followed, sigma)
+
+
+def _scaled(one: Candidate, ends: Fraction, picks: Fraction) -> Candidate:
+    across, down = float(ends), float(picks)
+    return Candidate(
+        (one.ends[0] * across, one.ends[1] * across),
+        (one.picks[0] * down, one.picks[1] * down),
+        max(1, round(one.index * across * down)),
+        one.lattice,
+    )
+
+
+__all__ = ["Identified", "identify"]

@@ -1,0 +1,164 @@
+"""The light across one thread, all threads folded into one, and what it says of its neighbours.
+
+Demodulated at a multiple of the thread frequency and turned back by the followed phase, every
+thread of the field adds up in step and noise does not. A true thread is one ridge a period and its
+own line outweighs the next multiples; half a pair is two ridges and a strong second multiple.
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+from fractions import Fraction
+
+import numpy as np
+from numpy.typing import NDArray
+from scipy.signal import find_peaks
+
+from imgcover.repeat.phase import Transformed, demodulate
+from imgcover.repeat.spectrum import HIGHEST_FREQUENCY
+from imgcover.threads.follow import Followed
+
+SUBMULTIPLES = tuple(Fraction(1, m) for m in (2, 3, 4))
+"""Broken multiples tried: pairs and ribs, dents of two to four."""
+
+MULTIPLES = (Fraction(2), Fraction(3), Fraction(4))
+"""Whole multiples tried: a repeat taken for a thread."""
+
+STEEPNESS = 0.6
+"""A line's weight grows with its frequency to this power. On drawn cloth with counted threads the
+second multiple reaches 0.62 of the thread's own amplitude (sharp open pores) and a two-colour
+hopsack's half line 1.72 times; this power keeps both below or near the thread's."""
+
+AMBIGUOUS = 1.6
+"""Two readings whose weights differ by less than this are told apart by their ridges."""
+
+PLAIN_RIDGE = 0.12
+"""A second ridge counts when it rises by this share of the profile's range."""
+
+FAINT_RIDGE = 0.03
+"""Below this there is no second ridge; between the two the readings cannot be told apart."""
+
+
+@dataclass(frozen=True, slots=True)
+class Multiple:
+    """Which multiple of a wave vector is the thread's.
+
+    Parameters
+    ----------
+    factor : Fraction
+        1 where the wave vector was right.
+    rival : Fraction or None
+        Another multiple that cannot be ruled out.
+    amplitude : float
+        Coherent amplitude of the thread's own line, in standard deviations of the field.
+    noise : float
+        What that amplitude would be if no thread were there.
+    """
+
+    factor: Fraction
+    rival: Fraction | None
+    amplitude: float
+    noise: float
+
+
+def amplitudes(
+    field: Transformed,
+    followed: Followed,
+    phase: NDArray[np.float64],
+    vector: tuple[float, float],
+    *,
+    sigma: float,
+    multiples: tuple[Fraction, ...],
+) -> tuple[NDArray[np.complex128], float]:
+    """Coherent amplitudes at multiples of a thread set's wave vector.
+
+    Returns
+    -------
+    values : ndarray, shape (multiples,), complex128
+        0 beyond the highest frequency that can be told.
+    noise : float
+        Typical size of such a value where there is nothing.
+    """
+    out = np.zeros(len(multiples), np.complex128)
+    scatter = []
+    for k, multiple in enumerate(multiples):
+        h = float(multiple)
+        if h * math.hypot(*vector) > HIGHEST_FREQUENCY:
+            continue
+        values, _ = demodulate(field, (h * vector[0], h * vector[1]), sigma=sigma)
+        rows, columns = phase.shape
+        values = values[:rows, :columns]
+        valid = followed.valid[: values.shape[0], : values.shape[1]]
+        turned = values * np.exp(-2j * np.pi * h * phase[: values.shape[0], : values.shape[1]])
+        chosen = turned[valid]
+        out[k] = chosen.mean()
+        # neighbouring places share about half their smoothing
+        scatter.append(float(np.abs(chosen - out[k]).std()) / math.sqrt(max(1.0, chosen.size / 3)))
+    return out, float(np.median(scatter)) if scatter else math.inf
+
+
+def which_multiple(
+    field: Transformed,
+    followed: Followed,
+    phase: NDArray[np.float64],
+    vector: tuple[float, float],
+    *,
+    sigma: float,
+) -> Multiple:
+    """Ask the folded profile whether the wave vector is the thread's, or a part or multiple."""
+    tried = (*SUBMULTIPLES, Fraction(1), *MULTIPLES)
+    values, noise = amplitudes(field, followed, phase, vector, sigma=sigma, multiples=tried)
+    size = np.abs(values)
+    weight = size * np.array([float(h) for h in tried]) ** STEEPNESS
+    own = tried.index(Fraction(1))
+    if size.max() < 5 * noise:
+        # both lines of the axis are silent, as in two-colour plain cloth: the lattice alone speaks
+        return Multiple(Fraction(1), None, float(size[own]), noise)
+    best = int(weight.argmax())
+    factor, rival = tried[best], None
+    near = [k for k in range(len(tried)) if k != best and weight[k] * AMBIGUOUS > weight[best]]
+    near = [k for k in near if size[k] > 5 * noise]
+    for k in sorted(near, key=lambda k: -weight[k]):
+        low, high = sorted((tried[k], factor))
+        ratio = high / low
+        if ratio.denominator != 1:
+            continue
+        said = _ridges(field, followed, phase, vector, sigma, low)
+        if said == 1 and low != factor:
+            factor, rival = low, None
+        elif said is None:
+            rival = high if factor == low else low
+        elif said > 1 and high != factor:
+            factor = high
+    return Multiple(factor, rival, float(size[tried.index(factor)]), noise)
+
+
+def _ridges(
+    field: Transformed,
+    followed: Followed,
+    phase: NDArray[np.float64],
+    vector: tuple[float, float],
+    sigma: float,
+    base: Fraction,
+) -> int | None:
+    """Count the ridges in one period of a multiple; None where that is unsure."""
+    harmonics = tuple(base * k for k in range(1, 9))
+    values, _ = amplitudes(field, followed, phase, vector, sigma=sigma, multiples=harmonics)
+    turns = np.outer(np.arange(1, 9), np.arange(96) / 96)
+    profile = (values[:, None] * np.exp(2j * np.pi * turns)).real.sum(axis=0)
+    counts = [_count(side, PLAIN_RIDGE) for side in (profile, -profile)]
+    faint = [_count(side, FAINT_RIDGE) for side in (profile, -profile)]
+    if max(faint) == 1:
+        return 1
+    return max(counts) if min(counts) > 1 or max(counts) > 1 else None
+
+
+def _count(profile: NDArray[np.float64], share: float) -> int:
+    around = np.roll(profile, -int(profile.argmin()))
+    closed = np.append(around, around[0])
+    found, _ = find_peaks(closed, prominence=share * float(np.ptp(profile)))
+    return len(found)
+
+
+__all__ = ["Multiple", "amplitudes", "which_multiple"]

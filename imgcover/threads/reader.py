@@ -1,0 +1,243 @@
+"""Ends and picks of one picture: counted, or refused with the reason."""
+
+from __future__ import annotations
+
+import dataclasses
+import math
+from fractions import Fraction
+from typing import Literal
+
+import numpy as np
+from numpy.typing import NDArray
+
+from imgcover.findings import Finding, Flag, found
+from imgcover.threads.counting import Counted, count
+from imgcover.threads.field import LightSource, Region, field_of, whole
+from imgcover.threads.follow import Followed
+from imgcover.threads.identify import Identified, identify
+from imgcover.threads.profile import amplitudes
+from imgcover.threads.reading import Fork, ThreadReading, ThreadSet, Tile, Track
+from imgcover.threads.regions import Pieces, bow_of, divide, local_density
+from imgcover.weave import Weave
+
+Direction = Literal["vertical", "horizontal"]
+
+FEWEST_PIXELS = 3.0
+"""Pixels a thread: below it a wave and its harmonics fold over each other (DEVELOPERS, threads)."""
+
+FEW_PIXELS = 5.0
+"""Below it the count is flagged."""
+
+FEWEST_THREADS = 6.0
+"""Threads across the field: with fewer, one thread more or less at the edge is the uncertainty."""
+
+NEAR_HALF_RIGHT = 35.0
+"""Degrees of turn from which on the nearer axis says little about which set is the warp."""
+
+EDGE = 2.2
+"""How far the outermost threads stray, in units of the phase's own bends from place to place:
+fitted so that 2 u covers 95 % of counted truth (tests/threads/sweep_threads.py)."""
+
+
+class Plain:
+    """An array of linear light, as a light source."""
+
+    def __init__(self, array: NDArray[np.float32]) -> None:
+        self._array = array
+        self.rows, self.columns = array.shape
+
+    def light(self, window: tuple[slice, slice] | None = None) -> NDArray[np.float32]:
+        """Linear light of a window, or of all."""
+        return self._array if window is None else self._array[window]
+
+
+def read_threads(
+    source: LightSource,
+    *,
+    warp: Direction = "vertical",
+    weave: Weave | None = None,
+    region: Region | None = None,
+) -> ThreadReading:
+    """Count the ends and the picks of a picture of woven cloth.
+
+    Parameters
+    ----------
+    source : LightSource
+        A Picture, or `Plain(array)`.
+    warp : {"vertical", "horizontal"}
+        How the warp runs in the shown picture.
+    weave : Weave or None
+        The declared weave; it may break a tie between two readings, nothing else.
+    region : Region or None
+        The part to read; None reads all.
+
+    Returns
+    -------
+    ThreadReading
+        A set that could not be counted is None, and a finding says why.
+    """
+    seen = _best_zoom(source, region or whole(source))
+    if seen is None:
+        return _refused(found(Flag.NO_CROSSING_THREADS))
+    return _read(seen, region or whole(source), warp)
+
+
+def _best_zoom(source: LightSource, region: Region) -> Identified | None:
+    """Read at the picture's own size and made smaller, and keep what speaks most clearly."""
+    best: Identified | None = None
+    for zoom in (1, 3):
+        if zoom > 1 and min(region.width, region.height) < 128 * zoom:
+            break
+        seen = identify(field_of(source, region, zoom))
+        if seen is not None and (best is None or seen.evidence.score > best.evidence.score):
+            best = seen
+    return best
+
+
+def _refused(*findings: Finding, tiles: tuple[Tile, ...] = ()) -> ThreadReading:
+    return ThreadReading(None, None, None, tiles, None, (), findings)
+
+
+def _read(seen: Identified, region: Region, warp: Direction) -> ThreadReading:
+    one, followed = seen.candidate, seen.followed
+    period = max(one.pixels)
+    pieces = divide(followed, period, seen.origin.light.shape)
+    tiles = tuple(_in_picture(tile, seen) for tile in pieces.tiles)
+    if not pieces.blocks:
+        return _refused(found(Flag.NO_CROSSING_THREADS), tiles=tiles)
+    followed = dataclasses.replace(followed, valid=pieces.valid)
+    across = _set(seen, followed.ends, pieces, one.ends)
+    down = _set(seen, followed.picks, pieces, one.picks)
+    if across is None or down is None:
+        return _refused(found(Flag.TOO_FEW_THREADS), tiles=tiles)
+    names = ("ends", "picks") if warp == "vertical" else ("picks", "ends")
+    findings: list[Finding] = []
+    forks = []
+    for name, multiple, each in zip(names, (seen.ends, seen.picks), (across, down), strict=True):
+        if multiple.rival is not None:
+            ratio = float(multiple.rival / multiple.factor)
+            other = (each.frequency[0] * ratio, each.frequency[1] * ratio)
+            forks.append(Fork(name, (each.frequency, other)))
+        findings += _said_of(name, each, multiple.rival is not None)
+    refused = {each.set_name for each in forks} | {
+        name for name, each in zip(names, (across, down), strict=True) if _too_coarse(each)
+    }
+    kept = {
+        name: None if name in refused else each
+        for name, each in zip(names, (across, down), strict=True)
+    }
+    findings += _said_of_field(seen, region, tiles)
+    return ThreadReading(
+        kept["ends"],
+        kept["picks"],
+        _track(seen, followed, warp),
+        tiles,
+        None,
+        tuple(forks),
+        tuple(findings),
+    )
+
+
+def _too_coarse(each: ThreadSet) -> bool:
+    return each.pixels_a_thread < FEWEST_PIXELS
+
+
+def _said_of(name: str, each: ThreadSet, forked: bool) -> list[Finding]:
+    said = []
+    pixels = each.pixels_a_thread
+    if pixels < FEWEST_PIXELS:
+        message = f"only {pixels:.1f} pixels a thread: the {name} are too fine for this picture"
+        remedy = f"scan at {math.ceil(8 / pixels)} times the resolution"
+        said.append(found(Flag.TOO_COARSE, message, remedy))
+    elif pixels < FEW_PIXELS:
+        said.append(found(Flag.FEW_PIXELS_A_THREAD, f"only {pixels:.1f} pixels a thread ({name})"))
+    if forked:
+        said.append(found(Flag.TWO_READINGS, f"two readings of the {name} stay possible"))
+    return said
+
+
+def _said_of_field(seen: Identified, region: Region, tiles: tuple[Tile, ...]) -> list[Finding]:
+    said = []
+    turn = seen.candidate.turn
+    if abs(turn) > NEAR_HALF_RIGHT:
+        said.append(found(Flag.WARP_UNCERTAIN, f"the swatch is turned by {turn:.0f} degrees"))
+    elif abs(turn) > 3:
+        said.append(found(Flag.SWATCH_TURNED, f"the swatch is turned by {turn:.1f} degrees"))
+    out = sum(not tile.used for tile in tiles)
+    if out:
+        message = f"{out} of {len(tiles)} parts of the field could not be followed"
+        said.append(found(Flag.TILES_LEFT_OUT, message))
+    cut = seen.origin.region
+    if cut.width < 0.9 * region.width or cut.height < 0.9 * region.height:
+        said.append(found(Flag.MIDDLE_COUNTED))
+    return said
+
+
+def _set(
+    seen: Identified, phase: NDArray[np.float64], pieces: Pieces, frequency: tuple[float, float]
+) -> ThreadSet | None:
+    """One set of threads, in picture pixels."""
+    followed = dataclasses.replace(seen.followed, valid=pieces.valid)
+    counted = count(phase, followed, frequency)
+    rows, columns = seen.origin.light.shape
+    reach = abs(frequency[0]) * columns + abs(frequency[1]) * rows
+    if counted is None or reach < FEWEST_THREADS:
+        return None
+    zoom = seen.origin.zoom
+    local = local_density(phase, followed, pieces, frequency)
+    parts = _parts(counted)
+    return ThreadSet(
+        frequency=(counted.frequency[0] / zoom, counted.frequency[1] / zoom),
+        counted=counted.counted,
+        length_px=counted.length_px * zoom,
+        u_relative=math.hypot(*parts.values()),
+        components=parts,
+        local_scatter=local.scatter,
+        local_low=local.low,
+        local_high=local.high,
+        parts=local.parts,
+        bow=bow_of(phase, followed, pieces.valid, frequency),
+    )
+
+
+def _parts(counted: Counted) -> dict[str, float]:
+    return {"phase": counted.noise, "edge": EDGE * counted.irregular}
+
+
+def _in_picture(tile: Tile, seen: Identified) -> Tile:
+    zoom, at = seen.origin.zoom, seen.origin.region
+    return Tile(
+        at.x + tile.x * zoom,
+        at.y + tile.y * zoom,
+        tile.width * zoom,
+        tile.height * zoom,
+        tile.used,
+        tile.reason,
+    )
+
+
+def _track(seen: Identified, followed: Followed, warp: Direction) -> Track:
+    """The phases in picture pixels, whole numbers on the lightest line of each thread."""
+    zoom, at = seen.origin.zoom, seen.origin.region
+    one = seen.candidate
+    phases = []
+    for deviation, vector in ((followed.ends, one.ends), (followed.picks, one.picks)):
+        values, _ = amplitudes(
+            seen.field, followed, deviation, vector, sigma=seen.sigma, multiples=(Fraction(1),)
+        )
+        lightest = float(np.angle(values[0])) / (2 * math.pi)
+        plane = vector[0] * followed.x[None, :] + vector[1] * followed.y[:, None]
+        phases.append(plane + deviation + lightest)
+    across, down = phases
+    ends, picks = (across, down) if warp == "vertical" else (down, across)
+    half = (zoom - 1) / 2
+    return Track(
+        at.x + followed.x * zoom + half,
+        at.y + followed.y * zoom + half,
+        ends,
+        picks,
+        followed.valid,
+    )
+
+
+__all__ = ["Direction", "Plain", "read_threads"]

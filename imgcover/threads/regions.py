@@ -1,0 +1,159 @@
+"""The field in pieces: which could be followed, and how the density varies between them."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from imgcover.quantity import Measured
+from imgcover.threads.follow import Followed
+from imgcover.threads.reading import Tile
+
+THREADS_A_TILE = 8
+"""Threads a side of a tile: fewer, and one uneven thread is taken for a change of density."""
+
+MOST_TILES = 12
+"""Tiles a side: what a person can take in at a glance."""
+
+FOLLOWED_SHARE = 0.6
+"""Share of a tile's places that must be followed for it to count."""
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Pieces:
+    """A field's tiles, and what the grid looks like without those left out.
+
+    Parameters
+    ----------
+    tiles : tuple of Tile
+        In field pixels.
+    valid : ndarray, shape of the grid, bool
+        The followed places inside tiles that count.
+    blocks : list of (slice, slice)
+        Grid rows and columns of the tiles that count.
+    """
+
+    tiles: tuple[Tile, ...]
+    valid: NDArray[np.bool_]
+    blocks: list[tuple[slice, slice]]
+
+
+def divide(followed: Followed, period: float, shape: tuple[int, int]) -> Pieces:
+    """Cut the grid into tiles and leave out those that could not be followed.
+
+    Parameters
+    ----------
+    period : float
+        The longer thread period, field pixels.
+    shape : tuple of int
+        (rows, columns) of the field.
+    """
+    valid = np.zeros_like(followed.valid)
+    tiles: list[Tile] = []
+    blocks = []
+    for high, top, bottom in _cuts(followed.y, shape[0], period):
+        for wide, left, right in _cuts(followed.x, shape[1], period):
+            share = float(followed.valid[high, wide].mean())
+            strength = float(np.median(followed.strength[high, wide]))
+            used = share >= FOLLOWED_SHARE
+            reason = "" if used else "no threads here" if strength < 0.3 else "threads not clear"
+            tiles.append(Tile(left, top, right - left, bottom - top, used, reason))
+            if used:
+                valid[high, wide] = followed.valid[high, wide]
+                blocks.append((high, wide))
+    return Pieces(tuple(tiles), valid, blocks)
+
+
+def _cuts(places: NDArray[np.float64], length: int, period: float) -> list[tuple[slice, int, int]]:
+    """Cut an axis into equal parts, as grid slices and as pixels."""
+    parts = int(np.clip(length / (THREADS_A_TILE * period), 1, min(MOST_TILES, places.size // 3)))
+    edges = np.linspace(0, length, parts + 1)
+    at = np.searchsorted(places, edges[1:-1])
+    bounds = [0, *at.tolist(), places.size]
+    return [
+        (slice(bounds[k], bounds[k + 1]), round(edges[k]), round(edges[k + 1]))
+        for k in range(parts)
+    ]
+
+
+@dataclass(frozen=True, slots=True)
+class LocalDensity:
+    """How one set's density varies between tiles, relative to its mean."""
+
+    scatter: float
+    low: float
+    high: float
+    parts: int
+
+
+def local_density(
+    phase: NDArray[np.float64],
+    followed: Followed,
+    pieces: Pieces,
+    frequency: tuple[float, float],
+) -> LocalDensity:
+    """Density of one set in each tile over its mean.
+
+    Notes
+    -----
+    A plane is fitted to the phase of each tile. Tiles that lie along the threads share them, so
+    `parts` counts only how many lie side by side.
+    """
+    mean = math.hypot(*frequency)
+    values = []
+    for high, wide in pieces.blocks:
+        use = pieces.valid[high, wide]
+        y, x = np.broadcast_arrays(followed.y[high][:, None], followed.x[wide][None, :])
+        flat = np.stack([x[use], y[use], np.ones(int(use.sum()))], axis=1)
+        if flat.shape[0] < 6:
+            continue
+        (sx, sy, _), *_ = np.linalg.lstsq(flat, phase[high, wide][use], rcond=None)
+        values.append(math.hypot(frequency[0] + sx, frequency[1] + sy) / mean)
+    if len(values) < 2:
+        return LocalDensity(0.0, 1.0, 1.0, max(1, len(values)))
+    across_x = abs(frequency[0]) >= abs(frequency[1])
+    starts = {(wide.start if across_x else high.start) for high, wide in pieces.blocks}
+    relative = np.array(values) / np.mean(values)
+    return LocalDensity(
+        float(relative.std(ddof=1)), float(relative.min()), float(relative.max()), len(starts)
+    )
+
+
+def bow_of(
+    phase: NDArray[np.float64],
+    followed: Followed,
+    valid: NDArray[np.bool_],
+    frequency: tuple[float, float],
+) -> Measured | None:
+    """Arc height over chord of one set's threads in this field.
+
+    Returns
+    -------
+    Measured or None
+        + where the middle lies beyond the ends along the wave vector; None where the threads
+        cannot be followed over eight places. u from the scatter about the arc.
+    """
+    along_x = abs(frequency[0]) < abs(frequency[1])
+    turned, mask = (phase, valid) if along_x else (phase.T, valid.T)
+    places = followed.x if along_x else followed.y
+    whole = mask.sum(axis=1) > 0.8 * mask.shape[1]
+    if whole.sum() < 3:
+        return None
+    profile = np.ma.masked_array(turned, ~mask)[whole]
+    profile = (profile - profile.mean(axis=1, keepdims=True)).mean(axis=0)
+    keep = ~np.ma.getmaskarray(profile)
+    if keep.sum() < 8:
+        return None
+    width = float(np.ptp(places[keep]))
+    unit = (places[keep] - places[keep].mean()) / width
+    fit, covariance = np.polyfit(unit, np.asarray(profile[keep]), 2, cov=True)
+    scale = 1 / (4 * math.hypot(*frequency) * width)
+    # neighbouring places share half their smoothing
+    u = math.sqrt(2 * covariance[0, 0])
+    return Measured(float(fit[0]) * scale, u * scale, "1")
+
+
+__all__ = ["LocalDensity", "Pieces", "bow_of", "divide", "local_density"]

@@ -1,0 +1,199 @@
+"""What speaks for and against a pair of wave vectors being the threads.
+
+In evenly woven cloth all ends weave alike. Averaged along the ends the weave is gone, so on the
+ends' own axis of the spectrum only multiples of the thread frequency are left; the weave's own
+lines lie off the axes. And each thread is an individual: a little thicker, brighter or farther from
+its neighbour all along its length, which lays a faint unbroken streak along the axis of each set.
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+from scipy import ndimage
+
+from imgcover.repeat.spectrum import Peak, Spectrum
+from imgcover.threads.candidates import Candidate
+from imgcover.threads.lattice import index as index_on
+from imgcover.threads.lattice import weights_of
+
+
+@dataclass(frozen=True, slots=True)
+class Evidence:
+    """The witnesses for one candidate.
+
+    Parameters
+    ----------
+    ends_line, picks_line : float
+        ln(power over floor) at the thread frequencies themselves, 0 where nothing stands out.
+    ends_second, picks_second : float
+        The same at twice the thread frequencies.
+    ends_above, picks_above : float
+        By how much the highest of the lines at two to five times the thread frequency exceeds it.
+    against : float
+        Share of the peaks' weight on the axes at broken multiples of the thread frequency.
+    beyond : float
+        Share of the peaks' weight farther out than the threads' own lines.
+    apart : float
+        Share of the peaks' weight on no point of the lattice.
+    ends_streak, picks_streak : float
+        ln(power) along the axis over the power beside it, between the lines.
+    score : float
+        All of these as one figure; higher is better.
+    """
+
+    ends_line: float
+    picks_line: float
+    ends_second: float
+    picks_second: float
+    ends_above: float
+    picks_above: float
+    against: float
+    beyond: float
+    apart: float
+    ends_streak: float
+    picks_streak: float
+    score: float
+
+
+def weigh(
+    these: list[Candidate], of: Spectrum, peaks: list[Peak], *, tolerance: float
+) -> list[tuple[Candidate, Evidence]]:
+    """Hear the witnesses for each candidate.
+
+    Parameters
+    ----------
+    these : list of Candidate
+        Pairs of wave vectors.
+    of : Spectrum
+        The field's averaged power.
+    peaks : list of Peak
+        Its significant peaks, strongest first.
+    tolerance : float
+        How far a peak may lie from its place, cycles per pixel.
+
+    Returns
+    -------
+    list of tuple
+        (candidate, evidence), the best first.
+    """
+    positions = np.array([(each.fx, each.fy) for each in peaks])
+    levels = np.array([each.level for each in peaks])
+    weights = weights_of(peaks)
+    streaks: dict[tuple[int, int], float] = {}
+    heard = []
+    for one in these:
+        heard.append((one, _hear(one, of, positions, levels, weights, tolerance, streaks)))
+    heard.sort(key=lambda pair: -pair[1].score)
+    return heard
+
+
+def excess_at(of: Spectrum, frequency: NDArray[np.float64]) -> tuple[float, float]:
+    """ln(power over floor), and ln(power), of the strongest bin at a frequency's place."""
+    reach = max(1, round(of.size / max(of.window)))
+    column, row = (round(float(f) * of.size) + of.size // 2 for f in frequency)
+    if not (reach <= row < of.size - reach and reach <= column < of.size - reach):
+        return 0.0, -30.0
+    around = of.log_power[row - reach : row + reach + 1, column - reach : column + reach + 1]
+    level = float(around.max())
+    return max(0.0, level - float(of.log_floor[row, column])), level
+
+
+def _hear(
+    one: Candidate,
+    of: Spectrum,
+    positions: NDArray[np.float64],
+    levels: NDArray[np.float64],
+    weights: NDArray[np.float64],
+    tolerance: float,
+    streaks: dict[tuple[int, int], float],
+) -> Evidence:
+    ends, picks = np.array(one.ends), np.array(one.picks)
+    ends_line, ends_level = excess_at(of, ends)
+    picks_line, picks_level = excess_at(of, picks)
+    ends_second, _ = excess_at(of, 2 * ends)
+    picks_second, _ = excess_at(of, 2 * picks)
+    at = np.linalg.solve(one.basis, positions.T).T
+    slack = np.array([tolerance / math.hypot(*one.ends), tolerance / math.hypot(*one.picks)]) + 0.02
+    # waves much longer than two threads are stripes and checks: they say nothing of the threads
+    weights = weights * np.minimum(1.0, 2 * np.hypot(*at.T)) ** 2
+    whole = np.abs(at - np.round(at)) < slack
+    on_axis = np.abs(at) < slack
+    broken_ends = on_axis[:, 1] & ~on_axis[:, 0] & ~whole[:, 0]
+    broken_picks = on_axis[:, 0] & ~on_axis[:, 1] & ~whole[:, 1]
+    # a broken multiple counts by how it compares with the thread's own line
+    against = weights[broken_ends] @ np.exp(
+        np.clip(0.5 * (levels[broken_ends] - ends_level), -4, 0.4)
+    ) + weights[broken_picks] @ np.exp(np.clip(0.5 * (levels[broken_picks] - picks_level), -4, 0.4))
+    _, on = index_on(one.lattice.basis, positions, tolerance)
+    apart = weights @ ~(on | whole.all(axis=1))
+    total = max(float(weights.sum()), 1e-9)
+    evidence = {
+        "ends_line": ends_line,
+        "picks_line": picks_line,
+        "ends_second": ends_second,
+        "picks_second": picks_second,
+        "ends_above": _highest_multiple(of, ends) - ends_line,
+        "picks_above": _highest_multiple(of, picks) - picks_line,
+        "against": float(against / total),
+        "beyond": float(weights @ (np.abs(at).max(axis=1) > 1.25) / total),
+        "apart": float(apart / total),
+        "ends_streak": _streak(of, ends, streaks),
+        "picks_streak": _streak(of, picks, streaks),
+    }
+    return Evidence(**evidence, score=_score(one, evidence))
+
+
+def _highest_multiple(of: Spectrum, frequency: NDArray[np.float64]) -> float:
+    return max(excess_at(of, times * frequency)[0] for times in (2, 3, 4, 5))
+
+
+def _streak(
+    of: Spectrum, direction: NDArray[np.float64], known: dict[tuple[int, int], float]
+) -> float:
+    """Median over the ray of ln(power) on it less ln(power) beside it, between lines."""
+    key = (round(math.atan2(direction[1], direction[0]) * 500), 0)
+    if key not in known:
+        bin_ = of.size / max(of.window)
+        unit = direction / np.hypot(*direction)
+        along = np.arange(4 * bin_, 0.42 * of.size, 0.5 * bin_)
+        offsets = np.array([-7, -6, -5, -4, -3, -0.5, 0, 0.5, 3, 4, 5, 6, 7]) * bin_
+        middle = of.size // 2
+        columns = (
+            middle + np.multiply.outer(offsets, np.full_like(along, -unit[1])) + along * unit[0]
+        )
+        rows = middle + np.multiply.outer(offsets, np.full_like(along, unit[0])) + along * unit[1]
+        power = ndimage.map_coordinates(of.log_power, [rows, columns], order=1)
+        beside = np.delete(power, [5, 6, 7], axis=0).mean(axis=0)
+        known[key] = float(max(np.median(power[k] - beside) for k in (5, 6, 7)))
+    return known[key]
+
+
+_WEAVE_COST = {1: 0.0, 2: 0.0, 3: 0.1, 4: 0.2, 5: 0.3, 8: 0.6}
+"""Common repeats are cheap; the rest cost 1.3, and more than 8 cost 1.8."""
+
+
+def _score(one: Candidate, e: dict[str, float]) -> float:
+    lines = 0.5 * (min(e["ends_line"], 6) + min(e["picks_line"], 6))
+    seconds = 0.2 * (min(e["ends_second"], 4) + min(e["picks_second"], 4))
+    # a thread's own line stands higher over the floor than its multiples do
+    seconds -= 0.6 * (max(0, e["ends_above"]) + max(0, e["picks_above"]))
+    streaks = 5 * (min(0.6, max(0, e["ends_streak"])) + min(0.6, max(0, e["picks_streak"])))
+    shape = 1.5 * (one.turn / 30) ** 2 + (one.skew / 4) ** 2
+    weave = _WEAVE_COST.get(one.index, 1.3 if one.index < 9 else 1.8)
+    return (
+        lines
+        + seconds
+        + streaks
+        - 8 * e["against"]
+        - 5 * e["beyond"]
+        - 4 * e["apart"]
+        - shape
+        - weave
+    )
+
+
+__all__ = ["Evidence", "excess_at", "weigh"]
