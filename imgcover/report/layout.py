@@ -7,6 +7,7 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any, Literal
 
+from imgcover.cloth.declaration import Declaration
 from imgcover.quantity import rounded
 from imgcover.report.plain import columns, shortened
 
@@ -17,6 +18,13 @@ MOST_DIGITS = 5
 """A thread in a thousand metres is nobody's concern: past it digits only widen a column."""
 
 Units = Literal["inch", "cm"]
+
+
+def units_of(declaration: Declaration | None) -> Units:
+    """Say densities as the declaration does; by the centimetre where there is none."""
+    if declaration is None:
+        return "cm"
+    return "inch" if "in" in declaration.warp.threads.text else "cm"
 
 
 @dataclass(frozen=True, slots=True)

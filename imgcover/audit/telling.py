@@ -1,0 +1,249 @@
+"""An audit told: lots summed and remembered, then records, table, workbook and pages written."""
+
+from __future__ import annotations
+
+import hashlib
+import json
+from collections.abc import Iterator, Mapping
+from dataclasses import dataclass
+from datetime import UTC, datetime
+from pathlib import PurePosixPath
+from typing import Any
+
+from imgcover.audit.folder import LotName
+from imgcover.audit.lots import Member, member, sum_lot
+from imgcover.audit.out_folder import page_name
+from imgcover.audit.outcome import Crew, Lost
+from imgcover.audit.run import Round, record_in
+from imgcover.cloth.declaration import Declaration
+from imgcover.errors import DeclarationError
+from imgcover.ledger.canonical import canonical
+from imgcover.ledger.chain import Entry, Head, Row
+from imgcover.report.glance import Glance, glance
+from imgcover.report.index_page import LotLine, index_page
+from imgcover.report.layout import Units, units_of
+from imgcover.report.lot_page import About, lot_page
+from imgcover.report.lots_csv import lots_csv_lines
+from imgcover.report.workbook import AuditWorkbook
+
+LOT_SCHEMA = "imgcover/lot/1"
+MOST_UNLISTED_NAMED = 12
+"""Names of pictures that the lot sheet leaves out, on the first page."""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class ToldLot:
+    """A lot as it stands in the ledger.
+
+    Parameters
+    ----------
+    name : LotName
+    record : dict
+        Schema imgcover/lot/1.
+    row : int
+        Of the ledger.
+    indices : tuple of int
+        Its pictures' places in the list.
+    numbers : tuple of int or None
+        Its pictures' places in the lot.
+    unread : int
+        Pictures that gave no number.
+    units : {"inch", "cm"}
+        As its declaration says.
+    page : str
+        Of its page, inside the out folder.
+    """
+
+    name: LotName
+    record: dict[str, Any]
+    row: int
+    indices: tuple[int, ...]
+    numbers: tuple[int | None, ...]
+    unread: int
+    units: Units
+    page: str
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class PageOrder:
+    """What a worker needs to write a lot's page."""
+
+    record: Mapping[str, Any]
+    glances: tuple[Glance, ...]
+    about: About
+
+
+def sum_lots(round_: Round, *, risk: float | None) -> Iterator[ToldLot]:
+    """Sum every lot of the list and append it to the ledger, in the list's order.
+
+    Yields
+    ------
+    ToldLot
+        Once it is on the disk.
+    """
+    for name, indices in round_.listing.lots().items():
+        declared = round_.book.declared(name.article)
+        declaration = None if isinstance(declared, DeclarationError) else declared
+        rows = [row for _, row in _rows(round_, indices)]
+        members = [member(row, json.loads(row.entry.body)) for row in rows]
+        summed = sum_lot(members, lot=name.lot, declaration=declaration, risk=risk)
+        subject = f"lot:{round_.folder}/{name.lot}/{name.article.name if name.article else ''}"
+        entry = Entry(
+            LOT_SCHEMA,
+            subject,
+            _lot_key(rows, declaration, risk),
+            canonical(summed.record),
+            _now(),
+        )
+        round_.ledger.append([entry])
+        kept = round_.ledger.last(subject)
+        assert kept is not None
+        yield ToldLot(
+            name=name,
+            record=summed.record,
+            row=kept.n,
+            indices=tuple(indices),
+            numbers=summed.numbers,
+            unread=sum(_gave_nothing(each) for each in members),
+            units=units_of(declaration),
+            page=page_name(name.lot, name.article.name if name.article else ""),
+        )
+
+
+def write_reports(
+    round_: Round, lots: list[ToldLot], crew: Crew, *, versions: Mapping[str, str]
+) -> Head:
+    """Write records.jsonl, lots.csv, report.xlsx, a page a lot and report.html.
+
+    Parameters
+    ----------
+    round_ : Round
+    lots : list of ToldLot
+        From `sum_lots`.
+    crew : Crew
+        Who writes the pages.
+    versions : mapping of str to str
+        Of the program and its libraries.
+
+    Returns
+    -------
+    Head
+        Of the ledger, as every report ends with it.
+    """
+    head, made_at = round_.ledger.head(), _now()
+    about = About(units="cm", head=str(head), made_at=made_at.replace("T", " "), versions=versions)
+    _write_records(round_, lots)
+    lines = lots_csv_lines(
+        ((lot.record, lot.page, lot.row) for lot in lots), head=(head.n, head.seal)
+    )
+    round_.out.write("lots.csv", "\ufeff" + "".join(lines))
+    _write_workbook(round_, lots, about)
+    orders = ((n, _page_order(round_, lot, about)) for n, lot in enumerate(lots))
+    for outcome in crew.run(made_page, orders):
+        if isinstance(outcome, Lost):
+            raise RuntimeError(f"the page of a lot could not be written: {outcome.said}")
+        round_.out.write(lots[outcome.index].page, outcome.answer)
+    round_.out.write("report.html", _first_page(round_, lots, about))
+    return head
+
+
+def made_page(order: PageOrder) -> str:
+    """Write a lot's page; called in a worker, where drawing it costs the parent nothing."""
+    return lot_page(order.record, order.glances, about=order.about)
+
+
+def _rows(round_: Round, indices: list[int] | tuple[int, ...]) -> Iterator[tuple[int, Row]]:
+    for index in indices:
+        row = round_.ledger.last(round_.subject(index))
+        assert row is not None, "a picture of the list is not in the ledger"
+        yield index, row
+
+
+def _lot_key(rows: list[Row], declaration: Declaration | None, risk: float | None) -> str:
+    parts = {
+        "pictures": [[row.entry.subject, row.seal] for row in rows],
+        "declaration": None if declaration is None else declaration.sha256,
+        "risk": risk,
+    }
+    return hashlib.sha256(canonical(parts).encode("utf-8")).hexdigest()
+
+
+def _gave_nothing(each: Member) -> bool:
+    seen = each.observed
+    return seen.ends is None and seen.picks is None and seen.cover is None
+
+
+def _write_records(round_: Round, lots: list[ToldLot]) -> None:
+    with round_.out.writing("records.jsonl") as write:
+        for _, row in _rows(round_, tuple(range(len(round_.listing.pictures)))):
+            write(f"{canonical(record_in(row.entry))}\n".encode())
+        for lot in lots:
+            write(f"{canonical(lot.record)}\n".encode())
+
+
+def _write_workbook(round_: Round, lots: list[ToldLot], about: About) -> None:
+    with AuditWorkbook(round_.out.root) as book:
+        for lot in lots:
+            book.lot(lot.record)
+            for _, row in _rows(round_, lot.indices):
+                book.picture(json.loads(row.entry.body), row=row.n)
+        book.about(
+            [
+                ("audited folder", round_.folder),
+                ("lot sheet", round_.listing.sheet or "none: sub-folders are the lots"),
+                ("made at", about.made_at),
+                *((f"version of {name}", version) for name, version in about.versions.items()),
+                ("ledger head", about.head),
+            ]
+        )
+    round_.out.write("report.xlsx", book.content)
+
+
+def _page_order(round_: Round, lot: ToldLot, about: About) -> PageOrder:
+    declared = round_.book.declared(lot.name.article)
+    glances = tuple(
+        glance(
+            json.loads(row.entry.body),
+            number=number,
+            row=row.n,
+            thumbnail=round_.out.small(row.entry.key) if row.entry.key else None,
+        )
+        for number, (_, row) in zip(lot.numbers, _rows(round_, lot.indices), strict=True)
+    )
+    told = About(
+        units=lot.units,
+        head=about.head,
+        made_at=about.made_at,
+        versions=about.versions,
+        description=declared.article.description if isinstance(declared, Declaration) else "",
+        article_sha256=declared.sha256 if isinstance(declared, Declaration) else "",
+    )
+    return PageOrder(record=lot.record, glances=glances, about=told)
+
+
+def _first_page(round_: Round, lots: list[ToldLot], about: About) -> str:
+    lines = [
+        LotLine(lot=lot.record, units=lot.units, link=str(PurePosixPath(lot.page))) for lot in lots
+    ]
+    notes = [f"declaration {fault}" for fault in round_.book.faults]
+    unlisted = round_.listing.unlisted
+    if unlisted:
+        shown = ", ".join(unlisted[:MOST_UNLISTED_NAMED])
+        more = len(unlisted) - MOST_UNLISTED_NAMED
+        left = f" and {more} more" if more > 0 else ""
+        notes.append(f"in the folder but not in {round_.listing.sheet}: {shown}{left}")
+    return index_page(
+        lines,
+        title=round_.folder,
+        pictures=len(round_.listing.pictures),
+        unread=sum(lot.unread for lot in lots),
+        notes=notes,
+        about=about,
+    )
+
+
+def _now() -> str:
+    return datetime.now(UTC).strftime("%Y-%m-%dT%H:%M:%SZ")
+
+
+__all__ = ["PageOrder", "ToldLot", "made_page", "sum_lots", "write_reports"]
