@@ -14,6 +14,7 @@ from imgcover.findings import Flag
 from imgcover.quantity import Measured
 from imgcover.verdict.observed import Observed, Spread
 
+
 def evidence_text(observed: Observed) -> str:
     """Write an observation as one line of JSON.
 

@@ -7,6 +7,7 @@ import re
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, field
 from pathlib import Path
+from typing import NamedTuple
 
 from imgcover.audit.articles import ArticleShelf
 from imgcover.audit.grounds import Grounds, OffGroundsError
@@ -72,6 +73,13 @@ class Listed:
         return self.sample["lot"]
 
 
+class LotName(NamedTuple):
+    """What a lot is known by: two articles under one lot's name are two lots."""
+
+    lot: str
+    article: Path | None
+
+
 @dataclass(frozen=True, slots=True)
 class Listing:
     """Everything an audit of a folder has to do.
@@ -90,11 +98,11 @@ class Listing:
     unlisted: tuple[str, ...]
     sheet: str
 
-    def lots(self) -> dict[str, list[int]]:
+    def lots(self) -> dict[LotName, list[int]]:
         """Group the pictures, by their place in the list, under their lots."""
-        lots: dict[str, list[int]] = {}
+        lots: dict[LotName, list[int]] = {}
         for index, picture in enumerate(self.pictures):
-            lots.setdefault(picture.lot, []).append(index)
+            lots.setdefault(LotName(picture.lot, picture.article), []).append(index)
         return lots
 
 
@@ -245,4 +253,4 @@ def _unicode(name: str) -> str:
     return os.fsencode(name).decode("utf-8", "backslashreplace")
 
 
-__all__ = ["Listed", "Listing", "list_folder"]
+__all__ = ["Listed", "Listing", "LotName", "list_folder"]

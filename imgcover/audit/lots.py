@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any
 
 from imgcover.audit.evidence import observed_from
@@ -11,7 +11,7 @@ from imgcover.cloth.declaration import Declaration
 from imgcover.cloth.prediction import predict
 from imgcover.findings import Flag, found
 from imgcover.ledger.chain import Row
-from imgcover.ledger.record import findings_section, tidied
+from imgcover.ledger.sections import findings_section, tidied
 from imgcover.verdict.lot import judge_lot, measured_lot
 from imgcover.verdict.observed import Observed
 
@@ -52,10 +52,12 @@ class Summed:
 
 def member(row: Row, record: Mapping[str, Any]) -> Member:
     """Take from a ledger's row what its lot needs."""
-    picture = record["picture"]
-    return Member(
-        picture["name"], picture["pixels_sha256"], observed_from(row.entry.evidence)
-    )
+    picture, sample = record["picture"], record["sample"]
+    # places are numbered within a piece: place 1 of two pieces is two places
+    parts = [sample["piece"], sample["place"]] if sample["place"] else []
+    place = ", ".join(filter(None, parts))
+    observed = replace(observed_from(row.entry.evidence), place=place)
+    return Member(picture["name"], picture["pixels_sha256"], observed)
 
 
 def sum_lot(

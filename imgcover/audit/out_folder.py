@@ -6,7 +6,7 @@ import contextlib
 import hashlib
 import os
 import re
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Container, Iterator
 from pathlib import Path
 
 from imgcover.errors import OutputError
@@ -83,33 +83,36 @@ class OutFolder:
             beside.write_bytes(content)
             beside.replace(place)
 
-    def small_content(self, key: str) -> bytes | None:
-        """Read a small picture; None where none was kept."""
-        try:
-            return self.small(key).read_bytes()
-        except OSError:
-            return None
+
+RESERVED = frozenset(
+    {"con", "prn", "aux", "nul", *(f"{kind}{n}" for kind in ("com", "lpt") for n in range(10))}
+)
+"""Names of devices on Windows, whatever ending they are given."""
 
 
-def page_name(lot: str, article: str) -> str:
+def page_name(lot: str, article: str, *, taken: Container[str] = ()) -> str:
     """Name a lot's page by plain letters that every system and address takes.
+
+    Parameters
+    ----------
+    lot, article : str
+        Their names.
+    taken : container of str
+        Names of other pages, in small letters.
 
     Examples
     --------
-    >>> page_name("4711", "")
+    >>> page_name("4711", "harrow.toml")
     'lots/4711.html'
     >>> page_name("../4711 é", "")
     'lots/4711-07bc2718.html'
     """
     stem = re.sub(r"[^A-Za-z0-9]+", "-", lot).strip("-")[:LONGEST_STEM]
-    if stem != lot or article or stem.lower() in RESERVED:
-        told = hashlib.sha256(f"{lot}\n{article}".encode("utf-8", "surrogatepass")).hexdigest()
-        stem = f"{stem}-{told[:8]}".lstrip("-")
-    return f"lots/{stem}.html"
-
-
-RESERVED = frozenset({"con", "prn", "aux", "nul", *(f"{d}{n}" for d in ("com", "lpt") for n in range(10))})
-"""Names of devices on Windows, whatever ending they are given."""
+    bare = f"lots/{stem}.html"
+    if stem == lot and stem.lower() not in RESERVED and bare.lower() not in taken:
+        return bare
+    told = hashlib.sha256(f"{lot}\n{article}".encode("utf-8", "surrogatepass")).hexdigest()
+    return f"lots/{f'{stem}-{told[:8]}'.lstrip('-')}.html"
 
 
 @contextlib.contextmanager

@@ -81,6 +81,7 @@ def sum_lots(round_: Round, *, risk: float | None) -> Iterator[ToldLot]:
     ToldLot
         Once it is on the disk.
     """
+    pages: set[str] = set()
     for name, indices in round_.listing.lots().items():
         declared = round_.book.declared(name.article)
         declaration = None if isinstance(declared, DeclarationError) else declared
@@ -98,6 +99,8 @@ def sum_lots(round_: Round, *, risk: float | None) -> Iterator[ToldLot]:
         round_.ledger.append([entry])
         kept = round_.ledger.last(subject)
         assert kept is not None
+        page = page_name(name.lot, name.article.name if name.article else "", taken=pages)
+        pages.add(page.lower())
         yield ToldLot(
             name=name,
             record=summed.record,
@@ -106,7 +109,7 @@ def sum_lots(round_: Round, *, risk: float | None) -> Iterator[ToldLot]:
             numbers=summed.numbers,
             unread=sum(_gave_nothing(each) for each in members),
             units=units_of(declaration),
-            page=page_name(name.lot, name.article.name if name.article else ""),
+            page=page,
         )
 
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass
+from pathlib import Path
 from typing import Any
 
 Number = Mapping[str, Any]
@@ -44,8 +45,8 @@ class Glance:
         Its findings.
     row : int or None
         Of the ledger.
-    thumbnail : bytes or None
-        A small picture with what was counted drawn over it (PNG or JPEG).
+    thumbnail : Path or None
+        Of a small picture with what was counted drawn over it (PNG or JPEG); it may be missing.
     """
 
     name: str
@@ -60,7 +61,7 @@ class Glance:
     scale: str
     notes: tuple[Note, ...]
     row: int | None = None
-    thumbnail: bytes | None = None
+    thumbnail: Path | None = None
 
     @property
     def measured(self) -> bool:
@@ -73,7 +74,7 @@ def glance(
     *,
     number: int | None,
     row: int | None = None,
-    thumbnail: bytes | None = None,
+    thumbnail: Path | None = None,
 ) -> Glance:
     """Take from a record what a lot's page shows of it."""
     threads, cover, verdict = record["threads"] or {}, record["cover"] or {}, record["verdict"]

@@ -86,7 +86,7 @@ def lot_page(lot: Mapping[str, Any], glances: Sequence[Glance], *, about: About)
         drawing=_drawing(lot, about.units),
         rows=[_row(each, about.units) for each in glances],
         thumbnails=[_thumbnail(each) for each in shown],
-        thumbnails_left_out=sum(each.thumbnail is not None for each in glances) - len(shown),
+        thumbnails_left_out=sum(map(_is_drawn, glances)) - len(shown),
         findings=_gathered(lot, glances),
         scales=sorted({plain(each.scale) for each in glances if each.scale}),
         lights=sorted({each.light or "not stated" for each in glances}),
@@ -194,15 +194,19 @@ def _row(each: Glance, units: Units) -> dict[str, Any]:
 
 def _worth_showing(glances: Sequence[Glance]) -> list[Glance]:
     """Choose the pictures to show small, in the lot's order."""
-    drawn = [each for each in glances if each.thumbnail is not None]
+    drawn = [each for each in glances if _is_drawn(each)]
     urgent = [each for each in drawn if each.decision != "conforms" or not each.measured]
     calm = [each for each in drawn if each.decision == "conforms" and each.measured]
     chosen = {id(each) for each in (urgent + calm)[:MOST_THUMBNAILS]}
     return [each for each in drawn if id(each) in chosen]
 
 
+def _is_drawn(each: Glance) -> bool:
+    return each.thumbnail is not None and each.thumbnail.is_file()
+
+
 def _thumbnail(each: Glance) -> dict[str, str]:
-    content = each.thumbnail or b""
+    content = b"" if each.thumbnail is None else each.thumbnail.read_bytes()
     kind = "png" if content.startswith(b"\x89PNG") else "jpeg"
     return {
         "source": f"data:image/{kind};base64,{base64.b64encode(content).decode()}",
