@@ -134,8 +134,9 @@ class Construction:
 
     @property
     def constants(self) -> tuple[Constant, ...]:
-        """Everything uncertain that a prediction rests on."""
-        return (*self.warp.constants, *self.weft.constants, self.finish)
+        """What a prediction rests on, each once, with its source."""
+        every = (*self.warp.constants, *self.weft.constants, self.finish)
+        return tuple(dict.fromkeys(each for each in every if each.source))
 
     def cover(self, drawn: Mapping[str, float]) -> float:
         """Covered fraction 1 − (1 − k1)(1 − k2)."""
@@ -271,7 +272,7 @@ def _crimp(name: str, stated: Stated | None, findings: list[Finding]) -> Constan
 def _size(name: str, declared: WeftThreads, state: State | None, said: list[str]) -> Constant:
     stated = declared.size if isinstance(declared, WarpThreads) else None
     if stated is None:
-        return Constant(f"{name} size", 0.0, 0.0, "none")
+        return Constant(f"{name} size", 0.0, 0.0, "")
     if state is State.FINISHED:
         said.append("warp: size is washed out of a finished cloth and was not counted")
         return Constant(f"{name} size", 0.0, 0.0, "washed out")
