@@ -32,6 +32,9 @@ SWAPPED_FROM = 5
 
 def find_scale(picture: Picture, options: Options) -> ScaleChoice:
     """Ask the scale room for everything that was offered to find the scale with."""
+    for name, asked in (("rule", options.rule), ("sheet", options.sheet), ("device", options.device)):
+        if asked:
+            raise OptionError(f"--{name}", "this version cannot use it yet", "give --pitch")
     stated = None
     if options.pitch is not None:
         stated = scale_from(

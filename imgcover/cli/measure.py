@@ -68,9 +68,12 @@ def measure(
         bool, typer.Option("--metadata", help="Trust the resolution the file claims.")
     ] = False,
     tone: Annotated[
-        str,
-        typer.Option(metavar="TONE", help="Transfer curve: srgb, linear or gamma:G."),
-    ] = "srgb",
+        str | None,
+        typer.Option(
+            metavar="TONE",
+            help="Transfer curve: srgb, linear or gamma:G; as the file says, else srgb.",
+        ),
+    ] = None,
     blank: Annotated[
         Path | None,
         typer.Option(metavar="FILE", help="The light table without cloth, same exposure."),
@@ -83,10 +86,10 @@ def measure(
         typer.Option(help="The swatch lies on a card of clearly other lightness."),
     ] = None,
     gsm: Annotated[
-        float | None, typer.Option(metavar="G/M2", help="Mass from the balance, g/m2.")
+        str | None, typer.Option(metavar="G/M2", help="Mass from the balance, g/m2.")
     ] = None,
     gsm_u: Annotated[
-        float | None, typer.Option(metavar="G/M2", help="Its standard uncertainty, g/m2.")
+        str | None, typer.Option(metavar="G/M2", help="Its standard uncertainty, g/m2.")
     ] = None,
     region: Annotated[
         str | None,
@@ -96,8 +99,10 @@ def measure(
         str | None, typer.Option(metavar="NAME", help="The pictures are places of this one lot.")
     ] = None,
     risk: Annotated[
-        float | None,
-        typer.Option(metavar="P", help="Risk of a wrong acceptance; without it the band is 2u."),
+        str | None,
+        typer.Option(
+            metavar="P", help="Largest risk of a wrong decision; the guard band is 2u without."
+        ),
     ] = None,
     units: Annotated[
         Literal["inch", "cm"] | None,
@@ -124,7 +129,42 @@ def measure(
     ] = None,
 ) -> ExitCode:
     """Measure ends, picks and cover in pictures, and decide whether they are as declared."""
-    return ExitCode.CONFORMS
+    from imgcover.cli.measuring import Asked, measured
+
+    said = {
+        "light": light,
+        "warp": warp,
+        "pitch": pitch,
+        "pitch-y": pitch_y,
+        "pitch-u": pitch_u,
+        "rule": rule,
+        "rule-class": rule_class,
+        "sheet": "yes" if sheet else None,
+        "device": device,
+        "metadata": "yes" if metadata else None,
+        "tone": tone,
+        "blank": None if blank is None else str(blank),
+        "dark": None if dark is None else str(dark),
+        "backing": backing,
+        "gsm": gsm,
+        "gsm-u": gsm_u,
+        "region": region,
+        "risk": risk,
+    }
+    return measured(
+        Asked(
+            pictures=pictures,
+            words={name: word for name, word in said.items() if word is not None},
+            article=article,
+            lot=lot,
+            units=units,
+            form=form,
+            output=output,
+            overlay=overlay,
+            ledger=ledger,
+            as_reference=as_reference,
+        )
+    )
 
 
 __all__ = ["EXAMPLES", "measure"]

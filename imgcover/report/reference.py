@@ -1,0 +1,48 @@
+"""The `[reference]` of an approved swatch: what later swatches of the article are held against."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from typing import Any
+
+from imgcover.findings import Severity
+from imgcover.ledger.canonical import digest
+
+KEYS = (("optical_cover", "optical"), ("warp_cover", "warp"), ("weft_cover", "weft"))
+"""As the declaration spells them, and as the record does."""
+
+
+def reference_toml(record: Mapping[str, Any]) -> str:
+    """Write the table that goes into the article's declaration.
+
+    Parameters
+    ----------
+    record : mapping
+        Of the approved swatch, schema imgcover/record/1.
+
+    Raises
+    ------
+    ValueError
+        When the record holds no cover: there is then nothing to approve.
+    """
+    cover = record["cover"]
+    if cover is None or cover["optical"] is None:
+        raise ValueError("the record holds no optical cover")
+    lines = ["[reference]"]
+    lines += [
+        f'{key} = "{cover[name]["value"]:.5f} u {cover[name]["u"]:.5f}"'
+        for key, name in KEYS
+        if cover[name] is not None
+    ]
+    lines.append(f'source = "imgcover record {digest(record)[:16]}"')
+    return "\n".join(lines) + "\n"
+
+
+def reasons_against(record: Mapping[str, Any]) -> list[str]:
+    """Why the cover of a record is none, in the findings' words."""
+    return [each["message"] for each in record["findings"] if "cover" in each["code"]] or [
+        each["message"] for each in record["findings"] if each["severity"] == Severity.REFUSAL
+    ]
+
+
+__all__ = ["reasons_against", "reference_toml"]
