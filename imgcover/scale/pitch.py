@@ -73,6 +73,8 @@ def parse_pitch(text: str, *, option: str = "--pitch") -> StatedPitch:
     """
     match = re.fullmatch(r"\s*([-+]?\d*\.?\d*(?:[eE][-+]?\d+)?)\s*(\S*)\s*", text, re.ASCII)
     number, unit = match.groups() if match else ("", "")
+    if "," in text:
+        raise ScaleError(option, f"{text!r} has a comma instead of a decimal point", WAYS)
     meant = UNITS.get(unit if unit in UNITS else unit.lower())
     try:
         value = float(number)
