@@ -200,8 +200,9 @@ def _light_field(
 ) -> NDArray[np.float32]:
     """Spread the light over the frame, brightest place at the exposure; −1…1 both ways."""
     radius = 0.5 * (down[:, None] ** 2 + across[None, :] ** 2)
-    field = (1 - camera.falloff * radius) * (1 - abs(camera.tilt) * 0.5)
-    field *= 1 - np.float32(camera.tilt * 0.5) * across[None, :]
+    field = 1 - np.float32(camera.falloff) * radius
+    towards = across if camera.tilt > 0 else -across
+    field *= 1 - np.float32(abs(camera.tilt) / 2) * (1 + towards[None, :])
     spot = np.exp(-((down[:, None] + 0.3) ** 2 + (across[None, :] - 0.35) ** 2) / 0.18)
     field *= 1 + np.float32(camera.hot_spot) * spot
     field *= np.float32(camera.exposure / field.max())

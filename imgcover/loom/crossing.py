@@ -63,12 +63,15 @@ def nearest(system: System, across: Floats, along: Floats, *, fine_mm: float) ->
     second = np.abs(b[0]) * a[1] < np.abs(a[0]) * b[1]
     offset = np.where(second, b[0], a[0])
     half = np.where(second, b[1], a[1])
+    solid = np.maximum(half, np.float32(fine_mm))
+    # the covered part of a point on the rim lies inside it: there the yarn is not infinitely thin
+    inmost = 1 - np.float32(fine_mm / 4) / solid
     covered = np.minimum(_edge(*a, fine_mm) + _edge(*b, fine_mm), np.float32(1))
     return Nearest(
         thread=left + second,
         left=left,
         share=np.clip(a[0] / np.maximum(a[0] - b[0], np.float32(1e-6)), 0, 1),
-        across=np.clip(offset / np.maximum(half, np.float32(1e-6)), -1, 1),
+        across=np.clip(offset / solid, -inmost, inmost),
         half=half,
         covered=covered,
     )

@@ -20,6 +20,9 @@ JOINTS = 7
 SUBPIXEL = 4
 """Binary digits of a fine point that a joint is placed to."""
 
+RIM = 16
+"""Points drawn beyond the grid: a line cut at the rim of a picture is drawn a little otherwise."""
+
 
 def grow(
     rng: Rng, cloth: ClothSpec, frame: Frame, warp: System, weft: System
@@ -84,12 +87,12 @@ def comb(
         return 0.0
     fine_mm = np.array([x_mm[1] - x_mm[0], y_mm[1] - y_mm[0]])
     width = max(1, round(FIBRE_MM / float(fine_mm.mean())))
-    shown = np.zeros((y_mm.size, x_mm.size), dtype=np.uint8)
-    joints = (hairs[first:last] - np.array([x_mm[0], y_mm[0]])) / fine_mm
+    shown = np.zeros((y_mm.size + 2 * RIM, x_mm.size + 2 * RIM), dtype=np.uint8)
+    joints = (hairs[first:last] - np.array([x_mm[0], y_mm[0]])) / fine_mm + RIM
     fixed = np.rint(joints * (1 << SUBPIXEL)).astype(np.int32)
     cv2.polylines(shown, list(fixed), False, 255, width, cv2.LINE_AA, SUBPIXEL)
     hidden = min(1.0, FIBRE_MM / (width * float(fine_mm.mean())))
-    return shown.astype(np.float32) * np.float32(hidden / 255)
+    return shown[RIM:-RIM, RIM:-RIM].astype(np.float32) * np.float32(hidden / 255)
 
 
 __all__ = ["comb", "grow"]
