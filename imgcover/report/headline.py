@@ -2,14 +2,15 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from typing import Any
 
-from imgcover.report.layout import WIDTH, Units, near, shown_as
+from imgcover.report.layout import WIDTH, Units, brief, near, shown_as
 from imgcover.report.plain import columns, plain, shortened
 
 LONGEST_NAME = 30
 """Columns a picture's or lot's name may take of the first line."""
+Short = Callable[[Mapping[str, Any], Units], str]
 NAMES = {"ends": "ends", "picks": "picks", "cover": "cover", "mass": "mass"}
 
 
@@ -24,12 +25,15 @@ def headline(record: Mapping[str, Any], *, units: Units) -> str:
         Of the densities.
     """
     name = shortened(plain(_name(record)), LONGEST_NAME)
-    decision, why = _decided(record, units)
-    line = f"{name} {decision}: {why}"
-    return line if columns(line) <= WIDTH else shortened_end(line)
+    for short in (_short, _shorter):
+        decision, why = _decided(record, units, short)
+        line = f"{name} {decision}: {why}"
+        if columns(line) <= WIDTH:
+            return line
+    return _cut(line)
 
 
-def shortened_end(line: str) -> str:
+def _cut(line: str) -> str:
     """Cut a line where it would leave the terminal."""
     kept = line
     while columns(kept) > WIDTH - 1:
@@ -43,7 +47,7 @@ def _name(record: Mapping[str, Any]) -> str:
     return f"lot {record['lot']}"
 
 
-def _decided(record: Mapping[str, Any], units: Units) -> tuple[str, str]:
+def _decided(record: Mapping[str, Any], units: Units, short: Short) -> tuple[str, str]:
     verdict = record["verdict"] if "picture" in record else record
     if verdict is None or verdict.get("decision") is None:
         return _measured(record, units)
@@ -53,7 +57,7 @@ def _decided(record: Mapping[str, Any], units: Units) -> tuple[str, str]:
     deciding = [line for line in lines if line["decision"] == verdict["decision"]]
     if verdict["decision"] == "conforms":
         return "conforms", f"{_listed([NAMES[line['quantity']] for line in lines])} as declared"
-    said = [_short(line, units) for line in deciding]
+    said = [short(line, units) for line in deciding]
     return str(verdict["decision"]), "; ".join(said) or "nothing could be judged"
 
 
@@ -93,9 +97,8 @@ def _short(line: Mapping[str, Any], units: Units) -> str:
     how = shown_as(line["unit"], units)
     if line["measured"] is None:
         return f"{name} not measured"
-    u = line["u"] * how.factor
-    seen = f"{name} {near(line['measured'] * how.factor, u)} {how.unit}"
-    against = f"{line['basis']} {near(line['declared'] * how.factor, u)}"
+    seen = f"{name} {near(line['measured'] * how.factor, line['u'] * how.factor)} {how.unit}"
+    against = f"{line['basis']} {brief(line['declared'] * how.factor)}"
     if line["decision"] == "does not conform":
         return f"{seen}, {against}"
     if line["holds"]:
@@ -103,6 +106,17 @@ def _short(line: Mapping[str, Any], units: Units) -> str:
     if line["lower"] is None and line["upper"] is None:
         return f"{seen}, {against}, no tolerance declared"
     return f"{seen} too near its limits to prove"
+
+
+def _shorter(line: Mapping[str, Any], units: Units) -> str:
+    """The same in fewer words, for several at once."""
+    name, how = NAMES[line["quantity"]], shown_as(line["unit"], units)
+    if line["measured"] is None:
+        return f"no {name}"
+    seen = near(line["measured"] * how.factor, line["u"] * how.factor)
+    if line["decision"] == "does not conform":
+        return f"{name} {seen} not {brief(line['declared'] * how.factor)} {how.unit}"
+    return f"{name} {seen} {how.unit} open"
 
 
 def _listed(names: Sequence[str]) -> str:

@@ -18,7 +18,7 @@ from imgcover.report.text import reason
 MOST_THUMBNAILS = 40
 """Small pictures on one page; the first that need looking at, then the first of the others."""
 SUSPECTS_SHOWN = 5
-QUANTITIES = {"ends": "Ends", "picks": "Picks", "cover": "Optical cover", "mass": "Mass"}
+QUANTITIES = {"ends": "Ends", "picks": "Picks", "cover": "Cover", "mass": "Mass"}
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

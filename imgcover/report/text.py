@@ -168,6 +168,10 @@ def reason(line: Mapping[str, Any], units: Units) -> str:
     """Say why a line that does not simply conform ended as it did, in the shown units."""
     if line["measured"] is None:
         return str(line["reason"])
+    return f"{line['quantity']}: {_because(line, units)}"
+
+
+def _because(line: Mapping[str, Any], units: Units) -> str:
     how = shown_as(line["unit"], units)
     if line["holds"]:
         return "left undecided: " + "; ".join(line["holds"])

@@ -31,8 +31,8 @@ def test_a_conforming_swatch_says_so_first() -> None:
 def test_short_picks_are_named_with_both_figures_in_the_asked_unit() -> None:
     short = record(**CONFORMING | {"picks": per_cm(22.8)})
     inch, cm = (headline(short, units=units) for units in ("inch", "cm"))
-    assert inch == "harrow-02.png does not conform: picks 57.91 /in, declared 64.00"
-    assert cm == "harrow-02.png does not conform: picks 22.800 /cm, declared 25.197"
+    assert inch == "harrow-02.png does not conform: picks 57.91 /in, declared 64"
+    assert cm == "harrow-02.png does not conform: picks 22.800 /cm, declared 25.2"
 
 
 def test_a_value_at_its_limit_is_undecided() -> None:
