@@ -9,11 +9,13 @@ weft, or cloth and light, differ in hue but not in luminance, or where another c
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import cast
 
 import cv2
 import numpy as np
 from numpy.typing import NDArray
 
+from imgcover.picture.clipping import ceiling
 from imgcover.picture.header import Stored
 from imgcover.picture.picture import LUMINANCE, PRIMARIES, Channel, channel_light
 from imgcover.tone import Tone
@@ -95,7 +97,7 @@ def _spans(length: int) -> list[slice]:
 
 
 def _clipped_shares(windows: list[Stored]) -> list[float]:
-    top = np.iinfo(windows[0].dtype).max
+    top = ceiling(cast("Stored", np.stack(windows)))
     shares = [(window == top).mean(axis=(0, 1)) for window in windows]
     return [float(share) for share in np.mean(shares, axis=0)]
 

@@ -52,8 +52,8 @@ class Picture:
     orientation : int
         1…8 as the file holds it; it has been applied.
     clipped_low, clipped_high : float
-        Shares 0…1 of pixels at the smallest and the largest storable value in the channel; for
-        luminance, of pixels with every colour at the smallest, or any colour at the largest.
+        Shares 0…1 of pixels at the smallest and the largest storable value in the channel, as
+        `clipping.clipped_shares` counts them.
     findings : tuple of Finding
         What was noticed on the way.
     """

@@ -14,9 +14,10 @@ import numpy as np
 from imgcover.errors import PictureError
 from imgcover.findings import Finding, Flag, found
 from imgcover.picture.channel import choose_channel
+from imgcover.picture.clipping import clipped_shares
 from imgcover.picture.header import Header, Stored, damaged
 from imgcover.picture.orientation import TURNS, turned, turned_pair
-from imgcover.picture.picture import PRIMARIES, Channel, Picture
+from imgcover.picture.picture import Channel, Picture
 from imgcover.picture.profile import same_curve
 from imgcover.picture.source import fetch, is_misnamed, read_header
 from imgcover.tone import SRGB, Tone
@@ -25,9 +26,6 @@ MOST_PIXELS = 300_000_000
 """Two A4 scans at 1200 dpi; what claims more is a mistake or an attack."""
 CLIPPED_SHARE = 0.01
 """One pixel in a hundred at the end of the scale moves a mean of light by a noticeable amount."""
-STRIPE = 1 << 22
-"""Pixels looked at together when clipped ones are counted."""
-
 logging.getLogger("imagecodecs").addHandler(logging.NullHandler())
 # decoders' remarks on odd but whole files would else reach stderr
 
@@ -66,7 +64,7 @@ def read_picture(source: Path | bytes, *, name: str, tone: Tone | None = None) -
         pixel_hash = beside.submit(_pixels_hash, decoded)
         stored = _without_idle_colour(decoded)
         choice = choose_channel(stored, used_tone)
-        low, high = _clipped(stored, choice.channel)
+        low, high = clipped_shares(stored, choice.channel)
         return Picture(
             name=name,
             stored=turned(stored, header.orientation),
@@ -174,31 +172,6 @@ def _pixels_hash(array: Stored) -> str:
     little = array.astype(array.dtype.newbyteorder("<"), copy=False)
     digest.update(np.ascontiguousarray(little).data)
     return digest.hexdigest()
-
-
-def _clipped(stored: Stored, channel: Channel) -> tuple[float, float]:
-    """Count the shares of pixels at the smallest and the largest value that can be stored."""
-    top = np.iinfo(stored.dtype).max
-    dark = bright = 0
-    step = max(1, STRIPE // stored.shape[1])
-    for first in range(0, len(stored), step):
-        stripe = stored[first : first + step]
-        if channel in PRIMARIES:
-            stripe = cast("Stored", cv2.extractChannel(stripe, PRIMARIES.index(channel)))
-        pixels = stripe.shape[0] * stripe.shape[1]
-        inside = _count_within(stripe, 1, top - 1)
-        if inside < pixels:  # most stripes need no second look
-            dark += _count_within(stripe, 0, 0)
-            bright += pixels - _count_within(stripe, 0, top - 1)
-    pixels = stored.shape[0] * stored.shape[1]
-    return dark / pixels, bright / pixels
-
-
-def _count_within(stored: Stored, low: int, high: int) -> int:
-    """Count the pixels whose every value lies between two, both included."""
-    if stored.ndim == 2:
-        return cv2.countNonZero(cv2.inRange(stored, float(low), float(high)))
-    return cv2.countNonZero(cv2.inRange(stored, (float(low),) * 3, (float(high),) * 3))
 
 
 def _named(header: Header, name: str) -> tuple[Finding, ...]:

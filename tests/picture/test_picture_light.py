@@ -128,6 +128,15 @@ def test_clipped_shares_of_colour() -> None:
     assert (picture.clipped_low, picture.clipped_high) == pytest.approx((0.03, 0.01))
 
 
+@pytest.mark.parametrize(("bits", "shift"), [(12, 0), (12, 4), (14, 2), (10, 0), (8, 8)])
+def test_a_saturated_converter_clips_below_the_files_largest_value(bits: int, shift: int) -> None:
+    """Truth is drawn: 5 % at the end of a 12-bit camera, in a 16-bit file."""
+    values = np.random.default_rng(4).integers(1, (1 << bits) - 1, 10_000, dtype=np.uint16)
+    values[:500] = (1 << bits) - 1
+    picture = _read((values << shift).reshape(100, 100))
+    assert picture.clipped_high == pytest.approx(0.05)
+
+
 def test_clipped_shares_of_one_channel_are_its_own() -> None:
     """Truth is drawn: red at the top sends the picture to green, which is dark in three rows."""
     colour = np.full((100, 100, 3), (100, 110, 100), np.uint8)
