@@ -37,7 +37,7 @@ def _blue_green_as_light_as_red() -> NDArray[np.float64]:
 
 
 @pytest.mark.parametrize("noise", [2.0, 8.0, 30.0])
-@pytest.mark.parametrize("seed", range(6))
+@pytest.mark.parametrize("seed", range(3))
 def test_grey_cloth_is_measured_in_luminance(noise: float, seed: int) -> None:
     """Truth is theory: three colours averaged have less noise than any one of them."""
     stored = _photographed(_dots(np.full(3, 0.5), np.full(3, 0.4)), noise=noise, seed=seed)
@@ -45,7 +45,7 @@ def test_grey_cloth_is_measured_in_luminance(noise: float, seed: int) -> None:
 
 
 @pytest.mark.parametrize("noise", [4.0, 12.0])
-@pytest.mark.parametrize("seed", range(4))
+@pytest.mark.parametrize("seed", range(2))
 def test_yarns_of_one_luminance_are_measured_in_the_channel_that_parts_them(
     noise: float, seed: int
 ) -> None:
@@ -65,7 +65,7 @@ def test_two_colours_that_luminance_parts_well_stay_in_luminance() -> None:
 
 def test_noise_is_measured_in_luminance() -> None:
     """Truth is symmetry: no channel of noise is clearer than another."""
-    for seed in range(10):
+    for seed in range(4):
         stored = _photographed(np.full((400, 400, 3), 0.3), noise=10, seed=seed)
         assert choose_channel(stored, SRGB).channel == "luminance"
 
