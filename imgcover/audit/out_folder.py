@@ -32,8 +32,13 @@ class OutFolder:
     def __init__(self, root: Path) -> None:
         self.root = root
         with _told(root):
-            for folder in (root, root / "lots", root / "small"):
+            for folder in (root, root / "lots", root / "small", self.scratch):
                 folder.mkdir(parents=True, exist_ok=True)
+
+    @property
+    def scratch(self) -> Path:
+        """Where libraries may keep what they would else put into the home folder."""
+        return self.root / ".scratch"
 
     @property
     def ledger(self) -> Path:

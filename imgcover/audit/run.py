@@ -16,7 +16,7 @@ from imgcover.audit.folder import Listing
 from imgcover.audit.grounds import OffGroundsError, read_file
 from imgcover.audit.orders import Order, OrderBook
 from imgcover.audit.out_folder import OutFolder
-from imgcover.audit.outcome import Crew, Done, Lost
+from imgcover.audit.outcome import Crew, Done, Loss, Lost
 from imgcover.audit.sequence import Sequence
 from imgcover.audit.work import Answer, lost_answer
 from imgcover.ledger.chain import Entry
@@ -50,12 +50,15 @@ class Told:
         On the disk; None where it was known.
     said : str
         How it was lost, for the developer, or why it was refused; else empty.
+    is_bug : bool
+        Whether the program itself failed on it.
     """
 
     index: int
     how: How
     entry: Entry | None = None
     said: str = ""
+    is_bug: bool = False
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -128,7 +131,8 @@ def measure_all(round_: Round, crew: Crew, *, work: Callable[[Order], Answer]) -
     for outcome in crew.run(work, loads()):
         entry, how, said = _kept(round_, orders.pop(outcome.index), outcome)
         sequence.put(outcome.index, entry)
-        yield Told(outcome.index, how, entry, said)
+        is_bug = isinstance(outcome, Lost) and outcome.loss is Loss.FAULT
+        yield Told(outcome.index, how, entry, said, is_bug)
 
 
 def _kept(round_: Round, order: Order, outcome: Done[Answer] | Lost) -> tuple[Entry, How, str]:

@@ -4,10 +4,11 @@ from __future__ import annotations
 
 import hashlib
 import json
+import os
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 from datetime import UTC, datetime
-from pathlib import PurePosixPath
+from pathlib import Path
 from typing import Any
 
 from imgcover.audit.folder import LotName
@@ -19,6 +20,7 @@ from imgcover.cloth.declaration import Declaration
 from imgcover.errors import DeclarationError
 from imgcover.ledger.canonical import canonical
 from imgcover.ledger.chain import Entry, Head, Row
+from imgcover.ledger.store import Ledger
 from imgcover.report.glance import Glance, glance
 from imgcover.report.index_page import LotLine, index_page
 from imgcover.report.layout import Units, units_of
@@ -38,10 +40,12 @@ class ToldLot:
     Parameters
     ----------
     name : LotName
-    record : dict
-        Schema imgcover/lot/1.
     row : int
-        Of the ledger.
+        Of the ledger, where its record is.
+    decision : str or None
+        None where nothing was declared.
+    n_places, required : int
+        Places counted, and asked for by the standard.
     indices : tuple of int
         Its pictures' places in the list.
     numbers : tuple of int or None
@@ -55,22 +59,42 @@ class ToldLot:
     """
 
     name: LotName
-    record: dict[str, Any]
     row: int
+    decision: str | None
+    n_places: int
+    required: int
     indices: tuple[int, ...]
     numbers: tuple[int | None, ...]
     unread: int
     units: Units
     page: str
 
+    def record(self, ledger: Ledger) -> dict[str, Any]:
+        """Fetch the lot's record, schema imgcover/lot/1; one lot at a time is in memory."""
+        row = ledger.row(self.row)
+        assert row is not None, "a lot is gone from the ledger"
+        record: dict[str, Any] = json.loads(row.entry.body)
+        return record
+
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class PageOrder:
-    """What a worker needs to write a lot's page."""
+    """What a worker needs to write a lot's page.
+
+    Parameters
+    ----------
+    record : mapping
+        Of the lot.
+    glances : tuple of Glance
+    about : About
+    scratch : Path
+        Where the drawing library may keep what it found out about fonts.
+    """
 
     record: Mapping[str, Any]
     glances: tuple[Glance, ...]
     about: About
+    scratch: Path
 
 
 def sum_lots(round_: Round, *, risk: float | None) -> Iterator[ToldLot]:
@@ -103,8 +127,10 @@ def sum_lots(round_: Round, *, risk: float | None) -> Iterator[ToldLot]:
         pages.add(page.lower())
         yield ToldLot(
             name=name,
-            record=summed.record,
             row=kept.n,
+            decision=summed.record["decision"],
+            n_places=summed.record["n_places"],
+            required=summed.record["required"],
             indices=tuple(indices),
             numbers=summed.numbers,
             unread=sum(_gave_nothing(each) for each in members),
@@ -137,7 +163,7 @@ def write_reports(
     about = About(units="cm", head=str(head), made_at=made_at.replace("T", " "), versions=versions)
     _write_records(round_, lots)
     lines = lots_csv_lines(
-        ((lot.record, lot.page, lot.row) for lot in lots), head=(head.n, head.seal)
+        ((lot.record(round_.ledger), lot.page, lot.row) for lot in lots), head=(head.n, head.seal)
     )
     round_.out.write("lots.csv", "\ufeff" + "".join(lines))
     _write_workbook(round_, lots, about)
@@ -152,6 +178,8 @@ def write_reports(
 
 def made_page(order: PageOrder) -> str:
     """Write a lot's page; called in a worker, where drawing it costs the parent nothing."""
+    # matplotlib would write into the home folder, and an audit writes nowhere but where it was told
+    os.environ["MPLCONFIGDIR"] = str(order.scratch)
     return lot_page(order.record, order.glances, about=order.about)
 
 
@@ -181,13 +209,13 @@ def _write_records(round_: Round, lots: list[ToldLot]) -> None:
         for _, row in _rows(round_, tuple(range(len(round_.listing.pictures)))):
             write(f"{canonical(record_in(row.entry))}\n".encode())
         for lot in lots:
-            write(f"{canonical(lot.record)}\n".encode())
+            write(f"{canonical(lot.record(round_.ledger))}\n".encode())
 
 
 def _write_workbook(round_: Round, lots: list[ToldLot], about: About) -> None:
     with AuditWorkbook(round_.out.root) as book:
         for lot in lots:
-            book.lot(lot.record)
+            book.lot(lot.record(round_.ledger))
             for _, row in _rows(round_, lot.indices):
                 book.picture(json.loads(row.entry.body), row=row.n)
         book.about(
@@ -221,13 +249,13 @@ def _page_order(round_: Round, lot: ToldLot, about: About) -> PageOrder:
         description=declared.article.description if isinstance(declared, Declaration) else "",
         article_sha256=declared.sha256 if isinstance(declared, Declaration) else "",
     )
-    return PageOrder(record=lot.record, glances=glances, about=told)
+    return PageOrder(
+        record=lot.record(round_.ledger), glances=glances, about=told, scratch=round_.out.scratch
+    )
 
 
 def _first_page(round_: Round, lots: list[ToldLot], about: About) -> str:
-    lines = [
-        LotLine(lot=lot.record, units=lot.units, link=str(PurePosixPath(lot.page))) for lot in lots
-    ]
+    lines = (LotLine(lot=lot.record(round_.ledger), units=lot.units, link=lot.page) for lot in lots)
     notes = [f"declaration {fault}" for fault in round_.book.faults]
     unlisted = round_.listing.unlisted
     if unlisted:

@@ -24,7 +24,7 @@ from imgcover.report.strips import marked_sets
 from imgcover.request import Request
 
 SMALL = 360
-"""Side of a small picture, px: four stand beside one another on a page, and print sharp enough
+"""Side of a small picture, px: three stand beside one another on a page, and print sharp enough
 there to count along."""
 SMALL_QUALITY = 82
 """JPEG; threads and marks stay apart, and forty of them keep a page under two megabytes."""

@@ -72,6 +72,8 @@ class Ledger:
                 _use_wal(connection, path, patience_s=patience_s)
                 connection.execute("PRAGMA synchronous = FULL")
                 connection.execute("PRAGMA foreign_keys = ON")
+                # nothing of a ledger is written beside it, not even for a moment
+                connection.execute("PRAGMA temp_store = MEMORY")
                 moved_from = migrate(connection, place, steps=steps)
             except BaseException:
                 connection.close()

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections import Counter
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any
 
@@ -36,7 +36,7 @@ class LotLine:
 
 
 def index_page(
-    lots: Sequence[LotLine],
+    lots: Iterable[LotLine],
     *,
     title: str,
     pictures: int,
@@ -48,8 +48,8 @@ def index_page(
 
     Parameters
     ----------
-    lots : sequence of LotLine
-        In order.
+    lots : iterable of LotLine
+        In order; one at a time is in memory.
     title : str
         What was audited.
     pictures, unread : int
@@ -63,12 +63,16 @@ def index_page(
     str
         HTML.
     """
-    counts = Counter(each.lot["decision"] for each in lots)
+    counts: Counter[str | None] = Counter()
+    lines = []
+    for each in lots:
+        counts[each.lot["decision"]] += 1
+        lines.append(_line(each))
     gravest = next((each for each in GRAVEST if counts[each]), None)
     return page(
         "index.html.j2",
         title=plain(title),
-        lots=[_line(each) for each in lots],
+        lots=lines,
         pictures=pictures,
         unread=unread,
         decision=said_decision(gravest),

@@ -78,7 +78,7 @@ def lot_page(lot: Mapping[str, Any], glances: Sequence[Glance], *, about: About)
         lines=[_line(line, lot, about.units) for line in lot["lines"]],
         bare=[] if lot["lines"] else _bare(lot, about.units),
         reasons=[
-            f"{QUANTITIES[line['quantity']]}: {plain(reason(line, about.units))}"
+            plain(reason(line, about.units))
             for line in lot["lines"]
             if line["decision"] != "conforms"
         ],

@@ -148,11 +148,7 @@ def _why(verdict: Mapping[str, Any] | None, units: Units) -> list[str]:
     """Reasons for every line that does not simply conform."""
     if verdict is None:
         return []
-    said = [
-        f"{line['quantity']}: {reason(line, units)}"
-        for line in verdict["lines"]
-        if line["decision"] != "conforms"
-    ]
+    said = [reason(line, units) for line in verdict["lines"] if line["decision"] != "conforms"]
     return (
         [
             "",
