@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Iterator
 from dataclasses import dataclass
 from typing import Literal
 
@@ -14,6 +15,10 @@ from imgcover.loom.noise import Rng
 from imgcover.tone import SRGB, Tone
 
 Stored = NDArray[np.uint8] | NDArray[np.uint16]
+Floats = NDArray[np.float32]
+
+ROWS = 256
+"""Rows of the picture that noise, tone and rounding are applied to at once."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -183,16 +188,45 @@ def expose(light: NDArray[np.float32], camera: CameraSpec, rng: Rng) -> Stored:
         soft = cv2.GaussianBlur(seen, (0, 0), camera.blurred_third)
         share = _third(-across) if light.ndim == 2 else _third(-across)[:, None]
         seen = seen + share * (soft - seen)
-    seen += _noise(seen, camera, rng)
-    stored = camera.tone.from_linear(np.clip(seen, 0, 1)).astype(np.float32)
+    for part in _parts(seen):
+        part += _noise(part, camera, rng)
+        part[:] = camera.tone.from_linear(np.clip(part, 0, 1))
     if camera.sharpening > 0:
-        stored += camera.sharpening * (stored - cv2.GaussianBlur(stored, (0, 0), 1.0))
-    top = (1 << camera.bits) - 1
-    counts = np.rint(np.clip(stored, 0, 1) * top)
+        seen += camera.sharpening * (seen - cv2.GaussianBlur(seen, (0, 0), 1.0))
     if camera.bits == 16:
-        return counts.astype(np.uint16)
-    eight = counts.astype(np.uint8)
+        deep = np.empty(seen.shape, dtype=np.uint16)
+        _count(seen, deep)
+        return deep
+    eight = np.empty(seen.shape, dtype=np.uint8)
+    _count(seen, eight)
     return eight if camera.jpeg is None else _through_jpeg(eight, camera.jpeg)
+
+
+def bare(camera: CameraSpec, width: int, height: int, rng: Rng, *, lit: bool = True) -> Stored:
+    """Expose the light table without cloth: a blank frame; or a dark one, with the light off.
+
+    Glare is light of the room, so it is in the dark frame too.
+
+    Returns
+    -------
+    ndarray, shape (height, width) or (height, width, 3), uint8 or uint16
+        The stored values.
+    """
+    shape = (height, width, 3) if camera.colour else (height, width)
+    return expose(np.full(shape, 1.0 if lit else 0.0, dtype=np.float32), camera, rng)
+
+
+def _parts(whole: Floats) -> Iterator[Floats]:
+    """Go through a picture by some rows at a time: whole scans do not fit in memory many times."""
+    for first in range(0, whole.shape[0], ROWS):
+        yield whole[first : first + ROWS]
+
+
+def _count(stored: Floats, counts: Stored) -> None:
+    """Round stored values 0…1 to the levels of the file."""
+    top = np.iinfo(counts.dtype).max
+    for first, part in enumerate(_parts(stored)):
+        counts[first * ROWS : (first + 1) * ROWS] = np.rint(np.clip(part, 0, 1) * top)
 
 
 def _light_field(
@@ -233,4 +267,4 @@ def _through_jpeg(counts: NDArray[np.uint8], quality: int) -> NDArray[np.uint8]:
     return back if counts.ndim == 2 else np.ascontiguousarray(back[..., ::-1])
 
 
-__all__ = ["CameraSpec", "Frame", "Stored", "expose"]
+__all__ = ["CameraSpec", "Frame", "Stored", "bare", "expose"]

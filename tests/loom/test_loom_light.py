@@ -11,7 +11,7 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
-from imgcover.loom.camera import CameraSpec, expose
+from imgcover.loom.camera import CameraSpec, bare, expose
 from imgcover.loom.cloth import ClothSpec, Fault
 from imgcover.loom.drawing import draw
 from imgcover.tone import LINEAR, SRGB
@@ -120,6 +120,19 @@ def test_light_fields_are_what_was_asked_for() -> None:
     assert shadow[:, :150].mean() == pytest.approx(1.0, abs=0.01)
     noisy = seen(exposure=0.5, shot_noise=0.02)
     assert noisy.std() == pytest.approx(0.02 * np.sqrt(0.5), rel=0.05)
+
+
+def test_blank_and_dark_frames_hold_the_light_and_the_glare() -> None:
+    camera = replace(CLEAN, exposure=0.8, falloff=0.2, glare=0.05)
+    blank, dark = bare(camera, 90, 60, rng()), bare(camera, 90, 60, rng(), lit=False)
+    assert blank.shape == dark.shape == (60, 90)
+    assert dark / 65535 == pytest.approx(0.8 * 0.05, abs=1e-4)
+    cloth = draw(EVEN, camera, 90, 60, rng()).stored.astype(float)
+    # what the cloth lets through: the picture less the dark, over the blank less the dark
+    through = (cloth - dark) / (blank.astype(float) - dark)
+    plain = draw(EVEN, replace(CLEAN, exposure=0.8), 90, 60, rng()).stored / (0.8 * 65535)
+    assert through == pytest.approx(plain, abs=1e-3)
+    assert bare(replace(camera, colour=True), 9, 6, rng()).shape == (6, 9, 3)
 
 
 def test_depth_tone_and_jpeg_are_what_was_asked_for() -> None:
