@@ -22,6 +22,8 @@ FEWEST_LINES = 12
 """Below this no pattern of long and short lines is proof of anything."""
 LEAST_SHARE = 0.22
 """Of the local variance that the pitch must carry for a line to be followed."""
+CLEAR_GAP = 0.14
+"""Pitches of full gap, halved: a line's ink may be broken by less, digits stand off by more."""
 WIDEST_GAP = 8
 """Lines that may be missing in a row (dust, a finger, worn places) before it is taken to end."""
 
@@ -266,7 +268,9 @@ def _measure_lines(
         if usual is None:
             return None
         strength, foot, top = usual
-        reach = _reach(contrast, strength, t, foot=foot, top=top)
+        reach = _reach(
+            contrast, strength, t, foot=foot, top=top, clear=max(1.2, CLEAR_GAP * pitch)
+        )
         lean = _lean(positions, contrast, strength, t, foot, top)
         turned = frame.along + np.arctan(lean) * np.sin(frame.upright - frame.along)
         positions = positions * (
@@ -333,13 +337,17 @@ def _reach(
     *,
     foot: float,
     top: float,
+    clear: float,
 ) -> NDArray[np.float64]:
     """Return the height at which each line ends: where the sum of contrast over half is largest."""
     local = median_filter(strength, 9, mode="nearest")[:, None]
     usual = np.maximum(local, 0.3 * np.median(strength))
     start = int(np.searchsorted(t, (foot + top) / 2))
-    above = np.clip(contrast[:, start:] / usual, -0.5, 1.5) - 0.5
-    return np.asarray(t[start] + np.argmax(np.cumsum(above, axis=1), axis=1) + 0.5)
+    above = np.cumsum(np.clip(contrast[:, start:] / usual, -0.5, 1.5) - 0.5, axis=1)
+    # a digit over a line's end must not lengthen it: the first clear gap ends the line
+    fallen = np.maximum.accumulate(above, axis=1) - above > clear
+    ended = np.maximum.accumulate(fallen, axis=1)
+    return np.asarray(t[start] + np.argmax(np.where(ended, -np.inf, above), axis=1) + 0.5)
 
 
 def _lean(

@@ -74,6 +74,8 @@ PATTERNS: tuple[tuple[tuple[int, ...], tuple[Graduation, ...]], ...] = (
 LOST = 4.0
 """Cost, in units of a line's usual scatter, beyond which a line's reach is taken for an accident
 (dust, a digit, a scratch): a straight line fit's usual bound."""
+SHORTEST_SHARE = 0.4
+"""Share of the lines that must be of one length: half of them, less a fifth for accidents."""
 A_LEVEL = 4.0
 """Cost of one more length: near half the logarithm of the number of lines, twice (BIC)."""
 
@@ -103,8 +105,9 @@ def match_patterns(row: Row) -> list[Pattern]:
     list of Pattern
         One for each of `PATTERNS` that fits with its lengths in order; cost in scatters.
     """
-    reach = row.reach / row.pitch
-    scatter = max(0.12, 0.8 / row.pitch)
+    reach, scatter = reach_in_pitches(row)
+    if not _crowded(reach, scatter):
+        return []
     fitted = []
     for steps, graduations in PATTERNS:
         if steps[-1] <= len(reach):
@@ -114,11 +117,21 @@ def match_patterns(row: Row) -> list[Pattern]:
     return sorted(fitted, key=lambda each: each.cost)
 
 
-def flat_cost(row: Row) -> float:
-    """Return what it costs to say that all lines are equally long."""
-    reach = row.reach / row.pitch
-    scatter = max(0.12, 0.8 / row.pitch)
-    return float(_costs(reach - np.median(reach), scatter).sum()) + A_LEVEL
+def reach_in_pitches(row: Row) -> tuple[NDArray[np.float64], float]:
+    """Return the lines' reach in pitches, and their usual scatter: never finer than a pixel."""
+    return row.reach / row.pitch, max(0.12, 0.8 / row.pitch)
+
+
+def _crowded(reach: NDArray[np.float64], scatter: float) -> bool:
+    """Whether enough lines are of one length: in every pattern half or more are the shortest."""
+    ordered = np.sort(reach)
+    need = max(2, int(SHORTEST_SHARE * len(ordered)))
+    return bool((ordered[need - 1 :] - ordered[: len(ordered) - need + 1]).min() < 6 * scatter)
+
+
+def _middle(values: NDArray[np.float64]) -> float:
+    """Return the upper median; NaN of nothing (numpy's own takes ten times as long)."""
+    return float(np.sort(values)[len(values) // 2]) if len(values) else math.nan
 
 
 def _costs(difference: NDArray[np.float64], scatter: float) -> NDArray[np.float64]:
@@ -136,8 +149,9 @@ def _best_phase(
     best = None
     for phase in _likely_phases(numbers, reach, steps):
         level = levels(numbers - phase, steps)
-        lengths = [float(np.median(reach[level == i])) for i in range(len(steps))]
-        if min(np.diff(lengths)) < 1.5 * scatter:
+        lengths = [_middle(reach[level == i]) for i in range(len(steps))]
+        rises = [after - before for before, after in zip(lengths, lengths[1:], strict=False)]
+        if not min(rises) >= 1.5 * scatter:
             continue
         each = _costs(reach - np.array(lengths)[level], scatter)
         cost = float(each.sum()) + A_LEVEL * len(steps)
@@ -180,4 +194,4 @@ def levels(numbers: NDArray[np.int_], steps: tuple[int, ...]) -> NDArray[np.int_
     return level
 
 
-__all__ = ["INCH_MM", "Graduation", "Pattern", "flat_cost", "levels", "match_patterns"]
+__all__ = ["INCH_MM", "Graduation", "Pattern", "levels", "match_patterns", "reach_in_pitches"]

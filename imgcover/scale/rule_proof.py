@@ -7,26 +7,31 @@ longest lines recur, and no other pattern of another unit does as well.
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
+from enum import Enum
 
 import numpy as np
-from numpy.typing import NDArray
+from scipy.special import gammaln
 
 from imgcover.scale.rule_band import Row
 from imgcover.scale.rule_hierarchy import (
     Graduation,
     Pattern,
-    flat_cost,
     levels,
     match_patterns,
+    reach_in_pitches,
 )
 
 LEAST_EXPLAINED = 0.8
 """Share of a row's lines that must end where the pattern wants them."""
-LARGEST_COST = 1.6
+LARGEST_COST = 1.35
 """Mean distance of the lines from the pattern, in scatters (0.8 pixel or an eighth of a pitch)."""
-LEAST_GAIN = 24.0
-"""What the pattern must save against equally long lines: six lines' worth of accidents."""
+LEAST_EVIDENCE = 5.0
+"""Powers of ten by which the found order of lengths is rarer than chance would have it. All spots,
+phases and patterns together are some 10⁴ trials."""
+LEAST_RISE = 6.0
+"""Scatters between the shortest and the longest lines: three pixels' difference, clearly seen."""
 MARGIN = 10.0
 """What a pattern of another unit must cost more to be out of the question."""
 MM_SHORTEST = 1.75
@@ -72,55 +77,72 @@ def prove(row: Row, unit: str) -> Proof | None:
     patterns = match_patterns(row)
     if not patterns or not _fits(patterns[0], row):
         return None
-    cheapest = patterns[0].cost
-    rivals = [each for each in patterns if each.cost < cheapest + MARGIN]
-    standing = [each for each in rivals if _stands(each, row)]
+    rivals = [each for each in patterns if each.cost < patterns[0].cost + MARGIN]
+    standing = [each for each in rivals if _recurs(each, row) is Recurrence.SEEN]
     if not standing:
         return None
+    if _recurs(patterns[0], row) is Recurrence.NOT_IN_FRAME:
+        standing.append(patterns[0])
     readings: list[Graduation] = []
     for pattern in standing:
         readings += [each for each in _readings(pattern, unit) if each not in readings]
-    if standing[0] is not patterns[0] and not _same_unit(standing[0], patterns[0]):
-        readings += [each for each in patterns[0].graduations if each not in readings]
     return Proof(tuple(readings), standing[0]) if readings else None
 
 
 def _fits(pattern: Pattern, row: Row) -> bool:
-    count = len(row.numbers)
+    _, scatter = reach_in_pitches(row)
     return (
         pattern.explained >= LEAST_EXPLAINED
-        and pattern.cost / count <= LARGEST_COST
-        and flat_cost(row) - pattern.cost >= LEAST_GAIN
+        and pattern.cost / len(row.numbers) <= LARGEST_COST
+        and pattern.lengths[-1] - pattern.lengths[0] >= LEAST_RISE * scatter
+        and evidence(pattern, row) >= LEAST_EVIDENCE
     )
 
 
-def _stands(pattern: Pattern, row: Row) -> bool:
-    """Whether the longest lines recur, alike, and so does every level that tells the unit."""
-    level = levels(row.numbers - pattern.phase, pattern.steps)
-    reach = row.reach / row.pitch
-    scatter = max(0.12, 0.8 / row.pitch)
-    fewest = 3 if pattern.steps[-1] == 5 or len(pattern.steps) == 2 else 2
-    top = reach[level == len(pattern.steps) - 1]
-    if len(top) < fewest:
-        return False
-    for index, length in enumerate(pattern.lengths):
-        mine = reach[level == index]
-        if not _alike(mine, length, 3 * scatter):
-            return False
-    return True
+def evidence(pattern: Pattern, row: Row) -> float:
+    """Return how rare the row's order of lengths is, in powers of ten.
 
-
-def _alike(mine: NDArray[np.float64], length: float, bound: float) -> bool:
-    """Whether the lines of one level are equally long, up to accidents.
-
-    Of three lines none may differ: long and short in turn would be a level more.
+    As many lines of each length can be put in order in n!/(n₁! n₂! …) ways, and only one is the
+    pattern's; a line out of place is charged as one power.
     """
-    strays = int((np.abs(mine - length) > bound).sum())
-    return strays == 0 if len(mine) <= 3 else strays <= 0.25 * len(mine)
+    level = levels(row.numbers - pattern.phase, pattern.steps)
+    counts = np.bincount(level)
+    ways = gammaln(len(level) + 1) - gammaln(counts + 1).sum()
+    return float(ways / math.log(10) - (1 - pattern.explained) * len(level))
 
 
-def _same_unit(one: Pattern, other: Pattern) -> bool:
-    return set(one.graduations) == set(other.graduations)
+class Recurrence(Enum):
+    """Whether a pattern's longest lines come again at its period."""
+
+    SEEN = "seen"
+    NOT_IN_FRAME = "not in frame"
+    DISPROVED = "disproved"
+
+
+def _recurs(pattern: Pattern, row: Row) -> Recurrence:
+    """Look for the longest lines one period apart and equally long, shorter ones half-way.
+
+    Were the period twice as long, one of the two would be longer than the other; were it half as
+    long, the line between them would be as long as they. Lines cut short by wear or dust are
+    passed over.
+    """
+    reach, scatter = reach_in_pitches(row)
+    period = pattern.steps[-1]
+    halved = period // 2 in pattern.steps
+    need = 2 if halved else 3
+    length = dict(zip(row.numbers.tolist(), reach.tolist(), strict=True))
+    top, between = pattern.lengths[-1], pattern.lengths[-2]
+    tried = 0
+    for first in range(int(row.numbers[0]), int(row.numbers[-1]) - (need - 1) * period + 1):
+        chain = [length.get(first + i * period) for i in range(need)]
+        if (first - pattern.phase) % period or None in chain:
+            continue
+        tried += 1
+        equal = max(abs(each - top) for each in chain if each is not None) <= 2 * scatter
+        middle = length.get(first + period // 2, between) if halved else between
+        if equal and middle < top - 2 * scatter:
+            return Recurrence.SEEN
+    return Recurrence.DISPROVED if tried else Recurrence.NOT_IN_FRAME
 
 
 def _readings(pattern: Pattern, unit: str) -> list[Graduation]:

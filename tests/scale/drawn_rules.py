@@ -51,6 +51,22 @@ class RuleCase:
     what: str
 
 
+class Held:
+    """An array of linear light that can be searched like a picture."""
+
+    def __init__(self, light: NDArray[np.float32]) -> None:
+        self.held = light
+        self.rows, self.columns = light.shape
+
+    def coarse(self, factor: int) -> NDArray[np.float32]:
+        """Give means over blocks."""
+        if factor == 1:
+            return self.held
+        size = (self.columns // factor, self.rows // factor)
+        cut = self.held[: size[1] * factor, : size[0] * factor]
+        return np.asarray(cv2.resize(cut, size, interpolation=cv2.INTER_AREA))
+
+
 def woven(
     shape: tuple[int, int], *, thread_px: float, turn: float, generator: np.random.Generator
 ) -> NDArray[np.float32]:
