@@ -7,7 +7,7 @@ from dataclasses import dataclass
 
 import numpy as np
 from scipy.optimize import lsq_linear
-from scipy.stats import binom, chi2
+from scipy.special import chdtrc
 
 from imgcover.quantity import Measured
 from imgcover.verdict.departure import SEEN, Departure, Floats, expected, natural_u
@@ -98,9 +98,9 @@ def _tail(distance: float, n: int, setts: int) -> float:
     Each sett at its limit is half the time pulled back into the tolerance, which takes one degree
     of freedom: a mixture of chi-squares (Kudô 1963). Inside the limits it is smaller still.
     """
-    shares = binom.pmf(np.arange(setts + 1), setts, 0.5)
-    tails = [float(chi2.sf(distance, n - k)) if n > k else 0.0 for k in range(setts + 1)]
-    return float(shares @ np.array(tails))
+    shares = [math.comb(setts, k) / 2**setts for k in range(setts + 1)]
+    tails = [float(chdtrc(n - k, distance)) if n > k else 0.0 for k in range(setts + 1)]
+    return math.fsum(share * tail for share, tail in zip(shares, tails, strict=True))
 
 
 def _steps(sheet: Sheet, natural: Floats, lower: Floats) -> tuple[Floats, tuple[Floats, Floats]]:
