@@ -18,6 +18,9 @@ COVERAGE = 2.0
 DEFAULT_RISK = NormalDist().cdf(-COVERAGE)
 """What U = 2 u leaves on one side: 2.28 %."""
 
+NEGLIGIBLE = 1e-9
+"""Share of the risk that the far limit may add before the near one must give way."""
+
 
 class Decision(StrEnum):
     """What may be said of a value, or of a whole swatch or lot."""
@@ -174,8 +177,10 @@ def _shared_quantile(risk: float, freedom: float, width: float) -> float:
     low, high = _quantile(risk, freedom), _quantile(risk / 2.0, freedom)
     if width <= 2.0 * high:
         return high
-    for _ in range(60):
-        # halving 60 times leaves nothing of the bracket in double precision
+    if _below(low - width, freedom) < NEGLIGIBLE * risk:
+        return low
+    for _ in range(45):
+        # halving 45 times leaves nothing of the bracket that a double could show
         middle = 0.5 * (low + high)
         if _below(-middle, freedom) + _below(middle - width, freedom) > risk:
             low = middle

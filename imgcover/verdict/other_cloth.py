@@ -174,7 +174,7 @@ def _treatments(sheet: Sheet) -> tuple[Cause, ...]:
 def _shrunk(name: str, sign: int, treated: Departure, sheet: Sheet) -> list[Cause]:
     """Shrinkage packs the other system closer and puts more yarn into a length of cloth."""
     settle = "wash a marked square and measure it again; test for size with iodine"
-    prior = 0.6 if sheet.state is not None else 0.3
+    prior = 0.8 if sheet.state is not None else 0.3
     verb = "shrinkage" if sign > 0 else "less shrinkage than the finished cloth had"
     still = np.zeros(1)
 

@@ -8,16 +8,13 @@ from imgcover.findings import Flag
 from imgcover.verdict.line import Quantity
 
 SETTS = frozenset({Quantity.ENDS, Quantity.PICKS})
-COVER = frozenset({Quantity.COVER})
 
-HOLDS: dict[str, frozenset[Quantity]] = {
-    "rests-on-declared-weave": SETTS,
-    "warp-near-45": SETTS,
-    "scales-disagree": SETTS,
-    "certificate-expired": SETTS,
-    "certificate-other-resolution": SETTS,
+HOLDS: dict[Flag, frozenset[Quantity]] = {
+    Flag.RESTS_ON_DECLARED_WEAVE: SETTS,
+    Flag.WARP_UNCERTAIN: SETTS,
+    Flag.SCALES_DISAGREE: SETTS,
 }
-"""Code of the finding, and the lines that it keeps open."""
+"""Each finding, and the lines that it keeps open."""
 
 
 def holds(flags: Iterable[Flag], quantity: Quantity) -> tuple[str, ...]:
@@ -29,9 +26,7 @@ def holds(flags: Iterable[Flag], quantity: Quantity) -> tuple[str, ...]:
         One reason a finding, in the registry's order; empty when nothing stands in the way.
     """
     given = set(flags)
-    return tuple(
-        flag.message for flag in Flag if flag in given and quantity in HOLDS.get(flag.code, ())
-    )
+    return tuple(flag.message for flag in Flag if flag in given and quantity in HOLDS.get(flag, ()))
 
 
 __all__ = ["HOLDS", "holds"]

@@ -17,6 +17,7 @@ from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 
 import numpy as np
+from scipy.stats import chi2
 
 from imgcover.verdict.cause import Cause, fixed
 from imgcover.verdict.departure import Departure, Floats, expected, joined
@@ -24,10 +25,13 @@ from imgcover.verdict.evidence import Evidence
 from imgcover.verdict.sheet import Sheet
 
 NOTHING_FITS = "nothing fits: more than one figure may be off"
-NOTHING_PRIOR = 0.05
+NOTHING_PRIOR = 0.1
 """Beside 1 for a common cause: two things wrong at once is rarer than any one."""
-NOTHING_U = 0.25
+NOTHING_U = 0.15
 """Relative u of everything seen when no cause is supposed: any common deviation lies within it."""
+POOR_FIT = 0.002
+"""A cause that at its best size leaves a disagreement rarer than this does not fit; it is trusted
+less in the same proportion, so that nothing fits where nothing does."""
 FORKED = 20.0
 """How much a reading that could not choose between pairs and threads favours pairs."""
 REPEAT_MISREAD = 0.05
@@ -67,13 +71,15 @@ def weigh(causes: Sequence[Cause], sheet: Sheet, evidence: Evidence) -> list[Wei
     means, effects = expected(sheet, joined([cause.departure for cause in causes], counts))
     mean, effect = means[:, evidence.present], effects[:, :, evidence.present]
     covariance = np.matmul(effect.transpose(0, 2, 1), effect) + evidence.covariance
-    log_density = _log_normal(evidence.values - mean, covariance)
+    residual = evidence.values - mean
+    log_density = _log_normal(residual, covariance)
     ends = np.cumsum(counts)
     return [
         _weighed(
             cause,
             _context(cause, sheet, evidence),
             log_density[end - count : end],
+            residual[end - count : end],
             mean[end - count : end],
             covariance[end - count : end],
         )
@@ -82,7 +88,12 @@ def weigh(causes: Sequence[Cause], sheet: Sheet, evidence: Evidence) -> list[Wei
 
 
 def _weighed(
-    cause: Cause, context: float, log_density: Floats, mean: Floats, covariance: Floats
+    cause: Cause,
+    context: float,
+    log_density: Floats,
+    residual: Floats,
+    mean: Floats,
+    covariance: Floats,
 ) -> Weighed:
     """Average over the sizes of one cause."""
     joint = log_density + np.log(cause.weights)
@@ -90,10 +101,11 @@ def _weighed(
     share = np.exp(joint - log_evidence)
     best = int(np.argmax(joint))
     size = float(share @ cause.sizes)
+    log_evidence += math.log(context) + _log_penalty(residual[best], covariance[best])
     return Weighed(
         cause,
-        log_evidence + math.log(context),
-        log_evidence + math.log(context * cause.prior),
+        log_evidence,
+        log_evidence + math.log(cause.prior),
         mean[best],
         np.sqrt(np.diagonal(covariance[best])),
         size,
@@ -152,6 +164,14 @@ def _context(cause: Cause, sheet: Sheet, evidence: Evidence) -> float:
         if forks and cause.forks == which:
             factor *= FORKED
     return factor
+
+
+def _log_penalty(residual: Floats, covariance: Floats) -> float:
+    """How much less a cause is trusted for what it leaves unexplained; 0 where that is chance."""
+    if not len(residual):
+        return 0.0
+    squared = float(residual @ np.linalg.solve(covariance, residual))
+    return min(0.0, float(chi2.logsf(squared, len(residual))) - math.log(POOR_FIT))
 
 
 def _log_normal(residuals: Floats, covariances: Floats) -> Floats:
