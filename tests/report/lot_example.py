@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-import io
+from pathlib import Path
 from typing import Any
 
 import numpy as np
@@ -56,7 +56,9 @@ def lot_record(kind: str, *, lot: str = "4711", places: int = 5) -> dict[str, An
     return judge_lot(declaration, predict(declaration), seen, lot=lot).record()
 
 
-def glances_of(lot: dict[str, Any], *, name: str = "scan") -> list[Glance]:
+def glances_of(
+    lot: dict[str, Any], *, name: str = "scan", small: Path | None = None
+) -> list[Glance]:
     """One picture a place, and one more that could not be read."""
     note = Note("few-pixels-a-thread", "warning", "only 4.2 pixels a thread", "scan finer")
     return [
@@ -73,7 +75,7 @@ def glances_of(lot: dict[str, Any], *, name: str = "scan") -> list[Glance]:
             scale="stated pitch 600 dpi",
             notes=(note,) if n == 2 else (),
             row=n,
-            thumbnail=thumbnail(n),
+            thumbnail=None if small is None else kept(small, n),
         )
         for n, place in enumerate(lot["places"], start=1)
     ] + [
@@ -94,13 +96,13 @@ def glances_of(lot: dict[str, Any], *, name: str = "scan") -> list[Glance]:
     ]
 
 
-def thumbnail(seed: int) -> bytes:
-    """A small woven-looking picture."""
+def kept(folder: Path, seed: int) -> Path:
+    """Keep a small woven-looking picture."""
     rows, columns = np.mgrid[0:180, 0:240]
     weave = 128 + 50 * np.sin(rows * 0.9 + seed) + 50 * np.sin(columns * 0.8)
-    written = io.BytesIO()
-    Image.fromarray(weave.clip(0, 255).astype(np.uint8)).save(written, "JPEG", quality=80)
-    return written.getvalue()
+    path = folder / f"{seed}.jpg"
+    Image.fromarray(weave.clip(0, 255).astype(np.uint8)).save(path, "JPEG", quality=80)
+    return path
 
 
 ABOUT = About(
