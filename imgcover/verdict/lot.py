@@ -17,8 +17,8 @@ from imgcover.verdict.observed import Observed
 from imgcover.verdict.place import merged
 from imgcover.verdict.pooled import Pooled, pooled
 from imgcover.verdict.standard import PLACES, shortest_length_mm
-from imgcover.verdict.standing import holds
-from imgcover.verdict.swatch import judge_samples, why_missing
+from imgcover.verdict.standing import holds, why_missing
+from imgcover.verdict.swatch import judge_samples
 from imgcover.verdict.verdict import Scope, Verdict, line_record
 
 SCHEMA = "imgcover/lot/1"
@@ -181,7 +181,7 @@ def _mean(places: Sequence[Observed], quantity: Quantity) -> Pooled | None:
 
 def _sample(quantity: Quantity, mean: Pooled | None, flags: frozenset[Flag]) -> Sample:
     if mean is None:
-        return Sample(None, n=0, missing=why_missing(quantity, flags))
+        return Sample(None, n=0, missing=why_missing(flags, quantity))
     reasons = holds(flags, quantity)
     # one weighing may stand for a lot; one place of a picture may not
     if mean.n == 1 and quantity is not Quantity.MASS:

@@ -10,11 +10,10 @@ from imgcover.findings import Flag
 from imgcover.quantity import Measured
 from imgcover.verdict.line import Quantity
 from imgcover.verdict.observed import Observed, Spread
-from imgcover.verdict.standing import holds
+from imgcover.verdict.standing import COVER_MISSING, holds
 
 APART = 2.0
 """Standard uncertainties of their difference beyond which two pictures of a place disagree."""
-OF_MISSING_COVER = frozenset({Flag.LIGHT_NOT_STATED, Flag.COVER_NEEDS_BACKLIGHT})
 
 
 def merged(pictures: Iterable[Observed]) -> tuple[Observed, ...]:
@@ -43,7 +42,7 @@ def _merge(pictures: Sequence[Observed]) -> Observed:
     cover, cover_agrees = _mean([p.cover for p in pictures], 0.0)
     flags = frozenset().union(*(p.flags for p in sound))
     if cover is not None:
-        flags -= OF_MISSING_COVER
+        flags -= COVER_MISSING
     if not (ends_agree and picks_agree and cover_agrees):
         flags |= {Flag.PICTURES_OF_A_PLACE_DISAGREE}
     return replace(

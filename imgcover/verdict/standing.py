@@ -1,10 +1,10 @@
-"""Which findings keep a line undecided, whatever its numbers say."""
+"""Which findings keep a line undecided, or leave it without a value."""
 
 from __future__ import annotations
 
 from collections.abc import Iterable
 
-from imgcover.findings import Flag
+from imgcover.findings import Flag, Severity
 from imgcover.verdict.line import Quantity
 
 SETTS = frozenset({Quantity.ENDS, Quantity.PICKS})
@@ -15,6 +15,11 @@ HOLDS: dict[Flag, frozenset[Quantity]] = {
     Flag.SCALES_DISAGREE: SETTS,
 }
 """Each finding, and the lines that it keeps open."""
+
+COVER_MISSING = frozenset(
+    flag for flag in Flag if flag.message.startswith("optical cover was not measured")
+)
+"""Every finding that refuses the cover alone begins with these words; setts stand without it."""
 
 
 def holds(flags: Iterable[Flag], quantity: Quantity) -> tuple[str, ...]:
@@ -29,4 +34,13 @@ def holds(flags: Iterable[Flag], quantity: Quantity) -> tuple[str, ...]:
     return tuple(flag.message for flag in Flag if flag in given and quantity in HOLDS.get(flag, ()))
 
 
-__all__ = ["HOLDS", "holds"]
+def why_missing(flags: Iterable[Flag], quantity: Quantity) -> str:
+    """Say why a quantity has no value, in the words of the findings that refused it."""
+    given = set(flags)
+    refusals = {flag for flag in given if flag.severity is Severity.REFUSAL} - COVER_MISSING
+    wanted = given & COVER_MISSING if quantity is Quantity.COVER else refusals
+    reasons = [flag.message for flag in Flag if flag in (wanted or refusals)]
+    return "; ".join(reasons) or "it could not be measured"
+
+
+__all__ = ["COVER_MISSING", "HOLDS", "holds", "why_missing"]

@@ -7,7 +7,7 @@ from collections.abc import Mapping
 
 from imgcover.cloth.declaration import Declaration
 from imgcover.cloth.prediction import Prediction
-from imgcover.findings import Finding, Flag, Severity, found
+from imgcover.findings import Finding, Flag, found
 from imgcover.quantity import Measured, rounded
 from imgcover.verdict.aims import aims
 from imgcover.verdict.decision import Decision
@@ -17,7 +17,7 @@ from imgcover.verdict.line import Quantity, Sample, judge_line
 from imgcover.verdict.mean_count import mean_count
 from imgcover.verdict.observed import Observed, Spread
 from imgcover.verdict.sheet import sheet_of
-from imgcover.verdict.standing import holds
+from imgcover.verdict.standing import holds, why_missing
 from imgcover.verdict.verdict import Scope, Verdict, whole
 
 COVER_DIFFERS = 2.0
@@ -56,7 +56,7 @@ def judge(
         Quantity.MASS: observed.gsm,
     }
     samples = {
-        q: Sample(v, holds=holds(observed.flags, q), missing=why_missing(q, observed.flags))
+        q: Sample(v, holds=holds(observed.flags, q), missing=why_missing(observed.flags, q))
         for q, v in values.items()
     }
     return judge_samples(
@@ -151,14 +151,4 @@ def _of_cloth(field: Measured | None, spread: Spread) -> Measured | None:
     return Measured(field.value, math.hypot(field.u, field.value * spread.u_relative), field.unit)
 
 
-def why_missing(quantity: Quantity, flags: frozenset[Flag]) -> str:
-    """Say why a quantity has no value, in the words of the findings that refused it."""
-    of_cover = {Flag.LIGHT_NOT_STATED, Flag.COVER_NEEDS_BACKLIGHT}
-    if quantity is Quantity.COVER:
-        reasons = [flag.message for flag in Flag if flag in flags & of_cover]
-    else:
-        reasons = [f.message for f in Flag if f in flags and f.severity is Severity.REFUSAL]
-    return "; ".join(reasons) or "it could not be measured"
-
-
-__all__ = ["judge", "judge_samples", "why_missing"]
+__all__ = ["judge", "judge_samples"]

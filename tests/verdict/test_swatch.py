@@ -193,6 +193,14 @@ def test_a_count_that_was_refused_leaves_its_line_open_with_the_reason() -> None
     assert Flag.TOO_COARSE.message in line.reason
 
 
+def test_a_refusal_of_the_cover_is_no_reason_for_the_ends() -> None:
+    flags = frozenset({Flag.NO_CLOTH_TO_COVER, Flag.TWO_READINGS})
+    verdict = verdict_on(sheet(f'{SETTS}\ncover = "4 points"'), Observed(flags=flags))
+    ends, cover = (line_of(verdict, q) for q in (Quantity.ENDS, Quantity.COVER))
+    assert ends.reason == f"ends not judged: {Flag.TWO_READINGS.message}"
+    assert cover.reason == f"optical cover not judged: {Flag.NO_CLOTH_TO_COVER.message}"
+
+
 def test_what_is_declared_never_changes_what_was_measured() -> None:
     values = [
         line_of(verdict_on(sheet(SETTS, instead=("30 /cm", f"{n} /cm")), GOOD), Quantity.ENDS)
