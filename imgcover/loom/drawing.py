@@ -151,7 +151,8 @@ def _strip(
     fine_mm = 1 / (s * math.sqrt(camera.px_per_mm * camera.y_per_mm))
     end = nearest(loom.warp, u, v, fine_mm=fine_mm)
     pick = nearest(loom.weft, v, u, fine_mm=fine_mm)
-    hidden = comb(loom.hairs, grid.x_mm, grid.y_mm) if len(loom.hairs) else 0.0
+    point_mm = (1 / (s * camera.px_per_mm), 1 / (s * camera.y_per_mm))
+    hidden = comb(loom.hairs, grid.x_mm, grid.y_mm, point_mm=point_mm)
     halo = (grid.column.size // s - frame.width) // 2
     own = (grid.row > first - 0.5) & (grid.row < last - 0.5)
     if own.any():

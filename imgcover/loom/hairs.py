@@ -72,9 +72,18 @@ def _from_system(rng: Rng, system: System, count: int, frame: Frame) -> NDArray[
 
 
 def comb(
-    hairs: NDArray[np.float32], x_mm: NDArray[np.float64], y_mm: NDArray[np.float64]
+    hairs: NDArray[np.float32],
+    x_mm: NDArray[np.float64],
+    y_mm: NDArray[np.float64],
+    *,
+    point_mm: tuple[float, float],
 ) -> NDArray[np.float32] | float:
     """Draw the hairs on a regular grid y × x.
+
+    Parameters
+    ----------
+    point_mm : tuple of float
+        Width and height of a point of the grid.
 
     Returns
     -------
@@ -85,7 +94,7 @@ def comb(
     first, last = np.searchsorted(hairs[:, 0, 1], [y_mm[0] - margin, y_mm[-1] + margin])
     if first == last:
         return 0.0
-    fine_mm = np.array([x_mm[1] - x_mm[0], y_mm[1] - y_mm[0]])
+    fine_mm = np.array(point_mm)
     width = max(1, round(FIBRE_MM / float(fine_mm.mean())))
     shown = np.zeros((y_mm.size + 2 * RIM, x_mm.size + 2 * RIM), dtype=np.uint8)
     joints = (hairs[first:last] - np.array([x_mm[0], y_mm[0]])) / fine_mm + RIM
