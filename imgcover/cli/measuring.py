@@ -121,15 +121,23 @@ class _Run:
             yield summed.record
 
     def finish(self) -> None:
-        """Write the reference of an approved swatch, and sum up several pictures on stderr."""
-        if self._asked.as_reference is not None and self._last is not None:
-            _write_reference(self._last, self._asked.as_reference)
+        """Sum up several pictures on stderr, and write the reference of an approved swatch."""
         if len(self._codes) > 1:
             tell(_summary(self._codes))
+        if self._asked.as_reference is not None and self._last is not None:
+            self._approve(self._last, self._asked.as_reference)
 
     def code(self) -> ExitCode:
         """How it ended: as the lot did where there is one, else as the gravest picture did."""
         return gravest(self._codes) if self._lot is None else code_of(self._lot)
+
+    def _approve(self, record: Record, path: Path) -> None:
+        if record["cover"] is None or record["cover"]["optical"] is None:
+            tell(f"no reference was written: {reasons_against(record)}")
+            self._codes.append(ExitCode.UNDECIDED)
+            return
+        with opened(path) as write:
+            write(reference_toml(record))
 
     def _remember(self, record: Record) -> None:
         if self._ledger is not None:
@@ -237,16 +245,6 @@ def _entry(record: Record) -> Entry:
     else:
         subject = f"lot:{record['lot']}/{record['article'] or ''}"
     return Entry(record["schema"], subject, digest(record), canonical(body), made_at)
-
-
-def _write_reference(record: Record, path: Path) -> None:
-    if record["cover"] is None or record["cover"]["optical"] is None:
-        why = "; ".join(reasons_against(record)) or "cover was not measured"
-        raise OptionError(
-            "--as-reference", f"there is no optical cover to approve: {why}", "see the record"
-        )
-    with opened(path) as write:
-        write(reference_toml(record))
 
 
 def _summary(codes: Sequence[ExitCode]) -> str:

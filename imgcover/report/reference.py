@@ -38,11 +38,13 @@ def reference_toml(record: Mapping[str, Any]) -> str:
     return "\n".join(lines) + "\n"
 
 
-def reasons_against(record: Mapping[str, Any]) -> list[str]:
-    """Why the cover of a record is none, in the findings' words."""
-    return [each["message"] for each in record["findings"] if "cover" in each["code"]] or [
-        each["message"] for each in record["findings"] if each["severity"] == Severity.REFUSAL
+def reasons_against(record: Mapping[str, Any]) -> str:
+    """Say why a record holds no cover, in the findings' words."""
+    findings = record["findings"]
+    said = [each["message"] for each in findings if "cover" in each["message"]] or [
+        each["message"] for each in findings if each["severity"] == Severity.REFUSAL
     ]
+    return "; ".join(said) or "cover was not measured"
 
 
 __all__ = ["reasons_against", "reference_toml"]
