@@ -12,13 +12,14 @@ from numpy.typing import NDArray
 
 from imgcover.loom.camera import CameraSpec, Frame, Stored, expose
 from imgcover.loom.cloth import ClothSpec
-from imgcover.loom.crossing import Nearest, cross, nearest
+from imgcover.loom.counting import Lines, Met, count
+from imgcover.loom.crossing import cross, nearest
 from imgcover.loom.dressing import Loom, dress
 from imgcover.loom.edges import creased, stained
 from imgcover.loom.hairs import comb
 from imgcover.loom.noise import Rng
 from imgcover.loom.shading import HAIR_PASSES, reflected, surface, through
-from imgcover.loom.truth import LINES, Lines, Tally, Truth, count
+from imgcover.loom.truth import Tally, Truth
 
 Floats = NDArray[np.float32]
 
@@ -41,10 +42,24 @@ class Drawn:
         As a file would hold it.
     truth : Truth
         Counted from the fine drawing.
+    lines : tuple of Lines
+        The lines that counted the ends, and those that counted the picks.
     """
 
     stored: Stored
     truth: Truth
+    lines: tuple[Lines, Lines]
+
+    def within(self, mask: NDArray[np.bool_]) -> tuple[float, float]:
+        """Count ends and picks per mm in a part of the picture.
+
+        Parameters
+        ----------
+        mask : ndarray, shape (rows, columns), bool
+            The part; threads are counted from the first to the last that a line meets in it.
+        """
+        ends, picks = (count(each.within(mask)) for each in self.lines)
+        return ends.per_mm, picks.per_mm
 
 
 @dataclass(frozen=True, slots=True)
@@ -85,12 +100,13 @@ def draw(
     frame = Frame(width, height, camera)
     loom = dress(rng, cloth, frame)
     s = fineness or _fineness(cloth, camera)
-    tally, met = Tally(), _Met(loom, s)
+    tally, met = Tally(), Met(loom, s)
     light = np.empty((height, width, 3 if camera.colour else 1), dtype=np.float32)
     for first, last in _bands(frame, s):
         light[first:last] = _band(loom, s, first, last, tally, met)
     seen = light if camera.colour else light[..., 0]
-    return Drawn(expose(seen, camera, rng), _truth(loom, s, tally, met))
+    lines = met.lines(loom)
+    return Drawn(expose(seen, camera, rng), _truth(loom, s, tally, lines), lines)
 
 
 def _fineness(cloth: ClothSpec, camera: CameraSpec) -> int:
@@ -112,7 +128,7 @@ def _bands(frame: Frame, s: int) -> Iterator[tuple[int, int]]:
         yield first, min(frame.height, first + rows)
 
 
-def _band(loom: Loom, s: int, first: int, last: int, tally: Tally, met: _Met) -> Floats:
+def _band(loom: Loom, s: int, first: int, last: int, tally: Tally, met: Met) -> Floats:
     """Draw the rows first … last of the picture: (rows, columns, channels) of light."""
     frame, camera = loom.frame, loom.frame.camera
     halo = _halo(camera)
@@ -141,9 +157,7 @@ def _band(loom: Loom, s: int, first: int, last: int, tally: Tally, met: _Met) ->
     return np.asarray(blocks.mean(axis=(1, 3)), dtype=np.float32)
 
 
-def _strip(
-    loom: Loom, s: int, grid: Grid, first: int, last: int, tally: Tally, met: _Met
-) -> Floats:
+def _strip(loom: Loom, s: int, grid: Grid, first: int, last: int, tally: Tally, met: Met) -> Floats:
     """Draw some fine rows, and count those that belong to the band itself."""
     frame, cloth, camera = loom.frame, loom.cloth, loom.frame.camera
     u = frame.across_ends(grid.x_mm, grid.y_mm) + loom.stray_ends.on(grid.x_mm, grid.y_mm)
@@ -208,74 +222,10 @@ def _inside(loom: Loom, u: Floats, v: Floats) -> Floats:
     return good.astype(np.float32)
 
 
-class _Met:
-    """Collects the thread numbers met along the counting lines of the picture."""
-
-    def __init__(self, loom: Loom, s: int) -> None:
-        frame = loom.frame
-        turn = math.radians(frame.camera.rotation_deg)
-        self._upright = abs(math.cos(turn)) >= abs(math.sin(turn))
-        self._rows = np.unique(np.linspace(0, frame.height * s - 1, LINES).astype(int))
-        self._columns = np.unique(np.linspace(0, frame.width * s - 1, LINES).astype(int))
-        self._across: list[NDArray[np.float64]] = []
-        self._down: list[NDArray[np.float64]] = []
-        self._row = 0
-        self._s = s
-
-    def add(
-        self, end: Nearest, pick: Nearest, inside: Floats, own: NDArray[np.bool_], edge: int
-    ) -> None:
-        """Take the lines that fall into these fine rows."""
-        over, below = (end, pick) if self._upright else (pick, end)
-        keep = np.flatnonzero(own)
-        rows = self._rows[(self._rows >= self._row) & (self._rows < self._row + keep.size)]
-        self._row += keep.size
-        local = rows - (self._row - keep.size)
-        wide = np.s_[edge : over.left.shape[1] - edge]
-        self._across.append(
-            _number(
-                over, np.ix_(keep[local], range(*wide.indices(over.left.shape[1]))), inside[local]
-            )
-        )
-        self._down.append(
-            _number(below, np.ix_(keep, self._columns + edge), inside[:, self._columns])
-        )
-
-    def lines(self, frame: Frame) -> tuple[Lines, Lines]:
-        """Give the lines that count the ends, and those that count the picks."""
-        s = self._s
-        across = Lines(
-            (self._rows + 0.5) / s - 0.5,
-            (np.arange(frame.width * s) + 0.5) / s - 0.5,
-            np.concatenate(self._across),
-            down=False,
-        )
-        down = Lines(
-            (self._columns + 0.5) / s - 0.5,
-            (np.arange(frame.height * s) + 0.5) / s - 0.5,
-            np.concatenate(self._down).T,
-            down=True,
-        )
-        return (across, down) if self._upright else (down, across)
-
-
-def _number(
-    thread: Nearest, where: tuple[NDArray[np.int_], ...], inside: Floats
-) -> NDArray[np.float64]:
-    """Give thread numbers as they run from centre line to centre line; NaN outside."""
-    number = thread.left[where] + thread.share[where].astype(np.float64)
-    return np.where(inside > 0, number, np.nan)
-
-
-def _truth(loom: Loom, s: int, tally: Tally, met: _Met) -> Truth:
+def _truth(loom: Loom, s: int, tally: Tally, lines: tuple[Lines, Lines]) -> Truth:
     """Count what was drawn."""
-    frame, camera = loom.frame, loom.frame.camera
-    counts = []
-    for lines, system in zip(met.lines(frame), (loom.warp, loom.weft), strict=True):
-        per_mm = (camera.px_per_mm, camera.y_per_mm)
-        along, aside = per_mm[::-1] if lines.down else per_mm
-        counts.append(count(lines, along_per_mm=along, aside_per_mm=aside, pattern=system.pattern))
-    ends, picks = counts
+    camera = loom.frame.camera
+    ends, picks = (count(each) for each in lines)
     area = max(tally.area, 1.0)
     warp, weft = tally.warp / area, tally.weft / area
     point_mm2 = 1 / (s * s * camera.px_per_mm * camera.y_per_mm)

@@ -142,6 +142,21 @@ def test_fine_drawing_is_fine_enough() -> None:
     assert coarse.pore_area == pytest.approx(fine.pore_area, rel=0.01)
 
 
+def test_a_part_of_the_picture_can_be_counted_by_itself() -> None:
+    drawn = draw(replace(EVEN, wander=0.3, spacing_cv=0.05), CLEAN, 400, 360, rng(2))
+    everywhere = np.ones((360, 400), dtype=bool)
+    assert drawn.within(everywhere) == pytest.approx((drawn.truth.ends, drawn.truth.picks))
+    left = everywhere.copy()
+    left[:, 200:] = False
+    right = ~left
+    halves = [drawn.within(half)[0] for half in (left, right)]
+    # the whole lies between its halves; a gap at the seam belongs to neither
+    assert min(halves) < drawn.truth.ends < max(halves)
+    turned = replace(CLEAN, rotation_deg=90.0)
+    even = draw(EVEN, turned, 300, 300, rng())
+    assert even.within(np.indices((300, 300))[0] < 150) == pytest.approx((2.5, 2.0), rel=1e-3)
+
+
 def test_thicker_yarn_never_covers_less() -> None:
     covers = [
         draw(replace(EVEN, end_diameter_mm=d, diameter_cv=0.1), CLEAN, 120, 120, rng()).truth.cover
