@@ -40,6 +40,9 @@ SIDE = 460
 """Pixels: some twenty threads at 1000 dpi, drawn in a second and enough for a decision at 4 %."""
 PITCH = "1000dpi"
 
+WRITING = frozenset({"-", "-o", "--ledger", "--overlay", "--as-reference"})
+"""Options whose effect is not only what is told."""
+
 Ended = tuple[int, str, str]
 
 
@@ -68,14 +71,30 @@ def goods(tmp_path_factory: pytest.TempPathFactory) -> Path:
     return folder
 
 
+@pytest.fixture(scope="session")
+def known() -> dict[tuple[str, ...], Ended]:
+    """How calls that write nothing ended: the same call need not measure again."""
+    return {}
+
+
 @pytest.fixture
 def ended(
-    goods: Path, monkeypatch: pytest.MonkeyPatch, capsysbinary: pytest.CaptureFixture[bytes]
+    goods: Path,
+    known: dict[tuple[str, ...], Ended],
+    monkeypatch: pytest.MonkeyPatch,
+    capsysbinary: pytest.CaptureFixture[bytes],
 ) -> Callable[..., Ended]:
     """Run `imgcover …` in the folder and give exit code, stdout and stderr."""
     monkeypatch.chdir(goods)
 
     def call(*arguments: str) -> Ended:
+        if WRITING.isdisjoint(arguments):
+            if arguments not in known:
+                known[arguments] = run_once(*arguments)
+            return known[arguments]
+        return run_once(*arguments)
+
+    def run_once(*arguments: str) -> Ended:
         with pytest.raises(SystemExit) as left:
             run(arguments)
         out, err = capsysbinary.readouterr()
