@@ -82,14 +82,24 @@ def audited(asked: AuditAsked) -> ExitCode:
             LocalCrew(hands=asked.jobs or jobs_that_fit(), limit_s=asked.time_limit)
         )
         crew = _cluster(asked, stack) if asked.cluster else pages
-        audit = _Audit(asked, out, ledger, crew, pages, risk)
+        audit = Audit(asked, out, ledger, crew, pages, risk)
         if listing is not None:
             return audit.round(listing)
         return _watched(audit, asked, out)
 
 
-class _Audit:
-    """What stays the same from round to round."""
+class Audit:
+    """What stays the same from round to round.
+
+    Parameters
+    ----------
+    asked : AuditAsked
+    out : OutFolder
+    ledger : Ledger
+    crew, pages : Crew
+        Who measures, and who writes the lots' pages.
+    risk : float or None
+    """
 
     def __init__(
         self,
@@ -163,7 +173,7 @@ class _Audit:
         tell(lead(Counter(lot.decision for lot in lots)))
 
 
-def _watched(audit: _Audit, asked: AuditAsked, out: OutFolder) -> ExitCode:
+def _watched(audit: Audit, asked: AuditAsked, out: OutFolder) -> ExitCode:
     """Go round whenever something came or changed; ends with Ctrl-C."""
     settling = Settling()
     done: tuple[object, ...] | None = None
@@ -225,4 +235,4 @@ def _versions() -> dict[str, str]:
     return {"imgcover": __version__, **library_versions()}
 
 
-__all__ = ["AuditAsked", "audited"]
+__all__ = ["Audit", "AuditAsked", "audited"]

@@ -40,7 +40,18 @@ def test_a_sub_folder_is_a_lot_and_its_article_toml_the_declaration(tmp_path):
     assert [p.lot for p in listing.pictures] == ["A", "B", "B", "B"]
     assert listing.pictures[0].article is None
     assert {p.article for p in listing.pictures[1:]} == {tmp_path / "B" / "article.toml"}
-    assert listing.lots() == {"A": [0], "B": [1, 2, 3]}
+    assert list(listing.lots().values()) == [[0], [1, 2, 3]]
+
+
+def test_two_articles_under_one_lot_are_two_lots(tmp_path):
+    lay(tmp_path, "1.png", "2.png", "3.png")
+    lay(tmp_path, "h.toml", "g.toml", content=ARTICLE.format("x").encode())
+    sheet(tmp_path, "1.png,7,h", "2.png,7,g", "3.png,7,h")
+    lots = list_folder(tmp_path, articles=None).lots()
+    assert {(lot.lot, lot.article.name): at for lot, at in lots.items()} == {
+        ("7", "h.toml"): [0, 2],
+        ("7", "g.toml"): [1],
+    }
 
 
 def test_a_picture_under_a_wrong_name_is_not_passed_over(tmp_path):

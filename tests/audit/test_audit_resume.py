@@ -1,0 +1,121 @@
+"""Truth is the folder as it was laid: what changed between two audits is known, and what did not.
+
+Audited in this process, with no workers: how work is spread is tested elsewhere.
+"""
+
+import sqlite3
+from contextlib import closing
+
+import audit_rig
+import pytest
+from audit_rig import audit_inline, lay, records, timeless
+
+from imgcover.cli.exits import ExitCode
+from imgcover.errors import LotSheetError
+
+
+def rows(out):
+    with closing(sqlite3.connect(out / "ledger.sqlite")) as raw:
+        return raw.execute("SELECT n, subject, supersedes FROM entry ORDER BY n").fetchall()
+
+
+def test_a_second_run_measures_only_what_changed(tmp_path, capsys):
+    goods, out = tmp_path / "goods", tmp_path / "out"
+    lay(goods, {"A": 1, "B": 2})
+    audit_inline(goods, out)
+    before = (out / "records.jsonl").read_bytes()
+    audit_inline(goods, out)
+    assert "3 pictures: 3 known from before" in capsys.readouterr().err
+    assert (out / "records.jsonl").read_bytes() == before
+    sheet = goods / "lots.csv"
+    whole = sheet.read_text()
+    # a pitch of half: that picture is measured again, and its lot with it
+    sheet.write_text(whole.replace("2,backlit,24px/mm", "2,backlit,12px/mm"))
+    audit_inline(goods, out)
+    assert "3 pictures: 1 measured, 2 known from before" in capsys.readouterr().err
+    assert records(out)[2]["threads"]["ends"]["value"] == pytest.approx(12.5, rel=0.01)
+    assert [(subject, supersedes) for _, subject, supersedes in rows(out)[5:]] == [
+        ("picture:goods/B-2.png", 3),
+        ("lot:goods/B/G-1.toml", 5),
+    ]
+    # put right again: the first measurement is still known, and holds once more
+    sheet.write_text(whole)
+    audit_inline(goods, out)
+    assert "3 known from before" in capsys.readouterr().err
+    assert (out / "records.jsonl").read_bytes() == before
+
+
+@pytest.mark.parametrize("what", ["picture", "declaration", "sample"])
+def test_every_part_of_the_key_is_noticed(tmp_path, capsys, what):
+    goods, out = tmp_path / "goods", tmp_path / "out"
+    lay(goods, {"A": 1, "B": 1})
+    audit_inline(goods, out)
+    article, sheet = goods / "articles" / "G-1.toml", goods / "lots.csv"
+    if what == "picture":
+        (goods / "B-1.png").write_bytes((goods / "A-1.png").read_bytes())
+    elif what == "declaration":
+        article.write_text(article.read_text().replace("2 %", "3 %"))
+    else:
+        sheet.write_text(sheet.read_text().replace("B-1.png,B,G-1,1", "B-1.png,B,G-1,7"))
+    capsys.readouterr()
+    audit_inline(goods, out)
+    measured = 2 if what == "declaration" else 1
+    assert f"{measured} measured" in capsys.readouterr().err
+
+
+def test_fresh_measures_everything_again_and_supersedes(tmp_path, capsys):
+    goods, out = tmp_path / "goods", tmp_path / "out"
+    lay(goods, {"A": 2})
+    audit_inline(goods, out)
+    before = timeless(out)
+    audit_inline(goods, out, fresh=True)
+    assert "2 pictures: 2 measured" in capsys.readouterr().err
+    assert timeless(out) == before
+    assert [supersedes for _, _, supersedes in rows(out)[3:5]] == [1, 2]
+
+
+def test_a_wrong_declaration_stops_only_its_own_lots(tmp_path, capsys):
+    lay(tmp_path / "goods", {"A": 2, "B": 2})
+    bad = tmp_path / "goods" / "articles" / "bad.toml"
+    bad.write_text(
+        audit_rig.ARTICLE.format(code="bad", ends=25, picks=20).replace("ends =", "ens =")
+    )
+    sheet = tmp_path / "goods" / "lots.csv"
+    sheet.write_text(sheet.read_text().replace("B,G-1", "B,bad"))
+    assert audit_inline(tmp_path / "goods", tmp_path / "out") is ExitCode.USAGE
+    assert "tolerance.ens" in capsys.readouterr().err
+    told = records(tmp_path / "out")
+    assert told[-2]["decision"] == "conforms"
+    assert told[-1]["decision"] is None
+    assert told[2]["findings"][0]["code"] == "declaration-unreadable"
+    assert told[2]["threads"] is not None
+
+
+@pytest.mark.parametrize(
+    ("cell", "said"),
+    [
+        ("24px", "lots.csv row 2, pitch"),
+        ("0dpi", "lots.csv row 2, pitch"),
+    ],
+)
+def test_a_wrong_cell_is_refused_before_anything_is_measured(tmp_path, cell, said):
+    lay(tmp_path / "goods", {"A": 1})
+    sheet = tmp_path / "goods" / "lots.csv"
+    sheet.write_text(sheet.read_text().replace("24px/mm", cell))
+    with pytest.raises(LotSheetError) as refused:
+        audit_inline(tmp_path / "goods", tmp_path / "out")
+    assert said in str(refused.value)
+    assert not (tmp_path / "out" / "records.jsonl").exists()
+
+
+def test_a_copy_of_a_picture_is_not_another_place(tmp_path):
+    lay(tmp_path / "goods", {"A": 1})
+    first = tmp_path / "goods" / "A-1.png"
+    (tmp_path / "goods" / "A-2.png").write_bytes(first.read_bytes())
+    with (tmp_path / "goods" / "lots.csv").open("a") as sheet:
+        sheet.write("A-2.png,A,G-1,2,backlit,24px/mm\n")
+    code = audit_inline(tmp_path / "goods", tmp_path / "out")
+    lot = records(tmp_path / "out")[-1]
+    assert lot["n_places"] == 1
+    assert "same-picture-twice" in {each["code"] for each in lot["findings"]}
+    assert code is ExitCode.UNDECIDED
