@@ -30,6 +30,8 @@ class Cause:
         The check that would settle it.
     takes : str
         What it would take, with room for the size in percent; empty where it has no size.
+    sett : str
+        The sett ("ends", "picks") whose deviation is its size; empty for none.
     forks : str
         The set of threads ("ends", "picks") whose forked reading speaks for it; empty for none.
     other_weave : bool
@@ -43,6 +45,7 @@ class Cause:
     weights: Floats
     settle: str
     takes: str = ""
+    sett: str = ""
     forks: str = ""
     other_weave: bool = False
 
@@ -56,6 +59,7 @@ def sized(
     usual: float,
     takes: str,
     settle: str,
+    sett: str = "",
 ) -> Cause:
     """Make a cause of one size.
 
@@ -70,7 +74,8 @@ def sized(
     """
     sizes = np.linspace(*between, NODES)
     weights = np.exp(-(sizes - sizes[0]) / usual)
-    return Cause(name, prior, departure(sizes), sizes, weights / weights.sum(), settle, takes)
+    weights = weights / weights.sum()
+    return Cause(name, prior, departure(sizes), sizes, weights, settle, takes, sett)
 
 
 def fixed(

@@ -35,7 +35,8 @@ MOST_LISTED = 6
 """More than these nobody would check."""
 TELLING = 2.0
 """Standard uncertainties beyond which a number speaks for or against."""
-SPOKEN_UNIT = {"ends": " a cm", "picks": " a cm", "mass": " g/m²"}
+PER_INCH = 2.54
+"""Threads an inch in one thread a centimetre."""
 
 
 def diagnose(
@@ -113,24 +114,35 @@ def _speaks_for(
         explained[int(np.argmax(better))] = True
     own_u = np.sqrt(np.diagonal(evidence.covariance))
     for i in np.flatnonzero(explained):
-        name, u = SEEN[evidence.present[i]], own_u[i]
-        yield (
-            f"{name} {_shown(name, evidence.values[i], u)}: {_origin(name, sheet)} leads to "
-            f"{_shown(name, declared.mean[i], u)}, this to {_shown(name, weighed.mean[i], u)}"
+        name = SEEN[evidence.present[i]]
+        seen, was, now = (
+            _shown(name, sheet, value, own_u[i])
+            for value in (evidence.values[i], declared.mean[i], weighed.mean[i])
         )
-    yield from _forks_for(weighed, evidence)
+        yield f"{name} {seen}: {_origin(name, sheet)} leads to {was}, this to {now}"
+    yield from _forks_for(weighed, sheet, evidence)
     if weighed.cause.other_weave and shows_other_weave(sheet, evidence):
         yield _repeats(sheet, evidence)
     if weighed.cause.takes:
-        size, size_u = rounded(100 * weighed.size, 100 * weighed.size_u)
+        size, size_u = rounded(*(100 * each for each in _size(weighed, declared, evidence)))
         yield weighed.cause.takes.format(f"{size} ± {size_u}")
 
 
-def _forks_for(weighed: Weighed, evidence: Evidence) -> Iterator[str]:
+def _size(weighed: Weighed, declared: Weighed, evidence: Evidence) -> tuple[float, float]:
+    """How large the deviation is; of a sett that was counted, as counted."""
+    for i, seen in enumerate(evidence.present):
+        if SEEN[seen] == weighed.cause.sett:
+            u = math.sqrt(evidence.covariance[i, i]) / declared.mean[i]
+            return abs(evidence.values[i] / declared.mean[i] - 1), u
+    return weighed.size, weighed.size_u
+
+
+def _forks_for(weighed: Weighed, sheet: Sheet, evidence: Evidence) -> Iterator[str]:
     for which, forks in (("ends", evidence.ends_forks), ("picks", evidence.picks_forks)):
         if forks and weighed.cause.forks == which:
-            readings = " or ".join(f"{each:.4g}" for each in forks)
-            yield f"the {which} could be read as {readings} a cm"
+            factor, unit = _unit(which, sheet)
+            readings = " or ".join(f"{each * factor:.4g}" for each in forks)
+            yield f"the {which} could be read as {readings}{unit}"
 
 
 def _speaks_against(weighed: Weighed, sheet: Sheet, evidence: Evidence) -> Iterator[str]:
@@ -139,11 +151,10 @@ def _speaks_against(weighed: Weighed, sheet: Sheet, evidence: Evidence) -> Itera
     own_u = np.sqrt(np.diagonal(evidence.covariance))
     for i in np.flatnonzero(distance > TELLING):
         name = SEEN[evidence.present[i]]
-        mean, u = rounded(float(weighed.mean[i]), float(weighed.u[i]))
-        yield (
-            f"{name} {_shown(name, evidence.values[i], own_u[i])}: this would lead to "
-            f"{mean} ± {u}{SPOKEN_UNIT.get(name, '')}"
-        )
+        factor, unit = _unit(name, sheet)
+        mean, u = rounded(float(weighed.mean[i]) * factor, float(weighed.u[i]) * factor)
+        seen = _shown(name, sheet, evidence.values[i], own_u[i])
+        yield f"{name} {seen}: this would lead to {mean} ± {u}{unit}"
     if not weighed.cause.other_weave and shows_other_weave(sheet, evidence):
         yield _repeats(sheet, evidence)
 
@@ -160,8 +171,17 @@ def _origin(name: str, sheet: Sheet) -> str:
     return "the approved swatch" if sheet.approved and "cover" in name else "the sheet"
 
 
-def _shown(name: str, value: float, u: float) -> str:
-    return f"{rounded(float(value), float(u))[0]}{SPOKEN_UNIT.get(name, '')}"
+def _shown(name: str, sheet: Sheet, value: float, u: float) -> str:
+    factor, unit = _unit(name, sheet)
+    return f"{rounded(float(value) * factor, float(u) * factor)[0]}{unit}"
+
+
+def _unit(name: str, sheet: Sheet) -> tuple[float, str]:
+    """Speak of a sett in the unit of the sheet."""
+    in_inch = {"ends": sheet.ends_in_inch, "picks": sheet.picks_in_inch}.get(name)
+    if in_inch is None:
+        return 1.0, " g/m²" if name == "mass" else ""
+    return (PER_INCH, " an inch") if in_inch else (1.0, " a cm")
 
 
 __all__ = ["diagnose"]

@@ -4,18 +4,22 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
+from statistics import NormalDist
 
 import numpy as np
-from scipy.optimize import lsq_linear
 from scipy.special import chdtrc
 
 from imgcover.quantity import Measured
-from imgcover.verdict.departure import SEEN, Departure, Floats, expected, natural_u
+from imgcover.verdict.departure import SEEN, Departure, Floats, expected
 from imgcover.verdict.mean_count import moisture_u
 from imgcover.verdict.observed import Observed
 from imgcover.verdict.sheet import Sheet
 
-MASS = SEEN.index("mass")
+ENDS, PICKS, MASS = (SEEN.index(name) for name in ("ends", "picks", "mass"))
+
+SETTS_SHARE = 0.2
+"""Share of the risk that goes to the setts: they stray far when they stray, and have their lines;
+cover and mass need the more of it."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -75,40 +79,48 @@ def evidence_of(observed: Observed) -> Evidence:
 def agrees(sheet: Sheet, evidence: Evidence, *, risk: float) -> bool:
     """Whether all that was seen can be the declared cloth, within its tolerances.
 
-    Setts may lie anywhere in their tolerance; the remaining disagreement, in units of its own
-    uncertainty, is held against chi-square. A cloth that is as declared is then called different
-    at most as often as `risk` says.
+    Two questions share the risk: does a sett lie beyond its room, and do cover and mass disagree
+    with the cloth at the setts that it was found to have. A cloth that is as declared is then
+    called different at most as often as `risk` says (Boole's inequality), wherever in its
+    tolerances it lies.
     """
+    of_setts = SETTS_SHARE * risk
+    beyond = _sett_beyond(sheet, evidence, of_setts)
+    return not beyond and _rest_fits(sheet, evidence, risk - of_setts)
+
+
+def _sett_beyond(sheet: Sheet, evidence: Evidence, risk: float) -> bool:
+    """Whether a sett lies beyond its room by more than chance; both setts share the risk."""
+    declared = {ENDS: (sheet.ends, sheet.ends_room), PICKS: (sheet.picks, sheet.picks_room)}
+    widest = NormalDist().inv_cdf(1 - risk / 2)
+    for i, seen in enumerate(evidence.present):
+        if seen not in declared:
+            continue
+        sett, (below, above) = declared[int(seen)]
+        beyond = max(
+            (1 - below) * sett - evidence.values[i], evidence.values[i] - (1 + above) * sett
+        )
+        if beyond > widest * math.sqrt(evidence.covariance[i, i]):
+            return True
+    return False
+
+
+def _rest_fits(sheet: Sheet, evidence: Evidence, risk: float) -> bool:
+    """Whether what is no sett fits a cloth that differs from the declared in its setts alone."""
     means, effects = expected(sheet, Departure())
     mean, effect = means[0, evidence.present], effects[0][:, evidence.present]
-    covariance = evidence.covariance + effect[:-2].T @ effect[:-2]
+    # a sett that was counted is left free to explain the rest; one that was not may vary as usual
+    free = [k for k, seen in ((-2, ENDS), (-1, PICKS)) if seen in evidence.present]
+    bound = [k for k in range(-len(effect), 0) if k not in free]
+    left = len(mean) - len(free)
+    if left == 0:
+        return True
+    covariance = evidence.covariance + effect[bound].T @ effect[bound]
     lower = np.linalg.cholesky(covariance + _jitter(covariance))
     residual = np.linalg.solve(lower, evidence.values - mean)
-    steps, bounds = _steps(sheet, effect[-2:], lower)
-    if not len(evidence.values):
-        return True
-    distance = 2.0 * float(lsq_linear(steps, residual, bounds).cost)
-    setts = int(np.sum(evidence.present < 2))
-    return _tail(distance, len(evidence.values), setts) > risk
-
-
-def _tail(distance: float, n: int, setts: int) -> float:
-    """Probability of such a distance or more, for a cloth at the very limits of its tolerances.
-
-    Each sett at its limit is half the time pulled back into the tolerance, which takes one degree
-    of freedom: a mixture of chi-squares (Kudô 1963). Inside the limits it is smaller still.
-    """
-    shares = [math.comb(setts, k) / 2**setts for k in range(setts + 1)]
-    tails = [float(chdtrc(n - k, distance)) if n > k else 0.0 for k in range(setts + 1)]
-    return math.fsum(share * tail for share, tail in zip(shares, tails, strict=True))
-
-
-def _steps(sheet: Sheet, natural: Floats, lower: Floats) -> tuple[Floats, tuple[Floats, Floats]]:
-    """Whitened effect of one u of natural variation, and how many u the tolerances leave room."""
-    one_u = [natural_u(sheet.ends_room), natural_u(sheet.picks_room)]
-    rooms = np.array([sheet.ends_room, sheet.picks_room]) / np.array(one_u)[:, None]
-    steps: Floats = np.linalg.solve(lower, natural.T).astype(np.float64)
-    return steps, (-rooms[:, 0], rooms[:, 1])
+    steps = np.linalg.solve(lower, effect[free].T)
+    residual = residual - steps @ np.linalg.lstsq(steps, residual, rcond=None)[0]
+    return float(chdtrc(left, float(residual @ residual))) > risk
 
 
 def _jitter(covariance: Floats) -> Floats:

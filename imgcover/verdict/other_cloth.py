@@ -47,6 +47,7 @@ def _setts() -> tuple[Cause, ...]:
             usual=SETT_USUAL,
             takes=f"it takes {{}} % fewer {which} than declared",
             settle=UNDER_GLASS.format(which),
+            sett=which,
         )
 
     def more(which: str) -> Cause:
@@ -59,6 +60,7 @@ def _setts() -> tuple[Cause, ...]:
             usual=SETT_USUAL,
             takes=f"it takes {{}} % more {which} than declared",
             settle=UNDER_GLASS.format(which),
+            sett=which,
         )
 
     return short("ends"), short("picks"), more("ends"), more("picks")
@@ -126,7 +128,7 @@ def _folding(sheet: Sheet) -> tuple[Cause, ...]:
             f"folded {yarns.called} declared by {'its' if yarns is not BOTH else 'their'} "
             "single count",
             yarns.with_tex(np.array([2.0, 3.0])),
-            prior=0.3,
+            prior=0.15,
             settle=f"untwist the {yarns.called} and count the singles",
             shares=(0.8, 0.2),
         )
@@ -175,7 +177,7 @@ def _shrunk(name: str, sign: int, treated: Departure, sheet: Sheet) -> list[Caus
     """Shrinkage packs the other system closer and puts more yarn into a length of cloth."""
     settle = "wash a marked square and measure it again; test for size with iodine"
     prior = 0.8 if sheet.state is not None else 0.3
-    verb = "shrinkage" if sign > 0 else "less shrinkage than the finished cloth had"
+    verb = "shrinkage" if sign > 0 else "shrinkage still to come"
     still = np.zeros(1)
 
     def shrunk(in_length: Floats, in_width: Floats) -> Departure:

@@ -13,11 +13,12 @@ Jeffreys, Theory of Probability (1961), chapter V and appendix B.
 from __future__ import annotations
 
 import math
+import sys
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 
 import numpy as np
-from scipy.stats import chi2
+from scipy.special import chdtrc
 
 from imgcover.verdict.cause import Cause, fixed
 from imgcover.verdict.departure import Departure, Floats, expected, joined
@@ -171,7 +172,8 @@ def _log_penalty(residual: Floats, covariance: Floats) -> float:
     if not len(residual):
         return 0.0
     squared = float(residual @ np.linalg.solve(covariance, residual))
-    return min(0.0, float(chi2.logsf(squared, len(residual))) - math.log(POOR_FIT))
+    tail = max(float(chdtrc(len(residual), squared)), sys.float_info.min)
+    return min(0.0, math.log(tail / POOR_FIT))
 
 
 def _log_normal(residuals: Floats, covariances: Floats) -> Floats:

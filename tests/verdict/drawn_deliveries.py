@@ -12,6 +12,12 @@ from imgcover.cloth.declaration import Declaration, read_declaration
 from imgcover.quantity import Measured
 from imgcover.verdict.observed import Observed
 
+MOISTURE = 0.01
+"""Relative scatter of a mass with the moisture of the room."""
+CELLS = 0.005
+"""What cells that vary move the cover of the whole against 1 − (1 − k1)(1 − k2)."""
+LIMITS = np.array([0.02, 0.03])
+"""Tolerances of ends and picks, relative, on every sheet drawn."""
 OWN_WIDTH = 0.02
 """Relative scatter of a yarn's width about what its fibre and packing lead to."""
 COVERS_U = (0.010, 0.010, 0.005)
@@ -25,6 +31,7 @@ class Cloth:
     """The cloth that was delivered, and how its picture was read."""
 
     construction: Construction
+    cells: float = 0.0
     width: float = 1.0
     mass: float = 1.0
     read_ends: float = 1.0
@@ -178,8 +185,10 @@ NEEDS_COVER = ("yarn", "inserted", "inch")
 NEEDS_MASS = ("yarn flattened", "grey", "inserted")
 
 
-def draw_delivery(truth: str | None, rng: np.random.Generator) -> Delivery:
-    """Draw one delivery with the named deviation, or with none."""
+def draw_delivery(
+    truth: str | None, rng: np.random.Generator, *, at_limits: bool = False
+) -> Delivery:
+    """Draw one delivery with the named deviation, or with none; setts near or at their limits."""
     name = truth or ""
     by_cm = name.startswith("per-inch")
     plies = 2 if name.startswith("plies") else 1
@@ -192,11 +201,11 @@ def draw_delivery(truth: str | None, rng: np.random.Generator) -> Delivery:
     if approved:
         declaration = _approve(declaration, cloth, constants, own, rng)
         own = own * rng.normal(1, 0.01, 2)
-    room = 0.01
+    astray = rng.choice([-1, 1], 2) * LIMITS if at_limits else rng.uniform(-0.01, 0.01, 2)
     strayed = change(
-        cloth,
-        warp=lambda t: sett(t, 1 + rng.uniform(-room, room)),
-        weft=lambda t: sett(t, 1 + rng.uniform(-room, room)),
+        replace(cloth, cells=rng.normal(0, CELLS)),
+        warp=lambda t: sett(t, 1 + astray[0]),
+        weft=lambda t: sett(t, 1 + astray[1]),
     )
     delivered, size = DEVIATIONS[name](strayed, rng) if truth else (strayed, 0.0)
     backlit = any(each in name for each in NEEDS_COVER) or rng.random() < 0.7
@@ -247,7 +256,7 @@ def _covers(
         min(1.0, t.section(constants).width * t.sett.per_mm * cloth.width * factor)
         for t, factor in zip((cloth.construction.warp, cloth.construction.weft), own, strict=True)
     )
-    return warp, weft, 1 - (1 - warp) * (1 - weft)
+    return warp, weft, 1 - (1 - warp) * (1 - weft) + cloth.cells
 
 
 def _approve(
@@ -289,7 +298,8 @@ def _look(
         Measured(rng.normal(c, u), u, "1")
         for c, u in zip(_covers(cloth, constants, own), COVERS_U, strict=True)
     )
-    mass = whole.mass(constants) * cloth.mass
+    # weighed as it came: the air of the room is in it
+    mass = whole.mass(constants) * cloth.mass * rng.normal(1, MOISTURE)
     gsm = Measured(mass * rng.normal(1, 0.01), mass * 0.01, "g/m2")
     if cloth.turned:
         ends, picks, warp, weft = picks, ends, weft, warp

@@ -17,6 +17,8 @@ from drawn_deliveries import DEVIATIONS, FINISHED, GREY, Delivery, draw_delivery
 
 from imgcover.cloth.prediction import predict
 from imgcover.verdict.decision import Decision
+from imgcover.verdict.evidence import agrees, evidence_of
+from imgcover.verdict.sheet import sheet_of
 from imgcover.verdict.swatch import judge
 from imgcover.verdict.verdict import Suspect
 
@@ -122,6 +124,19 @@ def test_ties_do_not_do_the_work(wrong: list[Seen]) -> None:
 def test_a_right_delivery_is_seldom_accused(right: list[Seen]) -> None:
     """The stated risk is 2.28 %: of 60, four or more would come once in 20 if it were used up."""
     assert sum(bool(seen.diagnosis) for seen in right) <= 3
+
+
+@pytest.mark.parametrize("at_limits", [False, True])
+def test_the_share_of_false_alarms_keeps_to_the_risk(at_limits: bool) -> None:
+    """Right cloths, in the middle or at the corners of their tolerances, at a stated 5 %."""
+    rng, alarms, drawn, risk = np.random.default_rng(2033), 0, 250, 0.05
+    for _ in range(drawn):
+        delivery = draw_delivery(None, rng, at_limits=at_limits)
+        sheet, evidence = sheet_of(delivery.declaration), evidence_of(delivery.observed)
+        alarms += not agrees(sheet, evidence, risk=risk)
+    # three standard deviations of the drawn share
+    assert alarms / drawn <= risk + 3 * np.sqrt(risk * (1 - risk) / drawn)
+    assert alarms > 0  # a test that never fires would keep any risk
 
 
 def test_a_right_delivery_is_never_refused(right: list[Seen]) -> None:

@@ -153,6 +153,16 @@ def test_without_tolerance_or_figure_cover_is_not_judged_but_compared() -> None:
     verdict = verdict_on(sheet(SETTS), far)
     assert [line.quantity for line in verdict.lines] == [Quantity.ENDS, Quantity.PICKS]
     assert has(verdict.findings, Flag.COVER_DIFFERS_FROM_MODEL)
+    assert verdict.diagnosis
+    hardly = Observed(
+        ends=per_cm(30.0), picks=per_cm(25.0), cover=fraction(expected.value + 2.2 * expected.u)
+    )
+    (finding,) = [
+        each
+        for each in verdict_on(sheet(SETTS), hardly).findings
+        if each.flag is Flag.COVER_DIFFERS_FROM_MODEL
+    ]
+    assert "can still be chance" in finding.remedy
     near = Observed(
         ends=per_cm(30.0), picks=per_cm(25.0), cover=fraction(expected.value + expected.u)
     )
