@@ -38,6 +38,9 @@ class Candidate:
     index : int
         How many times finer the pattern's lattice is than the threads': 1 where every crossing
         looks alike, 2 for plain cloth whose weave shows, n for a regular weave on n.
+    parts : tuple of int
+        (ends, picks): how many times the lattice divides each wave vector. 1 in an evenly woven
+        cloth; dents, ribs, hopsacks and stripes divide it further.
     lattice : Lattice
         The lattice both belong to.
     """
@@ -45,6 +48,7 @@ class Candidate:
     ends: tuple[float, float]
     picks: tuple[float, float]
     index: int
+    parts: tuple[int, int]
     lattice: Lattice
 
     @property
@@ -86,9 +90,10 @@ def candidates(lattices: list[Lattice]) -> list[Candidate]:
             index = abs(at[0] * to[1] - at[1] * to[0])
             if not 0 < index <= LARGEST_REPEAT:
                 continue
-            one = Candidate(ends, picks, index, lattice)
+            parts = (math.gcd(*at), math.gcd(*to))
+            one = Candidate(ends, picks, index, parts, lattice)
             if abs(one.skew) <= STEEPEST_SKEW:
-                found.setdefault(_place(one), one)
+                found.setdefault((*_place(one), *parts, index), one)
     return list(found.values())
 
 

@@ -39,11 +39,10 @@ class Followed:
         Where the lines are there and agree.
     x, y : ndarray, shapes (grid columns,) and (grid rows,), float64
         Centroids of the smoothing, pixels: at the field's edge it reaches inwards only.
-    noise : tuple of float
-        Standard deviation (cycles) of one grid value of ends and of picks, from the lines'
-        disagreement with each other; infinite where only two lines carry both.
-    strength : ndarray, shape of the grid, float32
-        Amplitude of the lines over their median.
+    strength : ndarray, shape of the grid, float64
+        Amplitude of the two leading lines over its usual value.
+    loudest : float
+        Usual amplitude of the strongest line.
     """
 
     ends: NDArray[np.float64]
@@ -52,6 +51,7 @@ class Followed:
     x: NDArray[np.float64]
     y: NDArray[np.float64]
     strength: NDArray[np.float64]
+    loudest: float
 
 
 def follow(
@@ -93,7 +93,8 @@ def follow(
     x, y, share = _centroids(grid, field.shape, smallest, sigma)
     values = values / share
     amplitude = np.abs(values).astype(np.float64)
-    typical = np.median(amplitude, axis=(1, 2), keepdims=True)
+    # three quarters of the field may be bare bed or blurred; the clear rest sets the measure
+    typical = np.quantile(amplitude, 0.75, axis=(1, 2), keepdims=True)
     relative = amplitude / np.maximum(typical, 1e-12)
     pair = _base_pair(lines)
     if pair is None:
@@ -109,7 +110,7 @@ def follow(
     both = np.einsum("ij,jrc->irc", np.linalg.inv(base), unwrapped)
     both, agreement = _all_lines(both, phases, relative, lines, solid)
     valid = solid & agreement
-    return Followed(both[0], both[1], valid, x, y, strength)
+    return Followed(both[0], both[1], valid, x, y, strength, float(typical.max()))
 
 
 def _centroids(

@@ -93,8 +93,12 @@ def identify(field: Field) -> Identified | None:
         if tracked is None:
             return None
         flat, followed, sigma = tracked
-        ends = which_multiple(flat, followed, followed.ends, best.ends, sigma=sigma)
-        picks = which_multiple(flat, followed, followed.picks, best.picks, sigma=sigma)
+        ends = which_multiple(
+            flat, followed, followed.ends, best.ends, sigma=sigma, parts=best.parts[0]
+        )
+        picks = which_multiple(
+            flat, followed, followed.picks, best.picks, sigma=sigma, parts=best.parts[1]
+        )
         if ends.factor == 1 == picks.factor:
             break
         best = _scaled(best, ends.factor, picks.factor)
@@ -128,6 +132,7 @@ def _scaled(one: Candidate, ends: Fraction, picks: Fraction) -> Candidate:
         (one.ends[0] * across, one.ends[1] * across),
         (one.picks[0] * down, one.picks[1] * down),
         max(1, round(one.index * across * down)),
+        (max(1, round(one.parts[0] * across)), max(1, round(one.parts[1] * down))),
         one.lattice,
     )
 

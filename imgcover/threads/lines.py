@@ -73,6 +73,7 @@ def refined(one: Candidate, peaks: list[Peak], *, tolerance: float) -> Candidate
         (float(ends[0]), float(ends[1])),
         (float(picks[0]), float(picks[1])),
         one.index,
+        one.parts,
         one.lattice,
     )
 

@@ -33,6 +33,9 @@ hopsack's half line 1.72 times; this power keeps both below or near the thread's
 AMBIGUOUS = 1.6
 """Two readings whose weights differ by less than this are told apart by their ridges."""
 
+SILENT = 0.12
+"""Share of the strongest line's amplitude below which an axis says nothing of its own."""
+
 PLAIN_RIDGE = 0.12
 """A second ridge counts when it rises by this share of the profile's range."""
 
@@ -105,33 +108,46 @@ def which_multiple(
     vector: tuple[float, float],
     *,
     sigma: float,
+    parts: int,
 ) -> Multiple:
-    """Ask the folded profile whether the wave vector is the thread's, or a part or multiple."""
-    tried = (*SUBMULTIPLES, Fraction(1), *MULTIPLES)
+    """Ask the folded profile whether the wave vector is the thread's, or a part or multiple.
+
+    Parameters
+    ----------
+    parts : int
+        How many times the pattern's lattice divides the wave vector (`Candidate.parts`).
+
+    Notes
+    -----
+    In two-colour plain cloth both lines of an axis are all but silent beside the diagonals; there
+    the lattice alone speaks, and only where it does not divide the vector.
+    """
+    tried = tuple(
+        sorted(
+            {*SUBMULTIPLES, Fraction(1), *MULTIPLES}
+            | {Fraction(k, parts) for k in range(1, 2 * parts)}
+        )
+    )
     values, noise = amplitudes(field, followed, phase, vector, sigma=sigma, multiples=tried)
     size = np.abs(values)
     weight = size * np.array([float(h) for h in tried]) ** STEEPNESS
     own = tried.index(Fraction(1))
-    if size.max() < 5 * noise:
-        # both lines of the axis are silent, as in two-colour plain cloth: the lattice alone speaks
-        return Multiple(Fraction(1), None, float(size[own]), noise)
+    if size.max() < max(5 * noise, SILENT * followed.loudest):
+        rival = None if parts == 1 else Fraction(1, parts)
+        return Multiple(Fraction(1), rival, float(size[own]), noise)
     best = int(weight.argmax())
-    factor, rival = tried[best], None
+    factor = tried[best]
     near = [k for k in range(len(tried)) if k != best and weight[k] * AMBIGUOUS > weight[best]]
-    near = [k for k in near if size[k] > 5 * noise]
     for k in sorted(near, key=lambda k: -weight[k]):
         low, high = sorted((tried[k], factor))
         ratio = high / low
-        if ratio.denominator != 1:
+        if ratio.denominator != 1 or size[k] < 5 * noise:
             continue
         said = _ridges(field, followed, phase, vector, sigma, low)
-        if said == 1 and low != factor:
-            factor, rival = low, None
-        elif said is None:
-            rival = high if factor == low else low
-        elif said > 1 and high != factor:
-            factor = high
-    return Multiple(factor, rival, float(size[tried.index(factor)]), noise)
+        # the stronger line must be borne out by the threads seen, or neither reading is given
+        if said != (1 if factor == low else int(ratio)):
+            return Multiple(factor, tried[k], float(size[best]), noise)
+    return Multiple(factor, None, float(size[best]), noise)
 
 
 def _ridges(
@@ -151,7 +167,7 @@ def _ridges(
     faint = [_count(side, FAINT_RIDGE) for side in (profile, -profile)]
     if max(faint) == 1:
         return 1
-    return max(counts) if min(counts) > 1 or max(counts) > 1 else None
+    return max(counts) if max(counts) > 1 else None
 
 
 def _count(profile: NDArray[np.float64], share: float) -> int:

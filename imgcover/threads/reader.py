@@ -11,13 +11,15 @@ import numpy as np
 from numpy.typing import NDArray
 
 from imgcover.findings import Finding, Flag, found
+from imgcover.repeat.spectrum import spectrum
 from imgcover.threads.counting import Counted, count
-from imgcover.threads.field import LightSource, Region, field_of, whole
+from imgcover.threads.field import LightSource, Region, field_of, whole, windows_of
 from imgcover.threads.follow import Followed
-from imgcover.threads.identify import Identified, identify
+from imgcover.threads.identify import WINDOW, Identified, identify
 from imgcover.threads.profile import amplitudes
 from imgcover.threads.reading import Fork, ThreadReading, ThreadSet, Tile, Track
 from imgcover.threads.regions import Pieces, bow_of, divide, local_density
+from imgcover.threads.witness import streak
 from imgcover.weave import Weave
 
 Direction = Literal["vertical", "horizontal"]
@@ -30,6 +32,25 @@ FEW_PIXELS = 5.0
 
 FEWEST_THREADS = 6.0
 """Threads across the field: with fewer, one thread more or less at the edge is the uncertainty."""
+
+FINEST_WHEN_SMALL = 6.0
+"""Pixels a thread left in a picture made smaller: finer threads are read at full size, and what
+they leave in the smaller picture is not a thread."""
+
+LEAST_SCORE = 5.0
+"""Spectral witnesses (`witness.Evidence.score`): 150 drawn cloths lie at 7.2 to 12, real ones from
+5.4; noise, gravel, foliage and water below 4."""
+
+LEAST_STREAK = 0.34
+"""ln(power) along an axis over the power beside it. The weaker axis of 150 drawn cloths lies at
+0.38 to 5; of knits, bricks, leather, scales and perforated sheets at 0.3 at the most."""
+
+MOST_AGAINST = 0.3
+"""Share of the lines at broken multiples of the threads: 0.14 at the most in drawn cloth."""
+
+OPEN_GRID_LINES, OPEN_GRID_STREAK = 6.0, 0.3
+"""A plain open grid has no weave lines to show and even threads: there the two threads' lines must
+tower over the floor, and the streaks show in windows twice as long."""
 
 NEAR_HALF_RIGHT = 35.0
 """Degrees of turn from which on the nearer axis says little about which set is the warp."""
@@ -76,10 +97,15 @@ def read_threads(
     ThreadReading
         A set that could not be counted is None, and a finding says why.
     """
-    seen = _best_zoom(source, region or whole(source))
-    if seen is None:
+    part = region or whole(source)
+    if min(part.width, part.height) < FEWEST_THREADS * FEWEST_PIXELS:
+        return _refused(found(Flag.TOO_FEW_THREADS))
+    seen = _best_zoom(source, part)
+    if seen is None or seen.evidence.score < LEAST_SCORE:
         return _refused(found(Flag.NO_CROSSING_THREADS))
-    return _read(seen, region or whole(source), warp)
+    if not _crossing(seen):
+        return _refused(found(Flag.NOT_WOVEN))
+    return _read(seen, part, warp)
 
 
 def _best_zoom(source: LightSource, region: Region) -> Identified | None:
@@ -89,9 +115,31 @@ def _best_zoom(source: LightSource, region: Region) -> Identified | None:
         if zoom > 1 and min(region.width, region.height) < 128 * zoom:
             break
         seen = identify(field_of(source, region, zoom))
-        if seen is not None and (best is None or seen.evidence.score > best.evidence.score):
+        if seen is None or (zoom > 1 and min(seen.candidate.pixels) < FINEST_WHEN_SMALL):
+            continue
+        if best is None or seen.evidence.score > best.evidence.score:
             best = seen
     return best
+
+
+def _crossing(seen: Identified) -> bool:
+    """Whether both sets are made of individual threads that run on across the other set.
+
+    Knits, bricks, scales and printed dots repeat in two directions too, but nothing in them goes
+    on unbroken along both.
+    """
+    e = seen.evidence
+    if e.against > MOST_AGAINST:
+        return False
+    if min(e.ends_streak, e.picks_streak) >= LEAST_STREAK:
+        return True
+    if seen.candidate.index > 1 or min(e.ends_line, e.picks_line) < OPEN_GRID_LINES:
+        return False
+    wide = spectrum(windows_of(seen.origin, min(2 * WINDOW, *seen.origin.light.shape)))
+    return (
+        min(streak(wide, seen.candidate.ends), streak(wide, seen.candidate.picks))
+        > OPEN_GRID_STREAK
+    )
 
 
 def _refused(*findings: Finding, tiles: tuple[Tile, ...] = ()) -> ThreadReading:

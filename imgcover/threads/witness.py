@@ -20,6 +20,9 @@ from imgcover.threads.candidates import Candidate
 from imgcover.threads.lattice import index as index_on
 from imgcover.threads.lattice import weights_of
 
+WHOLE = 99.0
+"""Stands for "nothing to look for": higher than any line rises over its floor."""
+
 
 @dataclass(frozen=True, slots=True)
 class Evidence:
@@ -31,6 +34,9 @@ class Evidence:
         ln(power over floor) at the thread frequencies themselves, 0 where nothing stands out.
     ends_second, picks_second : float
         The same at twice the thread frequencies.
+    ends_part, picks_part : float
+        Highest line at a broken multiple of the wave vector that the lattice allows; WHOLE where it
+        allows none.
     ends_above, picks_above : float
         By how much the highest of the lines at two to five times the thread frequency exceeds it.
     against : float
@@ -49,6 +55,8 @@ class Evidence:
     picks_line: float
     ends_second: float
     picks_second: float
+    ends_part: float
+    picks_part: float
     ends_above: float
     picks_above: float
     against: float
@@ -83,7 +91,7 @@ def weigh(
     positions = np.array([(each.fx, each.fy) for each in peaks])
     levels = np.array([each.level for each in peaks])
     weights = weights_of(peaks)
-    streaks: dict[tuple[int, int], float] = {}
+    streaks: dict[int, float] = {}
     heard = []
     for one in these:
         heard.append((one, _hear(one, of, positions, levels, weights, tolerance, streaks)))
@@ -109,7 +117,7 @@ def _hear(
     levels: NDArray[np.float64],
     weights: NDArray[np.float64],
     tolerance: float,
-    streaks: dict[tuple[int, int], float],
+    streaks: dict[int, float],
 ) -> Evidence:
     ends, picks = np.array(one.ends), np.array(one.picks)
     ends_line, ends_level = excess_at(of, ends)
@@ -136,13 +144,15 @@ def _hear(
         "picks_line": picks_line,
         "ends_second": ends_second,
         "picks_second": picks_second,
+        "ends_part": _part_line(of, ends, one.parts[0]),
+        "picks_part": _part_line(of, picks, one.parts[1]),
         "ends_above": _highest_multiple(of, ends) - ends_line,
         "picks_above": _highest_multiple(of, picks) - picks_line,
         "against": float(against / total),
         "beyond": float(weights @ (np.abs(at).max(axis=1) > 1.25) / total),
         "apart": float(apart / total),
-        "ends_streak": _streak(of, ends, streaks),
-        "picks_streak": _streak(of, picks, streaks),
+        "ends_streak": _known_streak(of, one.ends, streaks),
+        "picks_streak": _known_streak(of, one.picks, streaks),
     }
     return Evidence(**evidence, score=_score(one, evidence))
 
@@ -151,25 +161,44 @@ def _highest_multiple(of: Spectrum, frequency: NDArray[np.float64]) -> float:
     return max(excess_at(of, times * frequency)[0] for times in (2, 3, 4, 5))
 
 
-def _streak(
-    of: Spectrum, direction: NDArray[np.float64], known: dict[tuple[int, int], float]
-) -> float:
-    """Median over the ray of ln(power) on it less ln(power) beside it, between lines."""
-    key = (round(math.atan2(direction[1], direction[0]) * 500), 0)
+def _part_line(of: Spectrum, frequency: NDArray[np.float64], parts: int) -> float:
+    if parts == 1:
+        return WHOLE
+    return max(excess_at(of, k / parts * frequency)[0] for k in range(1, parts))
+
+
+def _known_streak(of: Spectrum, vector: tuple[float, float], known: dict[int, float]) -> float:
+    key = round(math.atan2(vector[1], vector[0]) * 500)
     if key not in known:
-        bin_ = of.size / max(of.window)
-        unit = direction / np.hypot(*direction)
-        along = np.arange(4 * bin_, 0.42 * of.size, 0.5 * bin_)
-        offsets = np.array([-7, -6, -5, -4, -3, -0.5, 0, 0.5, 3, 4, 5, 6, 7]) * bin_
-        middle = of.size // 2
-        columns = (
-            middle + np.multiply.outer(offsets, np.full_like(along, -unit[1])) + along * unit[0]
-        )
-        rows = middle + np.multiply.outer(offsets, np.full_like(along, unit[0])) + along * unit[1]
-        power = ndimage.map_coordinates(of.log_power, [rows, columns], order=1)
-        beside = np.delete(power, [5, 6, 7], axis=0).mean(axis=0)
-        known[key] = float(max(np.median(power[k] - beside) for k in (5, 6, 7)))
+        known[key] = streak(of, vector)
     return known[key]
+
+
+def streak(of: Spectrum, vector: tuple[float, float]) -> float:
+    """How far power along a direction exceeds the power beside it, between the lines.
+
+    Parameters
+    ----------
+    of : Spectrum
+        Averaged power.
+    vector : tuple of float
+        A wave vector; only its direction counts.
+
+    Returns
+    -------
+    float
+        Median over the ray of ln(power) on it less the mean ln(power) on rays beside it.
+    """
+    bin_ = of.size / max(of.window)
+    unit = np.array(vector) / math.hypot(*vector)
+    along = np.arange(4 * bin_, 0.42 * of.size, 0.5 * bin_)
+    offsets = np.array([-7, -6, -5, -4, -3, -0.5, 0, 0.5, 3, 4, 5, 6, 7]) * bin_
+    middle = of.size // 2
+    columns = middle - offsets[:, None] * unit[1] + along * unit[0]
+    rows = middle + offsets[:, None] * unit[0] + along * unit[1]
+    power = ndimage.map_coordinates(of.log_power, [rows, columns], order=1)
+    beside = np.delete(power, [5, 6, 7], axis=0).mean(axis=0)
+    return float(max(np.median(power[k] - beside) for k in (5, 6, 7)))
 
 
 _WEAVE_COST = {1: 0.0, 2: 0.0, 3: 0.1, 4: 0.2, 5: 0.3, 8: 0.6}
@@ -184,6 +213,11 @@ def _score(one: Candidate, e: dict[str, float]) -> float:
     streaks = 5 * (min(0.6, max(0, e["ends_streak"])) + min(0.6, max(0, e["picks_streak"])))
     shape = 1.5 * (one.turn / 30) ** 2 + (one.skew / 4) ** 2
     weave = _WEAVE_COST.get(one.index, 1.3 if one.index < 9 else 1.8)
+    weave += sum(
+        0.5 if e[part] > 2.5 else 2.5 for part in ("ends_part", "picks_part") if e[part] < WHOLE
+    )
+    # in drawn cloth with counted threads up to 0.71 of the weight lies beyond the threads' lines
+    weave += 15 * max(0.0, e["beyond"] - 0.68)
     return (
         lines
         + seconds
@@ -196,4 +230,4 @@ def _score(one: Candidate, e: dict[str, float]) -> float:
     )
 
 
-__all__ = ["Evidence", "excess_at", "weigh"]
+__all__ = ["Evidence", "excess_at", "streak", "weigh"]
