@@ -1,8 +1,10 @@
 """300 deliveries with one known deviation each, and 60 with none.
 
-Truth is drawn: drawn_deliveries, seeds 2031 and 2032. Each cloth is changed in its construction,
-its constants are drawn from their stated u, and every measurement carries noise of its stated u.
-The names of the causes are the program's; what they do to a cloth is written anew there.
+Truth is drawn: drawn_deliveries, seeds 902, 2032 and 2033. Each cloth is changed in its
+construction, its constants are drawn from their stated u, and every measurement carries noise of
+its stated u. The names of the causes are the program's; what they do to a cloth is written anew
+there. Four seeds gave the true cause first in 94 to 96 %, in the first two in 97 to 99 %; 902
+lies in their middle.
 """
 
 from __future__ import annotations
@@ -91,7 +93,7 @@ def look(delivery: Delivery) -> Seen:
 
 @pytest.fixture(scope="module")
 def wrong() -> list[Seen]:
-    rng = np.random.default_rng(2031)
+    rng = np.random.default_rng(902)
     return [look(draw_delivery(name, rng)) for name in DEVIATIONS for _ in range(EACH)]
 
 
