@@ -128,7 +128,7 @@ def measure(
         typer.Option(metavar="FILE", help="Write the [reference] of an approved swatch."),
     ] = None,
 ) -> ExitCode:
-    """Measure ends, picks and cover in pictures, and decide whether they are as declared."""
+    """Measure ends, picks and cover, and say if they are as declared."""
     from imgcover.cli.measuring import Asked, measured
 
     said = {

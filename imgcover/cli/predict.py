@@ -32,7 +32,7 @@ def predict(
         typer.Option("--output", "-o", metavar="FILE", help="Write there, whole or not at all."),
     ] = None,
 ) -> ExitCode:
-    """Say the cover, mass and limits that declared constructions lead to."""
+    """Say the cover, mass and limits that a declaration leads to."""
     from imgcover.cloth.comparison import compare
     from imgcover.cloth.declaration import read_declaration
     from imgcover.cloth.prediction import predict as predicted

@@ -7,6 +7,7 @@ the mean cell and the light levels; and the counted ways, row under row, each th
 
 from __future__ import annotations
 
+import contextlib
 from collections.abc import Mapping, Sequence
 from pathlib import Path
 from typing import Any
@@ -120,7 +121,8 @@ def write_overlay(pixels: Pixels, path: Path) -> None:
         beside.write_bytes(encoded.tobytes())
         beside.replace(path)
     except OSError as fault:
-        beside.unlink(missing_ok=True)
+        with contextlib.suppress(OSError):  # the folder itself may be what is missing
+            beside.unlink(missing_ok=True)
         reason = fault.strerror or type(fault).__name__
         raise OutputError(
             str(path), f"cannot be written ({reason})", "choose another folder, or make room"
