@@ -29,7 +29,7 @@ TREATED_MASS_U = 0.03
 UNSAID_SIZE, UNSAID_SIZE_U = 0.08, 0.05
 """Where no size is declared: the middle of the usual 5 to 15 % on grey warps leans to the light."""
 UNDER_GLASS = "count 5 cm of {} under a glass at five places of the roll"
-RAVEL = "ravel {} and weigh a known length of it, conditioned"
+RAVEL = "ravel out {} and weigh a known length of it, conditioned"
 
 
 def causes_in_cloth(sheet: Sheet) -> tuple[Cause, ...]:
