@@ -24,6 +24,11 @@ LEAST_SHARE = 0.22
 """Of the local variance that the pitch must carry for a line to be followed."""
 CLEAR_GAP = 0.14
 """Pitches of full gap, halved: a line's ink may be broken by less, digits stand off by more."""
+LEAST_LIKE = 0.35
+"""Of the wave at the seed that a height must show, in phase, to belong to the same lines."""
+ROUNDED = 0.15
+"""Pitches of smoothing before the pitch is looked for: lines a tenth of a pitch wide spread over
+many harmonics, and no single one of them would carry the variance."""
 WIDEST_GAP = 8
 """Lines that may be missing in a row (dust, a finger, worn places) before it is taken to end."""
 
@@ -69,7 +74,8 @@ class Row:
     """A row of lines as it was followed.
 
     `numbers` and `positions` (px along the frame) of each line; `reach` how far each goes from
-    the common foot at t = 0, px; `strength` its contrast over the usual; `pitch` in px; `light`
+    the common foot at t = 0 up to its first clear gap, px, and `beyond` how far if gaps may be
+    dust; `strength` its contrast over the usual; `pitch` in px; `light`
     whether the lines are lighter than their ground; `zone` the height up to which all lines go.
     """
 
@@ -78,6 +84,7 @@ class Row:
     numbers: NDArray[np.int_]
     positions: NDArray[np.float64]
     reach: NDArray[np.float64]
+    beyond: NDArray[np.float64]
     strength: NDArray[np.float64]
     light: bool
     zone: float
@@ -142,13 +149,18 @@ def _straighten(
     for _ in range(2):
         s = np.arange(-9 * pitch, 9 * pitch)
         t = np.arange(-LONGEST_LINE * pitch / 2, LONGEST_LINE * pitch / 2 + 1)
-        wave, share, growth = _middle_wave(frame.sample(tone, s, t), s, pitch)
+        band = gaussian_filter1d(frame.sample(tone, s, t), ROUNDED * pitch, axis=1)
+        wave, share, growth = _middle_wave(band, s, pitch)
         strong = uniform_filter1d(share, 3) > LEAST_SHARE
         origin = int(np.argmin(np.abs(t)))
         near = np.flatnonzero(strong[max(0, origin - 4) : origin + 5])
         if not len(near):
             return None
         start = max(0, origin - 4) + int(near[np.argmin(np.abs(near - 4))])
+        # cloth beside the lines may share their pitch, but not their phase and strength
+        own = wave[max(0, start - 2) : start + 3].mean()
+        strong &= (wave * np.conj(own)).real > LEAST_LIKE * abs(own) ** 2
+        strong[start] = True
         low, high = _run_around(strong, start)
         if high - low < 3 or (low == 0 and high == len(t) - 1):
             return None
@@ -218,7 +230,8 @@ def _follow(
         return None
     low, high = zone
     middle, half = (low + high) / 2, max(1.5, min((high - low) * 0.4, 2.5 * pitch))
-    profile = frame.sample(tone, s, np.arange(middle - half, middle + half + 0.5)).mean(axis=0)
+    heights = np.arange(middle - half, middle + half + 0.5)
+    profile = gaussian_filter1d(frame.sample(tone, s, heights).mean(axis=0), ROUNDED * pitch)
     wave, share = _demodulate(profile, s, pitch)
     held = share > LEAST_SHARE
     origin = int(np.argmin(np.abs(s)))
@@ -268,7 +281,7 @@ def _measure_lines(
         if usual is None:
             return None
         strength, foot, top = usual
-        reach = _reach(
+        reach, beyond = _reach(
             contrast, strength, t, foot=foot, top=top, clear=max(1.2, CLEAR_GAP * pitch)
         )
         lean = _lean(positions, contrast, strength, t, foot, top)
@@ -285,6 +298,7 @@ def _measure_lines(
         numbers=numbers,
         positions=positions,
         reach=reach - foot,
+        beyond=beyond - foot,
         strength=strength / np.maximum(local, 1e-6),
         light=light,
         zone=top - foot,
@@ -338,16 +352,22 @@ def _reach(
     foot: float,
     top: float,
     clear: float,
-) -> NDArray[np.float64]:
-    """Return the height at which each line ends: where the sum of contrast over half is largest."""
-    local = median_filter(strength, 9, mode="nearest")[:, None]
-    usual = np.maximum(local, 0.3 * np.median(strength))
+) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    """Return where each line ends: where the sum of contrast over half is largest.
+
+    First with lines ended by their first clear gap, then with gaps bridged.
+    """
+    # its own contrast, for wear goes line by line; but noise must not become a line
+    usual = np.maximum(strength, 0.3 * median_filter(strength, 9, mode="nearest"))[:, None]
+    usual = np.maximum(usual, 0.2 * np.median(strength))
     start = int(np.searchsorted(t, (foot + top) / 2))
     above = np.cumsum(np.clip(contrast[:, start:] / usual, -0.5, 1.5) - 0.5, axis=1)
-    # a digit over a line's end must not lengthen it: the first clear gap ends the line
+    # a digit over a line's end must not lengthen it, dust on a line not shorten it: which of the
+    # two a gap is, the pattern of all lines decides
     fallen = np.maximum.accumulate(above, axis=1) - above > clear
     ended = np.maximum.accumulate(fallen, axis=1)
-    return np.asarray(t[start] + np.argmax(np.where(ended, -np.inf, above), axis=1) + 0.5)
+    first = np.argmax(np.where(ended, -np.inf, above), axis=1)
+    return t[start] + first + 0.5, t[start] + np.argmax(above, axis=1) + 0.5
 
 
 def _lean(
@@ -359,7 +379,7 @@ def _lean(
     top: float,
 ) -> float:
     """Return the slope of the line that joins the feet, against the frame, px per px."""
-    local = np.maximum(median_filter(strength, 9, mode="nearest"), 0.3 * np.median(strength))
+    local = np.maximum(strength, 0.3 * np.median(strength))
     start = int(np.searchsorted(t, (foot + top) / 2))
     below = np.clip(contrast[:, start::-1] / local[:, None], -0.5, 1.5) - 0.5
     feet = t[start] - np.argmax(np.cumsum(below, axis=1), axis=1)

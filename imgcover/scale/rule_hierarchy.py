@@ -105,21 +105,27 @@ def match_patterns(row: Row) -> list[Pattern]:
     list of Pattern
         One for each of `PATTERNS` that fits with its lengths in order; cost in scatters.
     """
-    reach, scatter = reach_in_pitches(row)
+    reach, scatter = row.reach / row.pitch, usual_scatter(row)
     if not _crowded(reach, scatter):
         return []
     fitted = []
     for steps, graduations in PATTERNS:
         if steps[-1] <= len(reach):
-            best = _best_phase(row.numbers, reach, scatter, steps, graduations)
+            best = _best_phase(row, steps, graduations)
             if best is not None:
                 fitted.append(best)
     return sorted(fitted, key=lambda each: each.cost)
 
 
-def reach_in_pitches(row: Row) -> tuple[NDArray[np.float64], float]:
-    """Return the lines' reach in pitches, and their usual scatter: never finer than a pixel."""
-    return row.reach / row.pitch, max(0.12, 0.8 / row.pitch)
+def usual_scatter(row: Row) -> float:
+    """Return how far, in pitches, a line's measured end strays: never less than a pixel or so."""
+    return max(0.12, 0.8 / row.pitch)
+
+
+def misfit(row: Row, pattern_lengths: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Return how far, in pitches, each line ends from the length that its level has."""
+    first = np.abs(row.reach / row.pitch - pattern_lengths)
+    return np.minimum(first, np.abs(row.beyond / row.pitch - pattern_lengths))
 
 
 def _crowded(reach: NDArray[np.float64], scatter: float) -> bool:
@@ -134,26 +140,19 @@ def _middle(values: NDArray[np.float64]) -> float:
     return float(np.sort(values)[len(values) // 2]) if len(values) else math.nan
 
 
-def _costs(difference: NDArray[np.float64], scatter: float) -> NDArray[np.float64]:
-    return np.minimum(np.abs(difference) / scatter, LOST)
-
-
 def _best_phase(
-    numbers: NDArray[np.int_],
-    reach: NDArray[np.float64],
-    scatter: float,
-    steps: tuple[int, ...],
-    graduations: tuple[Graduation, ...],
+    row: Row, steps: tuple[int, ...], graduations: tuple[Graduation, ...]
 ) -> Pattern | None:
-    """Fit one pattern at each of its phases; return the cheapest."""
+    """Fit one pattern at each of its likely phases; return the cheapest."""
     best = None
-    for phase in _likely_phases(numbers, reach, steps):
-        level = levels(numbers - phase, steps)
+    reach, scatter = row.reach / row.pitch, usual_scatter(row)
+    for phase in _likely_phases(row.numbers, reach, steps):
+        level = levels(row.numbers - phase, steps)
         lengths = [_middle(reach[level == i]) for i in range(len(steps))]
         rises = [after - before for before, after in zip(lengths, lengths[1:], strict=False)]
         if not min(rises) >= 1.5 * scatter:
             continue
-        each = _costs(reach - np.array(lengths)[level], scatter)
+        each = np.minimum(misfit(row, np.array(lengths)[level]) / scatter, LOST)
         cost = float(each.sum()) + A_LEVEL * len(steps)
         if best is None or cost < best.cost:
             explained = float((each < LOST).mean())
@@ -194,4 +193,4 @@ def levels(numbers: NDArray[np.int_], steps: tuple[int, ...]) -> NDArray[np.int_
     return level
 
 
-__all__ = ["INCH_MM", "Graduation", "Pattern", "levels", "match_patterns", "reach_in_pitches"]
+__all__ = ["INCH_MM", "Graduation", "Pattern", "levels", "match_patterns", "misfit", "usual_scatter"]

@@ -20,7 +20,8 @@ from imgcover.scale.rule_hierarchy import (
     Pattern,
     levels,
     match_patterns,
-    reach_in_pitches,
+    misfit,
+    usual_scatter,
 )
 
 LEAST_EXPLAINED = 0.8
@@ -79,18 +80,34 @@ def prove(row: Row, unit: str) -> Proof | None:
         return None
     rivals = [each for each in patterns if each.cost < patterns[0].cost + MARGIN]
     standing = [each for each in rivals if _recurs(each, row) is Recurrence.SEEN]
-    if not standing:
+    if not standing and _recurs(patterns[0], row) is Recurrence.DISPROVED:
         return None
-    if _recurs(patterns[0], row) is Recurrence.NOT_IN_FRAME:
-        standing.append(patterns[0])
     readings: list[Graduation] = []
     for pattern in standing:
         readings += [each for each in _readings(pattern, unit) if each not in readings]
-    return Proof(tuple(readings), standing[0]) if readings else None
+    if _recurs(patterns[0], row) is Recurrence.NOT_IN_FRAME:
+        readings += [each for each in _unseen(patterns[0], unit) if each not in readings]
+    return Proof(tuple(readings), (standing or patterns)[0]) if readings else None
+
+
+def _unseen(pattern: Pattern, unit: str) -> tuple[Graduation, ...]:
+    """List what a pattern can be whose longest lines are not seen to recur: always two or more."""
+    same = pattern.graduations
+    if unit != "auto" and len(same) == 2:
+        return same
+    twice = {Graduation.MM: Graduation.HALF_MM}
+    binary = (
+        Graduation.EIGHTH_INCH,
+        Graduation.SIXTEENTH_INCH,
+        Graduation.THIRTYSECOND_INCH,
+        Graduation.SIXTYFOURTH_INCH,
+    )
+    twice |= dict(zip(binary, (*binary[1:], Graduation.THIRTYSECOND_INCH), strict=True))
+    return same if len(same) > 1 else (*same, twice.get(same[0], Graduation.MM))
 
 
 def _fits(pattern: Pattern, row: Row) -> bool:
-    _, scatter = reach_in_pitches(row)
+    scatter = usual_scatter(row)
     return (
         pattern.explained >= LEAST_EXPLAINED
         and pattern.cost / len(row.numbers) <= LARGEST_COST
@@ -126,21 +143,24 @@ def _recurs(pattern: Pattern, row: Row) -> Recurrence:
     long, the line between them would be as long as they. Lines cut short by wear or dust are
     passed over.
     """
-    reach, scatter = reach_in_pitches(row)
+    scatter = usual_scatter(row)
     period = pattern.steps[-1]
     halved = period // 2 in pattern.steps
     need = 2 if halved else 3
-    length = dict(zip(row.numbers.tolist(), reach.tolist(), strict=True))
     top, between = pattern.lengths[-1], pattern.lengths[-2]
+    # a faded tip is allowed for, but not half the way down to the next level
+    bound = max(2 * scatter, 0.3 * (top - between))
+    ends = misfit(row, np.full(len(row.numbers), top)) <= bound
+    longest = dict(zip(row.numbers.tolist(), ends.tolist(), strict=True))
+    length = dict(zip(row.numbers.tolist(), (row.reach / row.pitch).tolist(), strict=True))
     tried = 0
     for first in range(int(row.numbers[0]), int(row.numbers[-1]) - (need - 1) * period + 1):
-        chain = [length.get(first + i * period) for i in range(need)]
+        chain = [longest.get(first + i * period) for i in range(need)]
         if (first - pattern.phase) % period or None in chain:
             continue
         tried += 1
-        equal = max(abs(each - top) for each in chain if each is not None) <= 2 * scatter
         middle = length.get(first + period // 2, between) if halved else between
-        if equal and middle < top - 2 * scatter:
+        if all(chain) and middle < top - 2 * scatter:
             return Recurrence.SEEN
     return Recurrence.DISPROVED if tried else Recurrence.NOT_IN_FRAME
 
