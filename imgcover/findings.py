@@ -145,6 +145,16 @@ class Flag(Enum):
         "a rule was found but its scale cannot be trusted",
         "lay the rule flat beside the cloth and take the picture square from above",
     )
+    RULE_READ = (
+        Severity.INFO,
+        "the scale was read from a rule in the picture",
+        "check that the stated lines are those of the rule",
+    )
+    RULE_ONE_WAY = (
+        Severity.INFO,
+        "one rule gives one direction; the other may differ by up to 1 % and carries that",
+        "lay a second rule across the first, or use a device certificate",
+    )
     RULE_TILT_CORRECTED = (
         Severity.INFO,
         "the rule lies slightly aslant to the camera; its graduations show by how much",
