@@ -13,7 +13,7 @@ import hashlib
 import re
 from dataclasses import dataclass
 
-from imgcover.errors import LedgerError
+from imgcover.errors import OptionError
 
 SEAL_DIGITS = 64
 """Hexadecimal digits of a SHA-256."""
@@ -42,7 +42,7 @@ class Head:
 
         Raises
         ------
-        LedgerError
+        OptionError
             When it is not a number, a colon and at least 20 hexadecimal digits.
 
         Examples
@@ -53,7 +53,7 @@ class Head:
         bare = re.sub(r"\s", "", text).lower()
         match = re.fullmatch(rf"(\d+):([0-9a-f]{{{FEWEST_SEAL_DIGITS},{SEAL_DIGITS}}})", bare)
         if match is None:
-            raise LedgerError(
+            raise OptionError(
                 "--head",
                 f"expected NUMBER:SEAL with at least {FEWEST_SEAL_DIGITS} digits, got {text!r}",
                 "copy the head from the foot of a report",

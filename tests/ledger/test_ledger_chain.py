@@ -4,7 +4,7 @@ import hashlib
 
 import pytest
 
-from imgcover.errors import LedgerError
+from imgcover.errors import OptionError
 from imgcover.ledger.chain import EMPTY, Entry, Head, sealed
 from imgcover.ledger.verify import verify
 
@@ -108,5 +108,5 @@ def test_many_faults_are_counted_not_listed():
     "text", ["", "3", "3:abc", "x:" + "a" * 64, "3:" + "g" * 64, "3;" + "a" * 64]
 )
 def test_what_is_no_head_is_refused(text):
-    with pytest.raises(LedgerError, match="foot of a report"):
+    with pytest.raises(OptionError, match="foot of a report"):
         Head.parse(text)
