@@ -124,7 +124,7 @@ def draw_rule(
     drawn = ground * (1.0 - ink) + rule.ink * ink
     if rule.dust:
         _strew(drawn, rule.dust * rule.length * rule.width / 100.0, px_per_mm, generator)
-    return np.clip(drawn, 0.0, 1.0).astype(np.float32)
+    return np.asarray(np.clip(drawn, 0.0, 1.0), dtype=np.float32)
 
 
 def lay_rule(

@@ -18,11 +18,12 @@ from numpy.typing import NDArray
 from imgcover.findings import Finding, Flag, found
 from imgcover.quantity import Measured
 from imgcover.scale.rule_area import rule_corners
-from imgcover.scale.rule_band import Row, follow_row
+from imgcover.scale.rule_band import follow_row
 from imgcover.scale.rule_class import RuleClass, rule_u
 from imgcover.scale.rule_fit import FittedRow, fit_row
 from imgcover.scale.rule_hierarchy import Graduation
 from imgcover.scale.rule_levels import Level, Pictured, levels_of
+from imgcover.scale.rule_lines import Row
 from imgcover.scale.rule_proof import Proof, prove
 from imgcover.scale.rule_seeds import Seed, even_out, find_seeds
 
@@ -158,8 +159,7 @@ def _inside(row: Row, seed: Seed) -> bool:
     tall = float(np.quantile(row.reach, 0.95))
     beyond = 4 * row.pitch
     return bool(
-        -beyond < t < tall + beyond
-        and row.positions[0] - beyond < s < row.positions[-1] + beyond
+        -beyond < t < tall + beyond and row.positions[0] - beyond < s < row.positions[-1] + beyond
     )
 
 
@@ -247,7 +247,9 @@ def _agree(readings: list[RuleReading], refused: list[str]) -> RuleSearch:
     open_ones = [each for each in readings if len(each.graduations) > 1]
     if not readings:
         if refused:
-            return RuleSearch((), (), (found(Flag.RULE_REFUSED, f"a rule shows, but {refused[0]}"),))
+            return RuleSearch(
+                (), (), (found(Flag.RULE_REFUSED, f"a rule shows, but {refused[0]}"),)
+            )
         return RuleSearch((), (), (found(Flag.NO_RULE_FOUND),))
     if not proven:
         return _open(open_ones, areas)

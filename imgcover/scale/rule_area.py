@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable
+
 import cv2
 import numpy as np
 from numpy.typing import NDArray
 
-from imgcover.scale.rule_band import Frame
+from imgcover.scale.rule_frame import Frame
 
 BEYOND_ENDS_MM = 15.0
 """A rule's body goes on past its first and last graduation by up to this."""
@@ -44,7 +46,7 @@ def rule_corners(
     step = max(1.0, px_per_mm / 8)
     t = np.arange(-5 * px_per_mm, WIDEST_MM * px_per_mm, step)
     s = np.arange(first, last, max(1.0, px_per_mm / 4))
-    edge = _edge_strength(frame.sample(tone, s, t), int(round(px_per_mm / step)))
+    edge = _edge_strength(frame.sample(tone, s, t), round(px_per_mm / step))
     near = _strongest(edge, t, (-4.5 * px_per_mm, 0.4 * px_per_mm))
     far = _strongest(edge, t, ((longest_mm + 1.0) * px_per_mm, t[-1]))
     low = (near if near is not None else 0.0) - 1.0 * px_per_mm
@@ -52,6 +54,31 @@ def rule_corners(
     ends = np.array([first, last]) + np.array([-1, 1]) * BEYOND_ENDS_MM * px_per_mm
     x, y = frame.place(ends[[0, 1, 1, 0]], np.array([low, low, high, high]))
     return np.stack([x, y], axis=1)
+
+
+def area_mask(
+    areas: Iterable[NDArray[np.float64]], shape: tuple[int, int], *, factor: int = 1
+) -> NDArray[np.bool_]:
+    """Return where the areas lie.
+
+    Parameters
+    ----------
+    areas : iterable of ndarray, shape (n, 2)
+        Corners in picture pixels, x and y.
+    shape : (int, int)
+        Rows and columns of the mask.
+    factor : int
+        Picture pixels to one of the mask's, as in `Picture.coarse`.
+
+    Returns
+    -------
+    ndarray, shape `shape`, bool
+    """
+    mask = np.zeros(shape, dtype=np.uint8)
+    for corners in areas:
+        seen = np.round((corners - (factor - 1) / 2) / factor).astype(np.int32)
+        cv2.fillPoly(mask, [seen], (1,))
+    return mask.astype(bool)
 
 
 def _edge_strength(band: NDArray[np.float32], width: int) -> NDArray[np.float64]:
@@ -75,4 +102,4 @@ def _strongest(
     return float(t[index]) if edge[index] > SEEN_EDGE else None
 
 
-__all__ = ["rule_corners"]
+__all__ = ["area_mask", "rule_corners"]

@@ -13,7 +13,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from imgcover.repeat.comb import Comb, fit_comb
-from imgcover.scale.rule_band import Frame, Row
+from imgcover.scale.rule_frame import Frame
+from imgcover.scale.rule_lines import Row
 
 LIKENESS = 0.6
 """Correlation with the mean line below which a line is taken for dust, a digit or cloth."""
@@ -83,7 +84,7 @@ def _place_lines(
     """Place each line along the row; tell which look like the row's lines."""
     count = int(min(40, max(3, heights[1] - heights[0])))
     t = np.linspace(*heights, count)
-    half = int(math.ceil(12 * max(1.0, pitch / 24)))
+    half = math.ceil(12 * max(1.0, pitch / 24))
     offsets = np.linspace(-0.5, 0.5, 2 * half + 1) * pitch
     places = start.copy()
     good = np.ones(len(start), dtype=bool)
@@ -93,7 +94,7 @@ def _place_lines(
         profile = profile.reshape(len(start), len(offsets))
         mean = np.median(_normal(profile), axis=0)
         mean = mean - mean.mean()
-        if not (mean[half] > 0) == light or not mean.any():
+        if (mean[half] > 0) != light or not mean.any():
             return places, np.zeros(len(start), dtype=bool)
         shift, likeness = _shift(profile, mean, offsets)
         good = likeness > LIKENESS

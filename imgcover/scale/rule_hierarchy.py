@@ -12,11 +12,12 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass
 from enum import StrEnum
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
 
-from imgcover.scale.rule_band import Row
+from imgcover.scale.rule_lines import Row
 
 INCH_MM = 25.4
 
@@ -149,7 +150,7 @@ def _best_phase(
     for phase in _likely_phases(row.numbers, reach, steps):
         level = levels(row.numbers - phase, steps)
         lengths = [_middle(reach[level == i]) for i in range(len(steps))]
-        rises = [after - before for before, after in zip(lengths, lengths[1:], strict=False)]
+        rises = [after - before for before, after in pairwise(lengths)]
         if not min(rises) >= 1.5 * scatter:
             continue
         each = np.minimum(misfit(row, np.array(lengths)[level]) / scatter, LOST)
@@ -193,4 +194,12 @@ def levels(numbers: NDArray[np.int_], steps: tuple[int, ...]) -> NDArray[np.int_
     return level
 
 
-__all__ = ["INCH_MM", "Graduation", "Pattern", "levels", "match_patterns", "misfit", "usual_scatter"]
+__all__ = [
+    "INCH_MM",
+    "Graduation",
+    "Pattern",
+    "levels",
+    "match_patterns",
+    "misfit",
+    "usual_scatter",
+]

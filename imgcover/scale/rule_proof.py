@@ -14,7 +14,6 @@ from enum import Enum
 import numpy as np
 from scipy.special import gammaln
 
-from imgcover.scale.rule_band import Row
 from imgcover.scale.rule_hierarchy import (
     Graduation,
     Pattern,
@@ -23,6 +22,7 @@ from imgcover.scale.rule_hierarchy import (
     misfit,
     usual_scatter,
 )
+from imgcover.scale.rule_lines import Row
 
 LEAST_EXPLAINED = 0.8
 """Share of a row's lines that must end where the pattern wants them."""
@@ -40,7 +40,8 @@ MM_SHORTEST = 1.75
 has them, and millimetre lines are hardly ever shorter."""
 MM_LONGEST = 2.6
 HALF_MM_SHORTEST = 2.4
-"""Pitches. Twentieths of an inch this tall would be 3 mm; half-millimetre lines are 1.2 at least."""
+"""Pitches. Twentieths of an inch this tall would be 3 mm tall; half-millimetre lines are 1.2
+at least."""
 INCH_SHORTEST_MM = (0.7, 9.0)
 """Outside, a reading as a fraction of an inch would have lines that no rule has."""
 TENTH_TALLEST = 2.8

@@ -83,7 +83,8 @@ def _parallel_spots(
     coherence = np.hypot(xx - yy, 2 * xy) / (xx + yy + 1e-6)
     row, column = np.nonzero(coherence >= LEAST_COHERENCE)
     angle = 0.5 * np.arctan2(2 * xy, xx - yy)[row, column]
-    return np.stack([column, row], axis=1) * float(STRIDE), angle
+    places = np.stack([column, row], axis=1).astype(np.float64) * STRIDE
+    return places, np.asarray(angle, dtype=np.float64)
 
 
 def _periodic(
@@ -188,15 +189,15 @@ def _spread(
         if not free[index]:
             continue
         x, y = places[index]
-        seeds.append(
-            Seed(x, y, float(angles[index]), float(pitches[index]), float(weights[index]))
-        )
+        seeds.append(Seed(x, y, float(angles[index]), float(pitches[index]), float(weights[index])))
         if len(seeds) >= most:
             break
         near = np.array(tree.query_ball_point(places[index], 150.0))
         turn = np.abs((angles[near] - angles[index] + np.pi / 2) % np.pi - np.pi / 2)
         offset = places[near] - places[index]
-        across = np.abs(-np.sin(angles[index]) * offset[:, 0] + np.cos(angles[index]) * offset[:, 1])
+        across = np.abs(
+            -np.sin(angles[index]) * offset[:, 0] + np.cos(angles[index]) * offset[:, 1]
+        )
         free[near[(turn < 0.2) & (across < 12)]] = False
     return seeds
 

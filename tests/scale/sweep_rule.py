@@ -17,6 +17,11 @@ from drawn_rules import Held, bare_case, rule_case
 from imgcover.scale.rule import RuleSearch, find_rules
 
 
+def say(line: str) -> None:
+    """Write one line of the table."""
+    sys.stdout.write(line + "\n")
+
+
 def error(found: RuleSearch, truth: float) -> float | None:
     """Return the relative error of the first reading, or None where it was refused."""
     return found.readings[0].px_per_mm.value / truth - 1 if found.readings else None
@@ -36,12 +41,12 @@ def sweep(with_rule: int, without: int, first: int) -> None:
         kind = "tilted" if "tilted" in case.what else "+".join(case.divisions)
         table[kind].append(wrong)
         if wrong is None:
-            print(f"refused {seed:4d}  {case.what}: {found.findings[0].message}")
+            say(f"refused {seed:4d}  {case.what}: {found.findings[0].message}")
         else:
             reading = found.readings[0]
             inside += abs(wrong) <= 2 * reading.px_per_mm.u / reading.px_per_mm.value
             if abs(wrong) > 0.001:
-                print(f"{100 * wrong:+.3f} % {seed:4d}  {case.what}")
+                say(f"{100 * wrong:+.3f} % {seed:4d}  {case.what}")
     alarms = 0
     for seed in range(first, first + without):
         case = bare_case(seed)
@@ -50,9 +55,10 @@ def sweep(with_rule: int, without: int, first: int) -> None:
         taken += time.perf_counter() - start
         if found.readings or found.areas:
             alarms += 1
-            print(f"FOUND {seed:4d}  {case.what}: {found.findings or found.readings}")
-    print(f"{'kind':<18}{'n':>5}{'refused':>9}{'median':>11}{'worst':>11}{'> 0.3 %':>9}{'> 1 %':>7}")
-    for kind, errors in [*sorted(table.items()), ("all", [e for es in table.values() for e in es])]:
+            say(f"FOUND {seed:4d}  {case.what}: {found.findings or found.readings}")
+    say(f"{'kind':<18}{'n':>5}{'refused':>9}{'median':>11}{'worst':>11}{'> 0.3 %':>9}{'> 1 %':>7}")
+    table = {**dict(sorted(table.items())), "all": [e for es in table.values() for e in es]}
+    for kind, errors in table.items():
         read = np.abs([each for each in errors if each is not None]) * 100
         shown = (
             f"{np.median(read):>9.4f} %{read.max():>9.4f} %"
@@ -60,9 +66,9 @@ def sweep(with_rule: int, without: int, first: int) -> None:
             if len(read)
             else ""
         )
-        print(f"{kind:<18}{len(errors):>5}{len(errors) - len(read):>9}{shown}")
-    print(f"within 2 u: {inside:.0f}; without a rule: {alarms} of {without} taken for one;", end=" ")
-    print(f"{taken / max(1, with_rule + without):.2f} s a picture")
+        say(f"{kind:<18}{len(errors):>5}{len(errors) - len(read):>9}{shown}")
+    say(f"within 2 u: {inside:.0f}; without a rule: {alarms} of {without} taken for one;", end=" ")
+    say(f"{taken / max(1, with_rule + without):.2f} s a picture")
 
 
 if __name__ == "__main__":

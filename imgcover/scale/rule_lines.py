@@ -1,0 +1,169 @@
+"""How far does each line of a row reach?
+
+Each line is compared with the gaps beside it at every height; where it stops being half as strong
+as it was at its foot, it ends.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+
+import numpy as np
+from numpy.typing import NDArray
+from scipy.ndimage import median_filter
+
+from imgcover.scale.rule_frame import Frame, run_around
+
+LONGEST_LINE = 30
+"""Pitches: an inch line on a 1/64 inch rule reaches 25."""
+CLEAR_GAP = 0.14
+"""Pitches of full gap, halved: a line's ink may be broken by less, digits stand off by more."""
+
+
+@dataclass(frozen=True, slots=True)
+class Row:
+    """A row of lines as it was followed.
+
+    `numbers` and `positions` (px along the frame) of each line; `reach` how far each goes from
+    the common foot at t = 0 up to its first clear gap, px, and `beyond` how far if gaps may be
+    dust; `strength` its contrast over the usual; `pitch` in px; `light`
+    whether the lines are lighter than their ground; `zone` the height up to which all lines go.
+    """
+
+    frame: Frame
+    pitch: float
+    numbers: NDArray[np.int_]
+    positions: NDArray[np.float64]
+    reach: NDArray[np.float64]
+    beyond: NDArray[np.float64]
+    strength: NDArray[np.float64]
+    light: bool
+    zone: float
+
+
+def measure_lines(
+    tone: NDArray[np.float32],
+    frame: Frame,
+    numbers: NDArray[np.int_],
+    positions: NDArray[np.float64],
+    light: bool,
+    *,
+    zone: tuple[float, float],
+) -> Row | None:
+    """Measure how far each line goes from the common foot."""
+    pitch = float(np.median(np.diff(positions)))
+    for _ in range(2):
+        t = np.arange(np.floor(zone[0] - 3 * pitch), zone[0] + LONGEST_LINE * pitch)
+        contrast = _contrast(tone, frame, positions, t, pitch) * (1.0 if light else -1.0)
+        usual = _usual(contrast, t, zone)
+        if usual is None:
+            return None
+        strength, foot, top = usual
+        reach, beyond = _reach(
+            contrast, strength, t, foot=foot, top=top, clear=max(1.2, CLEAR_GAP * pitch)
+        )
+        lean = _lean(positions, contrast, strength, t, foot, top)
+        turned = frame.along + np.arctan(lean) * np.sin(frame.upright - frame.along)
+        positions = positions * (
+            np.sin(frame.upright - frame.along) / np.sin(frame.upright - turned)
+        )
+        frame = replace(frame, along=turned)
+        zone = (foot, top)
+    local = median_filter(strength, 15, mode="nearest")
+    return Row(
+        frame=frame.moved(0.0, foot),
+        pitch=pitch,
+        numbers=numbers,
+        positions=positions,
+        reach=reach - foot,
+        beyond=beyond - foot,
+        strength=strength / np.maximum(local, 1e-6),
+        light=light,
+        zone=top - foot,
+    )
+
+
+def _contrast(
+    tone: NDArray[np.float32],
+    frame: Frame,
+    positions: NDArray[np.float64],
+    t: NDArray[np.float64],
+    pitch: float,
+) -> NDArray[np.float64]:
+    """Return line minus gap, shape (lines, heights)."""
+    line = [frame.sample(tone, positions + d * pitch, t) for d in (-0.08, 0.0, 0.08)]
+    gap = [frame.sample(tone, positions + d * pitch, t) for d in (-0.55, -0.45, 0.45, 0.55)]
+    return np.asarray((sum(line) / 3 - sum(gap) / 4).T, dtype=np.float64)  # type: ignore[union-attr]
+
+
+def _usual(
+    contrast: NDArray[np.float64], t: NDArray[np.float64], zone: tuple[float, float]
+) -> tuple[NDArray[np.float64], float, float] | None:
+    """Return each line's contrast where all lines stand, and the foot and top of that zone."""
+    middle = np.median(contrast, axis=0)
+    inside = (t >= zone[0]) & (t <= zone[1])
+    if not inside.any():
+        return None
+    peak = np.quantile(middle[inside], 0.75)
+    start = int(np.flatnonzero(inside)[np.argmax(middle[inside])])
+    if peak <= 0 or middle[start] <= 0:
+        return None
+    low, high = run_around(middle > peak / 2, start)
+    foot = float(t[low]) - _part(middle, low, low - 1, peak / 2)
+    top = float(t[high]) + _part(middle, high, high + 1, peak / 2)
+    strength = np.median(contrast[:, low : high + 1], axis=1)
+    return strength, foot, top
+
+
+def _part(values: NDArray[np.float64], inner: int, outer: int, level: float) -> float:
+    """Return how far from `inner` towards `outer`, 0…1, the values cross the level."""
+    if not 0 <= outer < len(values) or values[inner] <= values[outer]:
+        return 0.5
+    return float((values[inner] - level) / (values[inner] - values[outer]))
+
+
+def _reach(
+    contrast: NDArray[np.float64],
+    strength: NDArray[np.float64],
+    t: NDArray[np.float64],
+    *,
+    foot: float,
+    top: float,
+    clear: float,
+) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    """Return where each line ends: where the sum of contrast over half is largest.
+
+    First with lines ended by their first clear gap, then with gaps bridged.
+    """
+    # its own contrast, for wear goes line by line; but noise must not become a line
+    usual = np.maximum(strength, 0.3 * median_filter(strength, 9, mode="nearest"))[:, None]
+    usual = np.maximum(usual, 0.2 * np.median(strength))
+    start = int(np.searchsorted(t, (foot + top) / 2))
+    above = np.cumsum(np.clip(contrast[:, start:] / usual, -0.5, 1.5) - 0.5, axis=1)
+    # a digit over a line's end must not lengthen it, dust on a line not shorten it: which of the
+    # two a gap is, the pattern of all lines decides
+    fallen = np.maximum.accumulate(above, axis=1) - above > clear
+    ended = np.maximum.accumulate(fallen, axis=1)
+    first = np.argmax(np.where(ended, -np.inf, above), axis=1)
+    return t[start] + first + 0.5, t[start] + np.argmax(above, axis=1) + 0.5
+
+
+def _lean(
+    positions: NDArray[np.float64],
+    contrast: NDArray[np.float64],
+    strength: NDArray[np.float64],
+    t: NDArray[np.float64],
+    foot: float,
+    top: float,
+) -> float:
+    """Return the slope of the line that joins the feet, against the frame, px per px."""
+    local = np.maximum(strength, 0.3 * np.median(strength))
+    start = int(np.searchsorted(t, (foot + top) / 2))
+    below = np.clip(contrast[:, start::-1] / local[:, None], -0.5, 1.5) - 0.5
+    feet = t[start] - np.argmax(np.cumsum(below, axis=1), axis=1)
+    slope = np.subtract.outer(feet, feet)[np.triu_indices(len(feet), len(feet) // 2)]
+    length = np.subtract.outer(positions, positions)[np.triu_indices(len(feet), len(feet) // 2)]
+    return float(np.median(slope / length)) if len(slope) else 0.0
+
+
+__all__ = ["LONGEST_LINE", "Row", "measure_lines"]
