@@ -105,13 +105,14 @@ def _line(line: Mapping[str, Any], lot: Mapping[str, Any], units: Units) -> dict
     scatter = None if mean is None else mean["scatter"]
     return {
         "name": QUANTITIES[line["quantity"]],
-        "declared": f"{near(line['declared'] * how.factor, u)} {how.unit}",
+        "unit": how.unit,
+        "declared": near(line["declared"] * how.factor, u),
         "basis": line["basis"],
         "limits": limits_text(line["lower"], line["upper"], how.factor, u),
         "accepts": _accepted(line, how.factor, u),
-        "measured": figure(measured, units),
+        "measured": figure(measured, units).removesuffix(f" {how.unit}"),
         "n": str(line["n"]),
-        "scatter": "–" if scatter is None else f"{near(scatter * how.factor, u)} {how.unit}",
+        "scatter": "–" if scatter is None else near(scatter * how.factor, u),
         "decision": said_decision(line["decision"]),
         "tone": decision_class(line["decision"]),
     }
