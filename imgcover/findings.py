@@ -186,6 +186,11 @@ class Flag(Enum):
         "two readings of the threads stay possible: not counted",
         "look at the cloth under a glass, or scan it at a higher resolution",
     )
+    THREADS_LOST = (
+        Severity.REFUSAL,
+        "the threads could not be followed over the field: not counted",
+        "give --region around a flat, sharp, evenly lit part",
+    )
     TOO_FEW_THREADS = (
         Severity.REFUSAL,
         "fewer than six threads lie in the picture",

@@ -101,7 +101,8 @@ def spectrum(tiles: list[NDArray[np.float32]]) -> Spectrum:
         if energy > 0:
             half = scipy.fft.rfft2(flat, s=(size, size))
             power += (np.abs(half) ** 2).astype(np.float32) / np.float32(energy)
-    log_power = np.log(_whole(power / np.float32(len(tiles))) + 1e-12).astype(np.float32)
+    mean = np.asarray(power / len(tiles), np.float32)
+    log_power = np.log(_whole(mean) + 1e-12).astype(np.float32)
     return Spectrum(log_power, _floor(log_power), size, (rows, columns), len(tiles))
 
 

@@ -21,9 +21,10 @@ class Counted:
         Mean wave vector, cycles per pixel.
     counted, length_px : float
         Threads, and the distance at right angles to them over which they were counted.
-    noise, irregular : float
+    noise, irregular, broken : float
         Parts of the relative standard uncertainty: disagreement of the phase between lines of
-        sight, and the unknown place of the outermost threads in an uneven set.
+        sight; the unknown place of the outermost threads in an uneven set; threads that begin or
+        end inside the field.
     """
 
     frequency: tuple[float, float]
@@ -31,6 +32,7 @@ class Counted:
     length_px: float
     noise: float
     irregular: float
+    broken: float
 
 
 def count(
@@ -73,7 +75,10 @@ def count(
     )
     noise = math.hypot(cos * error_x, sin * error_y) / density
     irregular = math.hypot(cos * walk_x, sin * walk_y) / density
-    return Counted((fx, fy), density * length, length, noise, irregular)
+    counted = density * length
+    # a thread that begins and ends inside counts in part of the rows only: half of one, at random
+    broken = 0.25 * math.sqrt(breaks(phase, followed.valid)) / counted
+    return Counted((fx, fy), counted, length, noise, irregular, broken)
 
 
 def _edge_to_edge(
@@ -90,7 +95,7 @@ def _edge_to_edge(
     error : float
         Standard error of the slope from the scatter between rows.
     walk : float
-        How far one threads' position strays at one place, as a slope over the reach.
+        How unevenly the threads lie from place to place, as a slope over the reach.
     """
     rows = np.flatnonzero(valid.sum(axis=1) >= 3)
     if rows.size == 0:
@@ -109,11 +114,27 @@ def _edge_to_edge(
     else:
         error = float(np.abs(rest).max()) / reach
     profile = np.ma.masked_array(phase, ~valid)[rows].mean(axis=0)
-    plain = np.ma.filled(profile, np.nan)
-    bends = np.diff(plain, n=2) if plain.size >= 4 else np.zeros(1)
-    bends = bends[np.isfinite(bends)]
-    walk = float(np.sqrt((bends**2).mean() / 2)) * math.sqrt(2.0) / reach if bends.size else 0.0
+    gains = np.diff(np.ma.filled(profile, np.nan))
+    gains = gains[np.isfinite(gains)]
+    walk = float(gains.std()) * math.sqrt(2.0) / reach if gains.size > 1 else 0.0
     return slope, reach, error, walk
 
 
-__all__ = ["Counted", "count"]
+def breaks(phase: NDArray[np.float64], valid: NDArray[np.bool_]) -> int:
+    """Places round which the phase gains a whole thread: a thread begins or ends there.
+
+    Parameters
+    ----------
+    phase : ndarray, shape (rows, columns), float64
+        Cycles; whole cycles do not matter.
+    valid : ndarray, same shape, bool
+        Where the phase is known.
+    """
+    wrapped = [np.diff(phase, axis=axis) for axis in (0, 1)]
+    down, across = (each - np.round(each) for each in wrapped)
+    turn = across[:-1] + down[:, 1:] - across[1:] - down[:, :-1]
+    known = valid[:-1, :-1] & valid[1:, :-1] & valid[:-1, 1:] & valid[1:, 1:]
+    return int((np.abs(np.round(turn)) > 0)[known].sum())
+
+
+__all__ = ["Counted", "breaks", "count"]

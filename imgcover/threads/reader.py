@@ -55,9 +55,12 @@ tower over the floor, and the streaks show in windows twice as long."""
 NEAR_HALF_RIGHT = 35.0
 """Degrees of turn from which on the nearer axis says little about which set is the warp."""
 
-EDGE = 2.2
-"""How far the outermost threads stray, in units of the phase's own bends from place to place:
+EDGE = 1.7
+"""How far the outermost threads stray, in units of the phase's unevenness from place to place:
 fitted so that 2 u covers 95 % of counted truth (tests/threads/sweep_threads.py)."""
+
+LARGEST_U = 0.01
+"""A count looser than this has lost its threads somewhere, and decides nothing."""
 
 
 class Plain:
@@ -167,13 +170,10 @@ def _read(seen: Identified, region: Region, warp: Direction) -> ThreadReading:
             other = (each.frequency[0] * ratio, each.frequency[1] * ratio)
             forks.append(Fork(name, (each.frequency, other)))
         findings += _said_of(name, each, multiple.rival is not None)
-    refused = {each.set_name for each in forks} | {
-        name for name, each in zip(names, (across, down), strict=True) if _too_coarse(each)
-    }
-    kept = {
-        name: None if name in refused else each
-        for name, each in zip(names, (across, down), strict=True)
-    }
+    named = list(zip(names, (across, down), strict=True))
+    refused = {each.set_name for each in forks}
+    refused |= {name for name, each in named if _weak(each)}
+    kept = {name: None if name in refused else each for name, each in named}
     findings += _said_of_field(seen, region, tiles)
     return ThreadReading(
         kept["ends"],
@@ -186,8 +186,8 @@ def _read(seen: Identified, region: Region, warp: Direction) -> ThreadReading:
     )
 
 
-def _too_coarse(each: ThreadSet) -> bool:
-    return each.pixels_a_thread < FEWEST_PIXELS
+def _weak(each: ThreadSet) -> bool:
+    return each.pixels_a_thread < FEWEST_PIXELS or each.u_relative > LARGEST_U
 
 
 def _said_of(name: str, each: ThreadSet, forked: bool) -> list[Finding]:
@@ -199,6 +199,8 @@ def _said_of(name: str, each: ThreadSet, forked: bool) -> list[Finding]:
         said.append(found(Flag.TOO_COARSE, message, remedy))
     elif pixels < FEW_PIXELS:
         said.append(found(Flag.FEW_PIXELS_A_THREAD, f"only {pixels:.1f} pixels a thread ({name})"))
+    if each.u_relative > LARGEST_U:
+        said.append(found(Flag.THREADS_LOST, f"the {name} could not be followed over the field"))
     if forked:
         said.append(found(Flag.TWO_READINGS, f"two readings of the {name} stay possible"))
     return said
@@ -249,7 +251,11 @@ def _set(
 
 
 def _parts(counted: Counted) -> dict[str, float]:
-    return {"phase": counted.noise, "edge": EDGE * counted.irregular}
+    return {
+        "phase": counted.noise,
+        "edge": EDGE * counted.irregular,
+        "breaks": counted.broken,
+    }
 
 
 def _in_picture(tile: Tile, seen: Identified) -> Tile:
