@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import replace
+from dataclasses import dataclass, replace
 from functools import lru_cache
 from pathlib import Path
 
@@ -16,8 +16,11 @@ from imgcover.findings import Finding, Flag, found
 from imgcover.picture.picture import Picture
 from imgcover.picture.reader import read_picture
 from imgcover.request import Options
-from imgcover.scale.choice import ScaleChoice, choose_scale
+from imgcover.scale.choice import choose_scale
+from imgcover.scale.clear import clear_part
 from imgcover.scale.pitch import scale_from
+from imgcover.scale.rule_class import RuleClass
+from imgcover.scale.rule_scale import RuleScale, measure_rules
 from imgcover.scale.scale import Scale
 from imgcover.threads.density import Density, density_of
 from imgcover.threads.field import Region
@@ -30,9 +33,27 @@ SWAPPED_FROM = 5
 """From this orientation on, stored columns became shown rows (TIFF 6.0, tag 274)."""
 
 
-def find_scale(picture: Picture, options: Options) -> ScaleChoice:
+@dataclass(frozen=True, slots=True, eq=False)
+class FoundScale:
+    """What the scale room said.
+
+    Parameters
+    ----------
+    scale : Scale or None
+        The one that counts.
+    findings : tuple of Finding
+    areas : tuple of ndarray, shape (n, 2)
+        Corners, x and y in px, of what lies in the picture to find the scale by: it is no cloth.
+    """
+
+    scale: Scale | None
+    findings: tuple[Finding, ...]
+    areas: tuple[NDArray[np.float64], ...]
+
+
+def find_scale(picture: Picture, options: Options) -> FoundScale:
     """Ask the scale room for everything that was offered to find the scale with."""
-    for name, asked in (("rule", options.rule), ("sheet", options.sheet), ("device", options.device)):
+    for name, asked in (("sheet", options.sheet), ("device", options.device)):
         if asked:
             raise OptionError(f"--{name}", "this version cannot use it yet", "give --pitch")
     stated = None
@@ -43,33 +64,45 @@ def find_scale(picture: Picture, options: Options) -> ScaleChoice:
             pitch_u=options.pitch_u,
             swapped=picture.orientation >= SWAPPED_FROM,
         )
-    return choose_scale([stated], dpi=picture.dpi, use_metadata=options.metadata)
+    rule = RuleScale(None, (), ())
+    if options.rule is not None:
+        rule = measure_rules(picture, unit=options.rule, rule_class=RuleClass(options.rule_class))
+    chosen = choose_scale([stated, rule.scale], dpi=picture.dpi, use_metadata=options.metadata)
+    findings = tuple(dict.fromkeys((*rule.findings, *chosen.findings)))
+    return FoundScale(chosen.scale, findings, rule.areas)
 
 
 def count_threads(
-    picture: Picture, options: Options, *, declared_weave: str | None
+    picture: Picture, options: Options, found_scale: FoundScale, *, declared_weave: str | None
 ) -> ThreadReading:
-    """Ask the threads room for the ends and picks of the region.
+    """Ask the threads room for the ends and picks of the region, where it is cloth.
 
     Parameters
     ----------
     picture : Picture
     options : Options
+    found_scale : FoundScale
+        Its areas are left out.
     declared_weave : str or None
         Handed on as what may break a tie; densities and counts never are.
     """
-    region = options.region
-    if region is not None and not _lies_in(region, picture):
+    region = options.region or Region(0, 0, picture.columns, picture.rows)
+    if not _lies_in(region, picture):
         message = (
             f"the region {region.x},{region.y},{region.width},{region.height} does not lie inside "
             f"the picture of {picture.columns} × {picture.rows} pixels"
         )
         return ThreadReading(None, None, None, (), None, (), (found(Flag.REGION_OUTSIDE, message),))
+    clear = clear_part(
+        found_scale.areas,
+        (picture.rows, picture.columns),
+        within=(region.x, region.y, region.width, region.height),
+    )
     return read_threads(
         picture,
         warp=options.warp,
         weave=None if declared_weave is None else weave(declared_weave),
-        region=region,
+        region=Region(*clear),
     )
 
 
@@ -176,4 +209,12 @@ def _field(picture: Picture, threads: ThreadReading) -> NDArray[np.bool_] | None
     return None if field.all() else field
 
 
-__all__ = ["count_threads", "density_in", "exposure", "find_scale", "measure_cover", "noticed"]
+__all__ = [
+    "FoundScale",
+    "count_threads",
+    "density_in",
+    "exposure",
+    "find_scale",
+    "measure_cover",
+    "noticed",
+]

@@ -24,7 +24,7 @@ from imgcover.cloth.prediction import Prediction, predict
 from imgcover.errors import PictureError
 from imgcover.findings import Finding, Flag, Severity, found
 from imgcover.ledger.canonical import Record
-from imgcover.ledger.provenance import Provenance, file_sha256
+from imgcover.ledger.provenance import Provenance, file_sha256, library_versions
 from imgcover.ledger.record import Answers, Sample, record_of
 from imgcover.picture.reader import read_picture
 from imgcover.request import Request
@@ -78,7 +78,7 @@ def inspect(request: Request) -> Inspection:
         return _judged(_unread(answers, request, fault), request)
     scale = find_scale(picture, options)
     weave = None if declaration is None else declaration.article.weave
-    threads = count_threads(picture, options, declared_weave=weave)
+    threads = count_threads(picture, options, scale, declared_weave=weave)
     density = density_in(threads, scale.scale, options)
     cover = measure_cover(picture, threads, scale.scale, options)
     measured = replace(
@@ -144,6 +144,7 @@ def _asked(request: Request) -> Answers:
         light=options.light,
         warp=options.warp,
         provenance=Provenance(
+            libraries=library_versions(),
             article_sha256=None if declaration is None else declaration.sha256,
             blank=None if blank is None else blank.sha256,
             dark=None if dark is None else dark.sha256,

@@ -37,7 +37,7 @@ class Provenance:
     """
 
     imgcover: str = __version__
-    libraries: Mapping[str, str] = field(default_factory=lambda: library_versions())
+    libraries: Mapping[str, str] = field(default_factory=dict)
     article_sha256: str | None = None
     device: str | None = None
     blank: str | None = None

@@ -7,6 +7,7 @@ from collections.abc import Iterable
 import cv2
 import numpy as np
 from numpy.typing import NDArray
+from scipy.ndimage import minimum_filter1d
 
 from imgcover.scale.rule_frame import Frame
 
@@ -46,7 +47,10 @@ def rule_corners(
     step = max(1.0, px_per_mm / 8)
     t = np.arange(-5 * px_per_mm, WIDEST_MM * px_per_mm, step)
     s = np.arange(first, last, max(1.0, px_per_mm / 4))
-    edge = _edge_strength(frame.sample(tone, s, t), round(px_per_mm / step))
+    width = round(px_per_mm / step)
+    edge = _edge_strength(frame.sample(tone, s, t), width)
+    # outside the picture lies nothing, and the step to nothing is the strongest of all
+    edge[~_in_picture(frame, s, t, tone.shape, width)] = 0.0
     near = _strongest(edge, t, (-4.5 * px_per_mm, 0.4 * px_per_mm))
     far = _strongest(edge, t, ((longest_mm + 1.0) * px_per_mm, t[-1]))
     low = (near if near is not None else 0.0) - 1.0 * px_per_mm
@@ -90,6 +94,20 @@ def _edge_strength(band: NDArray[np.float32], width: int) -> NDArray[np.float64]
     half = max(1, width // 2)
     step[half:-half] = smooth[2 * half :] - smooth[: -2 * half]
     return np.asarray(np.abs(np.median(step, axis=1)), dtype=np.float64)
+
+
+def _in_picture(
+    frame: Frame,
+    s: NDArray[np.float64],
+    t: NDArray[np.float64],
+    shape: tuple[int, ...],
+    width: int,
+) -> NDArray[np.bool_]:
+    """Which heights lie in the picture with all that an edge there is told from."""
+    x, y = frame.place(s[None, :], t[:, None])
+    inside = (x >= 0) & (x <= shape[1] - 1) & (y >= 0) & (y <= shape[0] - 1)
+    # an edge strength is a median over the row: half of it may leave the picture
+    return np.asarray(minimum_filter1d(inside.mean(axis=1) > 0.5, 2 * max(1, width) + 1))
 
 
 def _strongest(
