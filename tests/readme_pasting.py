@@ -13,6 +13,7 @@ import re
 import shlex
 import subprocess
 import sys
+import tempfile
 from pathlib import Path
 
 from imgcover.cli.exits import MEANING
@@ -36,14 +37,18 @@ def told(command: str) -> str:
             else [word]
         )
     ]
-    ended = subprocess.run(
-        [sys.executable, "-m", "imgcover", *arguments],
-        cwd=ROOT,
-        env=environment,
-        capture_output=True,
-        text=True,
-        encoding="utf-8",
-    )
+    with tempfile.TemporaryDirectory() as place:
+        # some commands write beside them, and the project's folder is no place for that
+        for each in ("samples-synthetic", "calibration"):
+            (Path(place) / each).symlink_to(ROOT / each)
+        ended = subprocess.run(
+            [sys.executable, "-m", "imgcover", *arguments],
+            cwd=place,
+            env=environment,
+            capture_output=True,
+            text=True,
+            encoding="utf-8",
+        )
     return ended.stdout
 
 
