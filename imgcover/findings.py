@@ -160,6 +160,42 @@ class Flag(Enum):
         "the rule lies slightly aslant to the camera; its graduations show by how much",
         "take the picture square from above, or scan it",
     )
+    # scale: sheet and certificate
+    NO_SHEET_FOUND = (
+        Severity.WARNING,
+        "no scale sheet was found in the picture",
+        "print one with: imgcover calibrate sheet -o sheet.pdf",
+    )
+    SHEET_NOT_MEASURED = (
+        Severity.WARNING,
+        "the scale sheet shows, but its bars were not measured: printers do not keep their scale",
+        "measure both bars with a steel rule and give --bars A,B",
+    )
+    SHEET_REFUSED = (
+        Severity.WARNING,
+        "the scale sheet shows, but its scale cannot be trusted",
+        "lay it flat and take the picture square from above",
+    )
+    CERTIFICATE_EXPIRED = (
+        Severity.WARNING,
+        "the device's certificate is not valid today",
+        "scan the sheet again: imgcover calibrate check, or calibrate read for a new one",
+    )
+    CERTIFICATE_OTHER_RESOLUTION = (
+        Severity.WARNING,
+        "the device's certificate was made at another resolution",
+        "make a certificate at the resolution you scan at",
+    )
+    CERTIFICATE_RESOLUTION_UNCHECKED = (
+        Severity.INFO,
+        "the file states no resolution: that it is the certificate's was taken on trust",
+        "keep the resolution in the file when saving",
+    )
+    CERTIFICATE_AXES_UNKNOWN = (
+        Severity.WARNING,
+        "it cannot be told which of the certificate's axes is which: their mean was used",
+        "measure the file as the scanner wrote it",
+    )
     # threads
     TOO_COARSE = (
         Severity.REFUSAL,
