@@ -7,7 +7,7 @@ from typing import Annotated
 import typer
 
 from imgcover import __version__
-from imgcover.cli import audit, draw, ledger, measure, predict
+from imgcover.cli import audit, calibrate, draw, ledger, measure, predict
 
 EPILOG = "Exit codes, findings and what no picture can tell: README.md."
 
@@ -27,6 +27,7 @@ def assembled() -> typer.Typer:
     app.command("measure", epilog=measure.EXAMPLES)(measure.measure)
     app.command("predict", epilog=predict.EXAMPLES)(predict.predict)
     app.command("audit", epilog=audit.EXAMPLES)(audit.audit)
+    app.add_typer(calibrate.assembled(), name="calibrate")
     app.add_typer(ledger.assembled(), name="ledger")
     app.command("draw", epilog=draw.EXAMPLES)(draw.draw)
     return app

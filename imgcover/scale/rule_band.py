@@ -117,7 +117,7 @@ def _straighten(
 def _middle_wave(
     band: NDArray[np.float32], s: NDArray[np.float64], pitch: float
 ) -> tuple[NDArray[np.complex128], NDArray[np.float64], NDArray[np.complex128]]:
-    """Return each height's wave at the pitch, its share of the variance, its turn over 4 pitches."""
+    """Return each height's wave at the pitch, its share of the variance, its turn in 4 pitches."""
     reach = 7 * pitch
     window = np.where(np.abs(s) < reach, np.cos(np.pi * s / (2 * reach)) ** 2, 0.0)
     window /= window.sum()
