@@ -124,17 +124,20 @@ def check_scans(
         measured = parse_bars(bars, u=bars_u, rule_class=RuleClass(rule_class))
     taken = _take(scans, tone=tone or certificate.tone)
     if taken.dpi is not None:
-        for claimed, known in zip(taken.dpi, certificate.resolution_dpi, strict=True):
-            if abs(claimed / known - 1) > FURTHEST:
+        for claimed, nominal in zip(taken.dpi, certificate.resolution_dpi, strict=True):
+            if abs(claimed / nominal - 1) > FURTHEST:
                 raise ScaleError(
                     scans[0].name,
-                    f"was scanned at {claimed:g} dpi, the certificate is for {known:g}",
+                    f"was scanned at {claimed:g} dpi, the certificate is for {nominal:g}",
                     "scan the sheet at the certificate's resolution",
                 )
-    reading = _device(taken, measured)
+    known = certificate.sheet_errors if bars is None else None
+    reading = _device(taken, measured, known)
     if reading is None:
         return ExitCode.UNDECIDED
-    checked = check_certificate(certificate, reading, on=datetime.now(UTC).date())
+    checked = check_certificate(
+        certificate, reading, same_sheet=known is not None, on=datetime.now(UTC).date()
+    )
     with opened(None) as write:
         write(f"{certificate.name}: {checked.decision}\n")
         for reason in checked.reasons:
@@ -176,9 +179,11 @@ def _take(scans: Sequence[Path], *, tone: str | None) -> _Taken:
     return taken
 
 
-def _device(taken: _Taken, bars: Bars) -> DeviceReading | None:
+def _device(
+    taken: _Taken, bars: Bars, known: tuple[float, float, float] | None = None
+) -> DeviceReading | None:
     try:
-        return read_device(taken.corners, bars)
+        return read_device(taken.corners, bars, known=known)
     except SheetRefused as why:
         tell(f"refused: {why}")
         return None

@@ -44,6 +44,8 @@ class _Pitch(_Part):
     y: float = Field(gt=0)
     y_u: float = Field(ge=0)
     ratio_u: float = Field(ge=0)
+    x_own_u: float = Field(ge=0)
+    y_own_u: float = Field(ge=0)
 
 
 class _Shear(_Part):
@@ -69,6 +71,7 @@ class _Evidence(_Part):
     scans_sha256: tuple[str, ...] = Field(min_length=1)
     turned: bool
     corners: int = Field(gt=0)
+    sheet_errors: tuple[float, float, float]
 
 
 class _Content(_Part):
@@ -105,6 +108,10 @@ class Certificate:
     made, valid_until : date
     bars : Bars
         Of the sheet it was made with.
+    sheet_errors : (float, float, float) or None
+        That sheet's own errors; None where its scans lay one way only.
+    u_own : (float, float)
+        Relative standard uncertainties of x and y but for what is common to scans of one sheet.
     scans_sha256 : tuple of str
         The scans it rests on.
     sha256 : str
@@ -122,6 +129,8 @@ class Certificate:
     made: date
     valid_until: date
     bars: Bars
+    sheet_errors: tuple[float, float, float] | None
+    u_own: tuple[float, float]
     scans_sha256: tuple[str, ...]
     sha256: str
 
@@ -179,6 +188,8 @@ def read_certificate(source: Path | bytes, *, name: str) -> Certificate:
         dates.made,
         dates.valid_until,
         bars,
+        content.evidence.sheet_errors if content.evidence.turned else None,
+        (pitch.x_own_u / pitch.x, pitch.y_own_u / pitch.y),
         content.evidence.scans_sha256,
         hashlib.sha256(data).hexdigest(),
     )
@@ -221,6 +232,8 @@ def write_certificate(
             "y": reading.y.value,
             "y_u": reading.y.u,
             "ratio_u": reading.ratio_u,
+            "x_own_u": reading.u_own[0] * reading.x.value,
+            "y_own_u": reading.u_own[1] * reading.y.value,
         },
         "shear": {"rad": reading.shear.value, "u": reading.shear.u},
         "distortion": {
@@ -236,14 +249,19 @@ def write_certificate(
             "scans_sha256": list(scans_sha256),
             "turned": reading.apart,
             "corners": reading.corners,
+            "sheet_errors": list(reading.sheet_errors),
         },
     }
     parts = []
     for title, table in content.items():
         lines = [f"{key} = {_toml(value)}" for key, value in table.items()]
         parts.append("\n".join(([f"[{title}]"] if title else []) + lines))
-    remark = "# Pitch in pixels a millimetre along the stored file's x and y; u is one standard\n"
-    return remark + "# uncertainty. Made by imgcover calibrate read.\n" + "\n\n".join(parts) + "\n"
+    remark = (
+        "# Pitch in pixels a millimetre along the stored file's x and y; u is one standard\n"
+        "# uncertainty, own_u without what all scans of one sheet have in common.\n"
+        "# Made by imgcover calibrate read.\n"
+    )
+    return remark + "\n\n".join(parts) + "\n"
 
 
 def _toml(value: Any) -> str:

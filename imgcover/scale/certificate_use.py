@@ -20,6 +20,7 @@ U_OTHER_RESOLUTION = 0.01 / math.sqrt(3)
 carriage may step differently there, by as much as two axes differ."""
 HOLDS_WITHIN, FAILS_BEYOND = 2.0, 3.0
 """Standard uncertainties of the difference between check and certificate."""
+AXES = ("x", "y")
 TOO_WEAK = 0.005
 """Relative standard uncertainty of that difference above which a check says nothing."""
 
@@ -115,7 +116,7 @@ class CertificateCheck:
 
 
 def check_certificate(
-    certificate: Certificate, reading: DeviceReading, *, on: date
+    certificate: Certificate, reading: DeviceReading, *, same_sheet: bool, on: date
 ) -> CertificateCheck:
     """Hold a new reading of the sheet against a certificate.
 
@@ -124,6 +125,9 @@ def check_certificate(
     certificate : Certificate
     reading : DeviceReading
         From new scans at the certificate's resolution.
+    same_sheet : bool
+        Whether it was read with the certificate's own sheet, its errors known from turned scans:
+        what its bars leave uncertain is then common to both and does not count.
     on : date
         An expired certificate is undecided at best.
 
@@ -135,10 +139,12 @@ def check_certificate(
         to see half a per cent, undecided.
     """
     outcomes, reasons = [], []
-    pairs = (("x", certificate.x, reading.x), ("y", certificate.y, reading.y))
-    for axis, old, new in pairs:
+    pairs = ((certificate.x, reading.x), (certificate.y, reading.y))
+    for index, (old, new) in enumerate(pairs):
         difference = new.value / old.value - 1
         u = math.hypot(old.u / old.value, new.u / new.value)
+        if same_sheet:
+            u = math.hypot(certificate.u_own[index], reading.u_own[index])
         if u > TOO_WEAK:
             outcomes.append(Holding.OPEN)
         elif abs(difference) <= HOLDS_WITHIN * u:
@@ -147,8 +153,8 @@ def check_certificate(
             far = abs(difference) > FAILS_BEYOND * u
             outcomes.append(Holding.FAILS if far else Holding.OPEN)
         reasons.append(
-            f"{axis}: {new.value:.5g} px/mm against {old.value:.5g}, {100 * difference:+.3f} % "
-            f"where {100 * HOLDS_WITHIN * u:.3f} % is uncertain: {outcomes[-1]}"
+            f"{AXES[index]}: {new.value:.5g} px/mm against {old.value:.5g}, "
+            f"{100 * difference:+.3f} % where {100 * HOLDS_WITHIN * u:.3f} % is uncertain: {outcomes[-1]}"
         )
     if Holding.FAILS in outcomes:
         return CertificateCheck(Holding.FAILS, tuple(reasons))

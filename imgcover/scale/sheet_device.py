@@ -58,6 +58,12 @@ class DeviceReading:
         Whether the sheet's own errors were parted from the bed's by turned scans.
     corners : int
         Used in all.
+    sheet_errors : (float, float, float)
+        The sheet's own relative errors across and down beyond its bars' readings, and half its
+        skew, rad: what turned scans of it agree on.
+    u_own : (float, float)
+        Relative standard uncertainties of x and y but for what is common to all scans of this
+        sheet: for comparing two days' scans of it.
     """
 
     x: Measured
@@ -67,6 +73,8 @@ class DeviceReading:
     bed: BedMap
     apart: bool
     corners: int
+    sheet_errors: tuple[float, float, float]
+    u_own: tuple[float, float]
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -81,7 +89,12 @@ class _Scan:
     missed: NDArray[np.float64]
 
 
-def read_device(scans: Sequence[SheetCorners], bars: Bars) -> DeviceReading:
+def read_device(
+    scans: Sequence[SheetCorners],
+    bars: Bars,
+    *,
+    known: tuple[float, float, float] | None = None,
+) -> DeviceReading:
     """Read a device from scans of one sheet.
 
     Parameters
@@ -90,6 +103,8 @@ def read_device(scans: Sequence[SheetCorners], bars: Bars) -> DeviceReading:
         One or more, at one resolution.
     bars : Bars
         The sheet's bars as measured.
+    known : (float, float, float), optional
+        The sheet's own errors from earlier, turned scans of it.
 
     Returns
     -------
@@ -102,7 +117,8 @@ def read_device(scans: Sequence[SheetCorners], bars: Bars) -> DeviceReading:
         explain.
     """
     read = [_affine(each, bars) for each in scans]
-    terms, covariance = _axes(read, bars)
+    u_sheet = (*bars.u_stretch, U_PRINT_SKEW) if known is None else (REPEAT,) * 3
+    terms, covariance = _axes(read, known or (0.0, 0.0, 0.0), u_sheet)
     bed = map_bed(
         [each.seen @ np.linalg.inv(each.device).T for each in read],
         [each.drawn for each in read],
@@ -127,6 +143,11 @@ def read_device(scans: Sequence[SheetCorners], bars: Bars) -> DeviceReading:
         bed,
         _turned(read),
         sum(len(each.seen) for each in read),
+        (float(terms[3]), float(terms[4]), float(terms[5])),
+        (
+            math.hypot(REPEAT / math.sqrt(len(read)), local[0]),
+            math.hypot(REPEAT / math.sqrt(len(read)), local[1]),
+        ),
     )
 
 
@@ -163,14 +184,17 @@ def _affine(corners: SheetCorners, bars: Bars) -> _Scan:
     return _Scan(logs, turn, device, corners.seen[kept], mm[kept], missed)
 
 
-def _axes(read: list[_Scan], bars: Bars) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+def _axes(
+    read: list[_Scan], sheet: tuple[float, float, float], u_sheet: tuple[float, ...]
+) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
     """Solve for ln x, ln y and shear of the device beside the sheet's own linear errors.
 
     Notes
     -----
     With E the sheet's small symmetric error (a, b on the diagonal, g off it) and R the scan's
     turn, F = R E Rᵀ shifts ln x by F₁₁, ln y by F₂₂ and the shear by 2 F₁₂. The bars' readings
-    hold a and b at zero within their uncertainties; g is held by `U_PRINT_SKEW`.
+    hold a and b at zero within their uncertainties, and `U_PRINT_SKEW` holds g, unless all three
+    are known from before.
     """
     rows, values, weights = [], [], []
     for each in read:
@@ -182,10 +206,9 @@ def _axes(read: list[_Scan], bars: Bars) -> tuple[NDArray[np.float64], NDArray[n
         ]
         values += each.logs.tolist()
         weights += [1 / max(REPEAT, _u_fit(each))] * 3
-    u_a, u_b = bars.u_stretch
-    for index, u in enumerate((u_a, u_b, U_PRINT_SKEW)):
+    for index, (value, u) in enumerate(zip(sheet, u_sheet, strict=True)):
         rows.append([1.0 if column == 3 + index else 0.0 for column in range(6)])
-        values.append(0.0)
+        values.append(value)
         weights.append(1 / u)
     matrix = np.array(rows) * np.array(weights)[:, None]
     target = np.array(values) * np.array(weights)
