@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
+from datetime import UTC, datetime
 from functools import lru_cache
 from pathlib import Path
 
@@ -12,16 +13,19 @@ from numpy.typing import NDArray
 from imgcover.cover.reader import read_cover
 from imgcover.cover.reading import CoverReading, Lattice, Pitch
 from imgcover.errors import OptionError, PictureError
-from imgcover.findings import Finding, Flag, found
+from imgcover.findings import Finding, Flag, found, has
 from imgcover.picture.picture import Picture
 from imgcover.picture.reader import read_picture
 from imgcover.request import Options
+from imgcover.scale.certificate import Certificate, find_certificate, read_certificate
+from imgcover.scale.certificate_use import scale_from_certificate
 from imgcover.scale.choice import choose_scale
 from imgcover.scale.clear import clear_part
 from imgcover.scale.pitch import scale_from
 from imgcover.scale.rule_class import RuleClass
 from imgcover.scale.rule_scale import RuleScale, measure_rules
 from imgcover.scale.scale import Scale
+from imgcover.scale.sheet_scale import SheetScale, measure_sheet
 from imgcover.threads.density import Density, density_of
 from imgcover.threads.field import Region
 from imgcover.threads.reader import read_threads
@@ -52,24 +56,65 @@ class FoundScale:
 
 
 def find_scale(picture: Picture, options: Options) -> FoundScale:
-    """Ask the scale room for everything that was offered to find the scale with."""
-    for name, asked in (("sheet", options.sheet), ("device", options.device)):
-        if asked:
-            raise OptionError(f"--{name}", "this version cannot use it yet", "give --pitch")
-    stated = None
-    if options.pitch is not None:
-        stated = scale_from(
-            options.pitch,
-            options.pitch_y,
-            pitch_u=options.pitch_u,
-            swapped=picture.orientation >= SWAPPED_FROM,
-        )
-    rule = RuleScale(None, (), ())
+    """Ask the scale room for everything that was offered to find the scale with.
+
+    Raises
+    ------
+    CertificateError
+        When the device's certificate cannot be read.
+    """
+    rule, sheet = RuleScale(None, (), ()), SheetScale(None, (), ())
     if options.rule is not None:
         rule = measure_rules(picture, unit=options.rule, rule_class=RuleClass(options.rule_class))
-    chosen = choose_scale([stated, rule.scale], dpi=picture.dpi, use_metadata=options.metadata)
-    findings = tuple(dict.fromkeys((*rule.findings, *chosen.findings)))
-    return FoundScale(chosen.scale, findings, rule.areas)
+    if options.sheet:
+        sheet = measure_sheet(picture, options.bars)
+    chosen = choose_scale(
+        [_certified(picture, options), rule.scale, sheet.scale, _stated(picture, options)],
+        dpi=picture.dpi,
+        use_metadata=options.metadata,
+    )
+    findings = tuple(dict.fromkeys((*rule.findings, *sheet.findings, *chosen.findings)))
+    return FoundScale(chosen.scale, findings, (*rule.areas, *sheet.areas))
+
+
+def certificate(device: str | None) -> Certificate | None:
+    """Read the certificate that names the device, or is the file.
+
+    Raises
+    ------
+    CertificateError
+        When it cannot be read or is none.
+    """
+    if device is None:
+        return None
+    path = find_certificate(device)
+    return read_certificate(path, name=path.name)
+
+
+def _certified(picture: Picture, options: Options) -> Scale | None:
+    held = certificate(options.device)
+    if held is None:
+        return None
+    unsure = has(picture.findings, Flag.ORIENTATION_UNKNOWN) or has(
+        picture.findings, Flag.EXIF_UNREADABLE
+    )
+    return scale_from_certificate(
+        held,
+        dpi=picture.dpi,
+        swapped=None if unsure else picture.orientation >= SWAPPED_FROM,
+        on=datetime.now(UTC).date(),
+    )
+
+
+def _stated(picture: Picture, options: Options) -> Scale | None:
+    if options.pitch is None:
+        return None
+    return scale_from(
+        options.pitch,
+        options.pitch_y,
+        pitch_u=options.pitch_u,
+        swapped=picture.orientation >= SWAPPED_FROM,
+    )
 
 
 def count_threads(

@@ -13,6 +13,7 @@ from dataclasses import dataclass, replace
 from datetime import UTC, datetime
 
 from imgcover.asking import (
+    certificate,
     count_threads,
     density_in,
     exposure,
@@ -67,7 +68,7 @@ def inspect(request: Request) -> Inspection:
 
     Raises
     ------
-    OptionError
+    OptionError, CertificateError
         When a file that an option names cannot be used.
     """
     options, declaration = request.options, request.declaration
@@ -138,6 +139,7 @@ def _asked(request: Request) -> Answers:
     """What is known of a picture before it is opened."""
     options, declaration = request.options, request.declaration
     blank, dark = (exposure(path, options.tone) for path in (options.blank, options.dark))
+    device = certificate(options.device)
     return Answers(
         name=request.name,
         sample=_sample(request),
@@ -146,6 +148,7 @@ def _asked(request: Request) -> Answers:
         provenance=Provenance(
             libraries=library_versions(),
             article_sha256=None if declaration is None else declaration.sha256,
+            device=None if device is None else device.sha256,
             blank=None if blank is None else blank.sha256,
             dark=None if dark is None else dark.sha256,
             options=options.record(),

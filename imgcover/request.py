@@ -15,7 +15,10 @@ from imgcover.cloth.declaration import Declaration
 from imgcover.errors import OptionError
 from imgcover.ledger.record import Sample
 from imgcover.quantity import Measured
+from imgcover.scale.bars import parse_bars
 from imgcover.scale.pitch import StatedPitch, parse_pitch, parse_pitch_u
+from imgcover.scale.rule_class import RuleClass
+from imgcover.scale.sheet import Bars
 from imgcover.threads.field import Region
 from imgcover.tone import Tone
 
@@ -27,6 +30,8 @@ Backing = Literal["light", "dark"]
 STATED_GSM_U = 0.01
 """Relative u of a mass where none is stated: a cut of 100 cm² is cut to about half a percent, and
 moisture moves cotton as much again."""
+STATED_BARS_U_MM = 0.15
+"""Reading both ends of a bar on a steel rule to a tenth of a millimetre or so."""
 MOST_GSM = 5_000.0
 """g/m²: the heaviest belting; more is a figure in another unit."""
 HIGHEST_RISK = 0.5
@@ -45,8 +50,8 @@ class Options:
         The stated scale along the stored file's columns and rows, and its relative u.
     rule, rule_class : str or None, int
         Whether a rule is to be found, of which unit and class.
-    sheet : bool
-        Whether the printed sheet is to be found.
+    sheet, bars : bool, Bars or None
+        Whether the printed sheet is to be found, and its bars as measured.
     device : str or None
         Name or path of the device's certificate.
     metadata : bool
@@ -73,6 +78,7 @@ class Options:
     rule: RuleUnit | None = None
     rule_class: int = 2
     sheet: bool = False
+    bars: Bars | None = None
     device: str | None = None
     metadata: bool = False
     tone: Tone | None = None
@@ -94,6 +100,7 @@ class Options:
             "rule": self.rule,
             "rule_class": self.rule_class if self.rule is not None else None,
             "sheet": self.sheet,
+            "bars": None if self.bars is None else [self.bars.a, self.bars.b, self.bars.u],
             "metadata": self.metadata,
             "tone": None if self.tone is None else str(self.tone),
             "backing": self.backing,
@@ -155,6 +162,7 @@ def read_options(words: Mapping[str, str]) -> Options:
         rule=_choice(said, "rule", RuleUnit),
         rule_class=int(_choice(said, "rule-class", Literal["1", "2", "3"]) or 2),
         sheet=said.get("sheet") == "yes",
+        bars=_bars(said),
         device=said.get("device"),
         metadata=said.get("metadata") == "yes",
         tone=_tone(said.get("tone")),
@@ -193,6 +201,20 @@ def _number(name: str, text: str, *, low: float, high: float, example: str) -> f
             f"--{name}", f"{text!r} is not a number above {low:g} and below {high:g}", example
         )
     return value
+
+
+def _bars(said: Mapping[str, str]) -> Bars | None:
+    """The bars of the printed sheet, read with a rule of the stated class."""
+    text, u_text = said.get("bars"), said.get("bars-u")
+    if said.get("sheet") != "yes" or text is None:
+        for name in ("bars", "bars-u"):
+            if name in said:
+                raise OptionError(f"--{name}", "it goes with --sheet and --bars", "give both")
+        return None
+    u = STATED_BARS_U_MM
+    if u_text is not None:
+        u = _number("bars-u", u_text, low=0.0, high=5.0, example="write mm: --bars-u 0.15")
+    return parse_bars(text, u=u, rule_class=RuleClass(int(said.get("rule-class", "2"))))
 
 
 def _gsm(text: str | None, u_text: str | None) -> Measured | None:

@@ -60,6 +60,13 @@ def measure(
     sheet: Annotated[
         bool, typer.Option("--sheet", help="Read the scale from the printed sheet in the picture.")
     ] = False,
+    bars: Annotated[
+        str | None,
+        typer.Option(metavar="A,B", help="The sheet's bars as a steel rule measures them, mm."),
+    ] = None,
+    bars_u: Annotated[
+        str | None, typer.Option(metavar="MM", help="Standard uncertainty of reading a bar.")
+    ] = None,
     device: Annotated[
         str | None,
         typer.Option(metavar="NAME|FILE", help="Certificate of the device that took the picture."),
@@ -140,6 +147,8 @@ def measure(
         "rule": rule,
         "rule-class": rule_class,
         "sheet": "yes" if sheet else None,
+        "bars": bars,
+        "bars-u": bars_u,
         "device": device,
         "metadata": "yes" if metadata else None,
         "tone": tone,
