@@ -13,6 +13,8 @@ HOLDS: dict[Flag, frozenset[Quantity]] = {
     Flag.RESTS_ON_DECLARED_WEAVE: SETTS,
     Flag.WARP_UNCERTAIN: SETTS,
     Flag.SCALES_DISAGREE: SETTS,
+    Flag.CERTIFICATE_EXPIRED: SETTS,
+    Flag.CERTIFICATE_OTHER_RESOLUTION: SETTS,
 }
 """Each finding, and the lines that it keeps open."""
 
