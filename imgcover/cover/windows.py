@@ -13,6 +13,10 @@ from imgcover.cover.reading import Lattice, Lit
 
 PIXELS_READ = 1_500_000
 """About this many pixels are measured: 0.1 s a step, and far more pores than the u needs."""
+PIXELS_FITTED = 60_000
+"""About this many pixels are fitted pore by pore: hundreds of pores, a third of a second."""
+PART_SIDE, PART_CELLS, FEWEST_PARTS = 48, 7, 4
+"""Sides of a fitted part, px and threads, and how many at least: the light is fitted as well."""
 WINDOW_SIDE = 512
 """Side of one window of a large picture, px: tens of threads at any resolution that counts."""
 
@@ -88,6 +92,48 @@ def spread(
     return _read(source, field, places)
 
 
+def parts(windows: list[Window], lattice: Lattice) -> list[Window]:
+    """Cut small windows, evenly spread, that hold enough pores to fit and no more.
+
+    Parameters
+    ----------
+    windows : list of Window
+    lattice : Lattice
+
+    Returns
+    -------
+    list of Window
+        Each at least `PART_CELLS` threads wide and high, where the windows are.
+    """
+    across, down = cell_sides(lattice)
+    height, width = (max(PART_SIDE, math.ceil(PART_CELLS * side)) for side in (down, across))
+    wanted = max(FEWEST_PARTS, round(PIXELS_FITTED / (height * width)))
+    cut = []
+    for window in windows:
+        rows, columns = window.light.shape
+        share = wanted / len(windows)
+        grid_rows = max(1, round(math.sqrt(share * rows / columns)))
+        grid_columns = max(1, round(share / grid_rows))
+        for row in _starts(rows, height, grid_rows):
+            for column in _starts(columns, width, grid_columns):
+                place = (slice(row, row + height), slice(column, column + width))
+                part = Window(
+                    window.row + row,
+                    window.column + column,
+                    window.light[place],
+                    window.inside[place],
+                )
+                cut.append(part)
+    return cut
+
+
+def _starts(length: int, side: int, count: int) -> list[int]:
+    """Where parts begin so that they lie evenly and do not overlap more than they must."""
+    room = max(0, length - side)
+    middles = (np.arange(count) + 0.5) / count * length - side / 2
+    return [int(each) for each in np.unique(np.clip(np.rint(middles), 0, room))]
+
+
 def _bounds(source: Lit, field: NDArray[np.bool_] | None) -> tuple[int, int, int, int]:
     """First and past-last row and column of the field."""
     if field is None:
@@ -161,4 +207,4 @@ def _box(side: float) -> NDArray[np.float32]:
     return (box / side).astype(np.float32)
 
 
-__all__ = ["PIXELS_READ", "Sheet", "Window", "cell_sides", "spread", "whole_periods"]
+__all__ = ["PIXELS_READ", "Sheet", "Window", "cell_sides", "parts", "spread", "whole_periods"]

@@ -1,0 +1,295 @@
+"""Which edges, light, blur and yarns explain the picture? All together, by least squares."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from imgcover.cover.normal import Meets, Normal
+from imgcover.cover.openings import FAR, LOCAL, SHARED, TERMS, Optics, expect
+from imgcover.cover.places import Places
+from imgcover.cover.reading import Lattice
+from imgcover.cover.shadow import Yarn
+from imgcover.cover.windows import cell_sides
+
+Floats = NDArray[np.float64]
+
+SECTION, SECTION_U = 3.0, 0.6
+"""Cross-section expected where the picture cannot tell: round (2) and fairly flat (4) are both
+within two standard uncertainties."""
+BLUR, BLUR_U = 0.8, 0.8
+"""Blur expected where the picture cannot tell, px, and the standard uncertainty of its logarithm:
+a weak hint, from sharp to badly out of focus."""
+DEPTH, DEPTH_U = 2.8, 1.2
+"""Yarns let through 6 % in the middle, within two standard uncertainties 0.5 % to 70 %."""
+ALIKE_U = 0.7
+"""Ends and picks of one cloth are seldom more unlike than this."""
+EXCESS = 40.0
+"""What the fit takes for noise is mostly uneven yarn, and errs alike in many pixels: what the
+picture says of the shared unknowns counts this many times less (tests/cover/sweep_cover.py)."""
+GLARE_U = 0.02
+"""Glare, a share of the light, is seldom more: a dark room and a clean glass give less."""
+FIELD_U = 0.5
+"""Logarithm by which the light may change over the picture: a tilt of 2 : 1 is within it."""
+GAP_U = 0.10
+"""A gap differs from those next to it along the threads by about this share of the pitch."""
+PLACE_U = 0.3
+"""A gap's middle may lie this share of the pitch from where the phase of the repeat puts it."""
+LEAN_U = 0.05
+"""An edge leans by about this much against the lattice: yarns wave in step with the weave."""
+OUTLYING = 6.0
+"""Pores that fit this many times worse than the usual one (mean square) count less."""
+STARTS = (1.0, 1.5)
+"""Bare light over the brightest pores that the fit starts from: small pores never reach it."""
+FIRST_ROUNDS, ROUNDS = 6, 12
+"""Steps from each start, and from the better of them: six or seven settle."""
+HELD = 0.1
+"""At first edges keep together and the section is held: light, blur and depth come first."""
+SETTLED = 3e-4
+"""Change of the logarithm of light and blur below which the fit has settled."""
+DAMPING = 1e-3
+"""Share added to each pore's own curvature: an edge that nothing shows does not run away."""
+MOST = np.array([0.2] * TERMS + [0.25, 0.5, 0.5, 0.5, 0.01])
+"""Largest step of what is shared: beyond it the derivatives no longer hold."""
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Fitted:
+    """The openings and what they share.
+
+    Parameters
+    ----------
+    optics : Optics
+    edges : ndarray, shape (n, 8)
+        See `openings.LOCAL`.
+    misfit : ndarray, shape (n,)
+        Root mean square misfit of each pore's patch, linear light.
+    usual : float
+        The median misfit.
+    covariance : ndarray, shape (11, 11)
+        Of the light's coefficients and `openings.SHARED`.
+    open_by_shared : ndarray, shape (11,)
+        How the mean open area (px²) changes with them, edges following.
+    light : ndarray, shape (n, height, width), float32
+        The light the fit expects.
+    """
+
+    optics: Optics
+    edges: Floats
+    misfit: Floats
+    usual: float
+    covariance: Floats
+    open_by_shared: Floats
+    light: NDArray[np.float32]
+
+    @property
+    def width(self) -> Floats:
+        """Open width of each pore, px."""
+        return self.edges[:, 1] - self.edges[:, 0]
+
+    @property
+    def height(self) -> Floats:
+        """Open height of each pore, px."""
+        return self.edges[:, 3] - self.edges[:, 2]
+
+
+class Fit:
+    """One least-squares problem: the pores, and what is expected of them before looking."""
+
+    def __init__(self, places: Places, lattice: Lattice, *, rows: int, columns: int) -> None:
+        self._places = places
+        self._terms = light_terms(places.row, places.column, rows, columns)
+        self._pitch = cell_sides(lattice)
+        self._meets = Meets(places)
+        self._leans = (-lattice.ends[1] / lattice.ends[0], -lattice.picks[0] / lattice.picks[1])
+
+    def solve(self) -> Fitted:
+        """Start from several lights, go on from the best, and stop when settled."""
+        tried = []
+        for brighter in STARTS:
+            edges, optics = self._start(brighter)
+            for _ in range(FIRST_ROUNDS):
+                edges, optics, _ = self._step(edges, optics, HELD)
+            tried.append((self._normal(edges, optics, HELD).usual, edges, optics))
+        _, edges, optics = min(tried, key=lambda each: each[0])
+        optics = self._told_by_usual(edges, optics)
+        for k in range(ROUNDS):
+            edges, optics, change = self._step(edges, optics, HELD ** (0.5 if k == 0 else 0))
+            if k > 2 and change < SETTLED:
+                break
+        return self._fitted(edges, optics)
+
+    def _start(self, brighter: float) -> tuple[Floats, Optics]:
+        """Guess light and yarn from the extremes, edges from the half level."""
+        places, patch = self._places, self._places.patch
+        high = float(np.quantile(patch, 0.98))
+        low = max(float(np.quantile(patch, 0.05)), 1e-3 * high)
+        middle = patch.shape[1] // 2, patch.shape[2] // 2
+        seen = patch > (high + low) / 2
+        across, down = self._pitch
+        width = np.clip(np.median(seen[:, middle[0], :].sum(axis=1)), 0.15 * across, 0.8 * across)
+        height = np.clip(np.median(seen[:, :, middle[1]].sum(axis=1)), 0.15 * down, 0.8 * down)
+        # What comes through stays the same: pores that are brighter than they look are smaller.
+        width, height = width / np.sqrt(brighter), height / np.sqrt(brighter)
+        edges = np.empty((len(patch), LOCAL))
+        for k, place, gap, lean in (
+            (0, places.x, width, self._leans[0]),
+            (2, places.y, height, self._leans[1]),
+        ):
+            edges[:, k], edges[:, k + 1] = place - gap / 2, place + gap / 2
+            edges[:, 4 + k : 6 + k] = lean
+        light = np.zeros(TERMS)
+        light[0] = np.log(high * brighter)
+        depth = 0.7 * float(np.log(high * brighter / low))
+        ends = Yarn(float(across - width) / 2, depth, SECTION)
+        picks = Yarn(float(down - height) / 2, depth, SECTION)
+        return edges, Optics(light, BLUR, ends, picks, 0.1 * low)
+
+    def _normal(self, edges: Floats, optics: Optics, loose: float = 1.0) -> Normal:
+        n = len(edges)
+        expected = expect(self._places, edges, optics, self._terms)
+        sound = self._places.sound.reshape(n, -1)
+        off = ((self._places.patch - expected.light).reshape(n, -1)) * sound
+        square = np.sum(off**2, axis=1, dtype=np.float64) / np.maximum(1, sound.sum(axis=1))
+        usual = max(float(np.median(square)), 1e-10)
+        weight = 1 / np.maximum(square / (OUTLYING * usual), 1)
+        both = np.concatenate(
+            [expected.by_edge, expected.by_shared, off.reshape(*expected.light.shape, 1)], axis=3
+        )
+        both = both.reshape(n, off.shape[1], -1) * sound[..., None]
+        gram = (both.transpose(0, 2, 1) @ both).astype(np.float64) * weight[:, None, None]
+        edge, rest = slice(0, LOCAL + FAR), slice(LOCAL + FAR, -1)
+        toward_own = self._meets.gather(gram[:, edge, -1:])[..., 0]
+        cross = self._meets.gather(gram[:, edge, rest])
+        shared, toward_shared = gram[:, rest, rest].sum(axis=0), gram[:, rest, -1].sum(axis=0)
+        prior = np.zeros((n, LOCAL, LOCAL))
+        self._expect_edges(prior, toward_own, edges, usual, loose)
+        _expect_shared(shared, toward_shared, optics, usual, loose)
+        return Normal(
+            gram[:, edge, edge],
+            prior,
+            cross,
+            shared,
+            toward_own,
+            toward_shared,
+            self._meets,
+            square,
+            usual,
+            expected.light,
+        )
+
+    def _expect_edges(
+        self, own: Floats, toward: Floats, edges: Floats, usual: float, loose: float
+    ) -> None:
+        """Add what is known of edges before looking: like their neighbours, along the threads."""
+        places = self._places
+        for k, along, place in ((0, places.above, places.x), (2, places.beside, places.y)):
+            first, second = k, k + 1
+            pitch = self._pitch[k // 2]
+            gap = edges[:, second] - edges[:, first]
+            alike = usual / (loose * GAP_U * pitch) ** 2
+            held = usual / (loose * PLACE_U * pitch) ** 2
+            wider = alike * (gap[along].mean(axis=1) - gap)
+            over = held * (place - (edges[:, first] + edges[:, second]) / 2)
+            for edge, sign in ((first, -1), (second, 1)):
+                own[:, edge, edge] += alike + held
+                toward[:, edge] += sign * wider + over
+            own[:, first, second] -= alike
+            own[:, second, first] -= alike
+            straight = usual / (loose * LEAN_U) ** 2
+            for lean in (4 + k, 5 + k):
+                own[:, lean, lean] += straight
+                toward[:, lean] += straight * (self._leans[k // 2] - edges[:, lean])
+
+    def _step(
+        self, edges: Floats, optics: Optics, loose: float = 1.0
+    ) -> tuple[Floats, Optics, float]:
+        """Move everything once; the third value says how far light and blur have moved."""
+        normal = self._normal(edges, optics, loose)
+        alone, carried, matrix, toward = normal.solved(DAMPING)
+        change = np.asarray(np.linalg.solve(matrix + 1e-7 * np.diag(np.diag(matrix)), toward))
+        change = change * min(1.0, 1 / float(np.max(np.abs(change) / MOST)))
+        moved = alone - carried @ change
+        reach = 0.12 * min(self._pitch)
+        edges = edges + np.clip(moved, -reach, reach)
+        edges[:, 4:] = np.clip(edges[:, 4:], -0.4, 0.4)
+        for k in (0, 2):
+            crossed = edges[:, k] > edges[:, k + 1]
+            edges[crossed, k : k + 2] = edges[crossed, k : k + 2].mean(axis=1)[:, None]
+        moved_by = max(abs(float(change[0])), abs(float(change[TERMS])) / optics.blur_px)
+        return edges, _moved(optics, change), moved_by
+
+    def _told_by_usual(self, edges: Floats, optics: Optics) -> Optics:
+        """Tell the yarns' depth for the width that is usual now; their shadows stay the same."""
+        yarns = []
+        for yarn, k in ((optics.ends, 0), (optics.picks, 2)):
+            pitch = self._pitch[k // 2]
+            half = max(float(pitch - np.median(edges[:, k + 1] - edges[:, k])) / 2, 0.1 * pitch)
+            yarns.append(replace(yarn, half_px=half, depth=yarn.depth * half / yarn.half_px))
+        return replace(optics, ends=yarns[0], picks=yarns[1])
+
+    def _fitted(self, edges: Floats, optics: Optics) -> Fitted:
+        normal = self._normal(edges, optics)
+        _, carried, matrix, _ = normal.solved(0.0)
+        width, height = edges[:, 1] - edges[:, 0], edges[:, 3] - edges[:, 2]
+        by_edge = np.stack([-height, height, -width, width], axis=1)
+        return Fitted(
+            optics=optics,
+            edges=edges,
+            misfit=np.sqrt(normal.square),
+            usual=float(np.sqrt(normal.usual)),
+            covariance=np.asarray(np.linalg.inv(matrix) * (EXCESS * normal.usual)),
+            open_by_shared=-np.einsum("na,nak->k", by_edge, carried[:, :4]) / len(edges),
+            light=normal.light,
+        )
+
+
+def _expect_shared(
+    matrix: Floats, toward: Floats, optics: Optics, usual: float, loose: float
+) -> None:
+    """Add what is known of light, blur and yarns before looking."""
+    bare = float(np.exp(optics.light[0]))
+    expected = (
+        *((k, FIELD_U, -optics.light[k]) for k in range(1, TERMS)),
+        (TERMS, BLUR_U * optics.blur_px, -optics.blur_px * np.log(optics.blur_px / BLUR)),
+        (TERMS + 1, DEPTH_U, DEPTH - optics.ends.depth),
+        (TERMS + 2, DEPTH_U, DEPTH - optics.picks.depth),
+        (TERMS + SHARED.index("section"), loose * SECTION_U, SECTION - optics.ends.section),
+        (TERMS + SHARED.index("glare"), GLARE_U * bare, -optics.glare),
+    )
+    usual = EXCESS * usual
+    for k, u, off in expected:
+        matrix[k, k] += usual / u**2
+        toward[k] += usual / u**2 * off
+    alike = usual / ALIKE_U**2
+    apart = optics.ends.depth - optics.picks.depth
+    matrix[TERMS + 1 : TERMS + 3, TERMS + 1 : TERMS + 3] += alike * np.array([[1, -1], [-1, 1]])
+    toward[TERMS + 1 : TERMS + 3] += alike * apart * np.array([-1, 1])
+
+
+def _moved(optics: Optics, change: Floats) -> Optics:
+    """Step what is shared, within what is possible."""
+    blur, ends, picks, section, glare = (float(each) for each in change[TERMS:])
+    section = min(max(optics.ends.section + section, 1.5), 8.0)
+    yarns = [
+        replace(yarn, depth=min(max(yarn.depth + deeper, 0.2), 9.0), section=section)
+        for yarn, deeper in ((optics.ends, ends), (optics.picks, picks))
+    ]
+    return Optics(
+        light=optics.light + change[:TERMS],
+        blur_px=max(0.15, optics.blur_px + blur),
+        ends=yarns[0],
+        picks=yarns[1],
+        glare=max(0.0, optics.glare + glare),
+    )
+
+
+def light_terms(row: Floats, column: Floats, rows: int, columns: int) -> Floats:
+    """Terms 1, x, y, x², xy, y² of the light field, with x and y from −1 to 1 over the picture."""
+    y, x = np.broadcast_arrays(2 * row / max(1, rows - 1) - 1, 2 * column / max(1, columns - 1) - 1)
+    return np.stack([np.ones_like(x), x, y, x * x, x * y, y * y], axis=-1)
+
+
+__all__ = ["Fit", "Fitted", "light_terms"]

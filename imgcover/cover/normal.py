@@ -1,0 +1,122 @@
+"""The normal equations of a fit in which every pore has unknowns of its own, and all share some."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from imgcover.cover.openings import LOCAL
+from imgcover.cover.places import Places
+
+Floats = NDArray[np.float64]
+
+CONJUGATES, CLOSE = 25, 1e-6
+"""Conjugate gradient steps at most, and the remaining error (squared) at which they may stop."""
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Normal:
+    """Normal equations: each pore's own unknowns, what all share, and how they meet.
+
+    Parameters
+    ----------
+    gram : ndarray, shape (n, 12, 12)
+        Products of the derivatives by own and far edges, patch by patch.
+    expected : ndarray, shape (n, 8, 8)
+        What is known of each pore's own edges before looking.
+    cross : ndarray, shape (n, 8, 11)
+    shared : ndarray, shape (11, 11)
+    toward_own, toward_shared : ndarray, shapes (n, 8) and (11,)
+    meets : Meets
+    """
+
+    gram: Floats
+    expected: Floats
+    cross: Floats
+    shared: Floats
+    toward_own: Floats
+    toward_shared: Floats
+    meets: Meets
+    square: Floats
+    usual: float
+    light: NDArray[np.float32]
+
+    def solved(self, damping: float) -> tuple[Floats, Floats, Floats, Floats]:
+        """Eliminate the pores' own unknowns.
+
+        Returns
+        -------
+        alone : ndarray, shape (n, 8)
+            Steps of the pores' own unknowns were the shared ones to stay.
+        carried : ndarray, shape (n, 8, 11)
+            How own unknowns answer to shared ones, with the sign turned.
+        matrix, toward : ndarray, shapes (11, 11) and (11,)
+        """
+        wanted = np.concatenate([self.cross, self.toward_own[..., None]], axis=2)
+        found = self._conjugate(wanted, damping)
+        carried, alone = found[..., :-1], found[..., -1]
+        matrix = self.shared - np.einsum("nak,nal->kl", self.cross, carried)
+        toward = self.toward_shared - np.einsum("nak,na->k", carried, self.toward_own)
+        return alone, carried, matrix, toward
+
+    def _conjugate(self, wanted: Floats, damping: float) -> Floats:
+        """Solve for the pores' own unknowns by conjugate gradients, each pore's block first."""
+        block = self.gram[:, :LOCAL, :LOCAL] + self.expected
+        block = block + self.meets.gather_diagonal(self.gram)[..., None] * np.eye(LOCAL)
+        stiff = damping * np.einsum("naa->na", block)[..., None]
+        inverse = np.linalg.inv(block + stiff * np.eye(LOCAL))
+
+        def apply(own: Floats) -> Floats:
+            seen = self.gram @ self.meets.spread(own)
+            return np.asarray(self.meets.gather(seen) + self.expected @ own + stiff * own)
+
+        answer = inverse @ wanted
+        rest = wanted - apply(answer)
+        towards = inverse @ rest
+        heading, size = towards, np.einsum("nak,nak->k", rest, towards)
+        least = CLOSE * np.einsum("nak,nak->k", wanted, inverse @ wanted) + 1e-300
+        for _ in range(CONJUGATES):
+            if np.all(size < least):
+                break
+            pushed = apply(heading)
+            far = size / np.maximum(np.einsum("nak,nak->k", heading, pushed), 1e-300)
+            answer, rest = answer + far * heading, rest - far * pushed
+            towards = inverse @ rest
+            before, size = size, np.einsum("nak,nak->k", rest, towards)
+            heading = towards + size / np.maximum(before, 1e-300) * heading
+        return answer
+
+
+class Meets:
+    """Which pore's which edge bounds the far side of each of a patch's four threads."""
+
+    def __init__(self, places: Places) -> None:
+        self._far = (
+            (places.beside[:, 1], 1),
+            (places.beside[:, 3], 0),
+            (places.above[:, 1], 3),
+            (places.above[:, 3], 2),
+        )
+
+    def spread(self, own: Floats) -> Floats:
+        """Give each patch its own unknowns and the far ones: (n, 8, k) to (n, 12, k)."""
+        far = [own[pore, edge] for pore, edge in self._far]
+        return np.concatenate([own, np.stack(far, axis=1)], axis=1)
+
+    def gather(self, seen: Floats) -> Floats:
+        """Add up for each pore what its edges do in all patches: (n, 12, k) to (n, 8, k)."""
+        own = seen[:, :LOCAL].copy()
+        for k, (pore, edge) in enumerate(self._far):
+            np.add.at(own[:, edge], pore, seen[:, LOCAL + k])
+        return own
+
+    def gather_diagonal(self, gram: Floats) -> Floats:
+        """Add up the far edges' own curvature for each pore: shape (n, 8)."""
+        diagonal = np.einsum("naa->na", gram).copy()
+        diagonal[:, :LOCAL] = 0
+        return self.gather(diagonal[..., None])[..., 0]
+
+
+__all__ = ["Meets", "Normal"]
