@@ -41,7 +41,12 @@ def outcome(arguments: Sequence[str]) -> int:
             raise KeyboardInterrupt
         return int(code or ExitCode.CONFORMS)
     except typer.TyperException as refused:
-        return _told(f"{refused.format_message()} (imgcover --help)", ExitCode.USAGE)
+        message = refused.format_message()
+        if "\n" in message:  # a group of commands named alone answers with its help
+            for line in message.splitlines():
+                tell(line)
+            return int(ExitCode.USAGE)
+        return _told(f"{message} (imgcover --help)", ExitCode.USAGE)
     except ImgcoverError as fault:
         _trace()
         unwritten = isinstance(fault, OutputError | LedgerError)

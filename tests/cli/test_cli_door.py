@@ -105,6 +105,18 @@ def test_usage_faults_exit_2_and_print_no_data(
     assert err.startswith("imgcover: ")
 
 
+def test_a_group_of_commands_named_alone_answers_with_its_help(
+    capsys: pytest.CaptureFixture[str],
+) -> None:
+    with pytest.raises(SystemExit) as left:
+        run(["calibrate"])
+    assert left.value.code == ExitCode.USAGE
+    out, err = capsys.readouterr()
+    assert out == ""
+    assert err.startswith("Usage: imgcover calibrate")
+    assert "Commands:" in err.splitlines()
+
+
 def test_a_closed_pipe_is_no_error() -> None:
     reading, writing = os.pipe()
     os.close(reading)
