@@ -99,7 +99,7 @@ def test_an_article_is_found_by_path_name_folder_or_code(tmp_path):
 @pytest.mark.parametrize(
     ("named", "said"),
     [
-        ("harow", 'no declaration "harow". nearest: "harrow"'),
+        ("harow", 'no declaration "harow"; nearest: "harrow"'),
         ("../secret.toml", "leads out"),
         ("/etc/passwd", "leads out"),
         ("H-1", 'declare "H-1"'),

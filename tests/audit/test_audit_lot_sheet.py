@@ -38,7 +38,7 @@ def test_quotes_blank_rows_and_empty_cells(tmp_path):
     [
         ("", "is empty"),
         ("picture,lot\n", "lists no picture"),
-        ("picture,lott\na,1\n", 'unknown column "lott". nearest valid column: "lot"'),
+        ("picture,lott\na,1\n", 'unknown column "lott"; nearest valid column: "lot"'),
         ("picture,Lot,LOT\na,1,1\n", 'column "lot" stands twice'),
         ("picture,note\na,1\n", 'column "lot" is missing'),
         ("picture,lot\na,\n", "row 2, lot: is empty"),
