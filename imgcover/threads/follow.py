@@ -43,6 +43,8 @@ class Followed:
         Amplitude of the two leading lines over its usual value.
     loudest : float
         Usual amplitude of the strongest line.
+    folded : {1, 2}
+        Whether the phase, or twice the phase, was followed.
     """
 
     ends: NDArray[np.float64]
@@ -52,6 +54,7 @@ class Followed:
     y: NDArray[np.float64]
     strength: NDArray[np.float64]
     loudest: float
+    folded: int
 
 
 def follow(
@@ -61,6 +64,7 @@ def follow(
     *,
     lines: list[Line],
     sigma: float,
+    folded: int = 1,
 ) -> Followed | None:
     """Follow ends and picks over the field.
 
@@ -74,12 +78,17 @@ def follow(
         Strongest first; at least two that are not parallel.
     sigma : float
         Smoothing, pixels.
+    folded : {1, 2}
+        2 follows twice the phase. Where dark ends follow light ones the contrast turns over and
+        with it the phase, by half a thread; twice the phase knows nothing of that.
 
     Returns
     -------
     Followed or None
         None where no two lines together reach a grid large enough to unwrap.
     """
+    if len(lines) < 2:
+        return None
     vectors = np.array([ends, picks])
     demodulated = []
     for line in lines:
@@ -106,11 +115,11 @@ def follow(
         return None
     phases = np.asarray(np.angle(values) / (2 * np.pi), np.float64)
     base = np.array([[lines[one].h, lines[one].v], [lines[two].h, lines[two].v]])
-    unwrapped = np.stack([_unwrapped(phases[k], solid) for k in (one, two)])
+    unwrapped = np.stack([_unwrapped(folded * phases[k], solid) / folded for k in (one, two)])
     both = np.einsum("ij,jrc->irc", np.linalg.inv(base), unwrapped)
-    both, agreement = _all_lines(both, phases, relative, lines, solid)
+    both, agreement = _all_lines(both, phases, relative, lines, solid, folded)
     valid = solid & agreement
-    return Followed(both[0], both[1], valid, x, y, strength, float(typical.max()))
+    return Followed(both[0], both[1], valid, x, y, strength, float(typical.max()), folded)
 
 
 def _centroids(
@@ -151,7 +160,7 @@ def _unwrapped(phase: NDArray[np.float64], solid: NDArray[np.bool_]) -> NDArray[
     """Unwrap in two dimensions, cycles; the strongest connected region decides the branch."""
     with warnings.catch_warnings():
         warnings.simplefilter("ignore")
-        masked = np.ma.masked_array(phase * 2 * np.pi, mask=~solid)
+        masked = np.ma.masked_array((phase - np.round(phase)) * 2 * np.pi, mask=~solid)
         plain = unwrap_phase(masked, rng=0)  # type: ignore[no-untyped-call]
     return np.asarray(np.ma.filled(plain, 0.0), np.float64) / (2 * np.pi)
 
@@ -162,6 +171,7 @@ def _all_lines(
     relative: NDArray[np.float64],
     lines: list[Line],
     solid: NDArray[np.bool_],
+    folded: int,
 ) -> tuple[NDArray[np.float64], NDArray[np.bool_]]:
     """Improve both phases by every line; tell where the lines agree.
 
@@ -174,16 +184,16 @@ def _all_lines(
     total = np.zeros(solid.shape)
     for k, line in enumerate(lines):
         residual = phases[k] - line.h * both[0] - line.v * both[1]
-        turned = np.exp(2j * np.pi * residual)
+        turned = np.exp(2j * np.pi * folded * residual)
         constant = np.angle((turned * relative[k] * solid).sum())
-        rest = np.angle(turned * np.exp(-1j * constant)) / (2 * np.pi)
+        rest = np.angle(turned * np.exp(-1j * constant)) / (2 * np.pi * folded)
         weight = np.minimum(relative[k], 2.0) ** 2 * np.exp(line.excess)
         direction = np.array([line.h, line.v])
         weight_sum += weight * np.multiply.outer(
             np.outer(direction, direction), np.ones(solid.shape)
         )
         pull += weight * np.multiply.outer(direction, rest)
-        spread += weight * np.minimum(np.abs(rest), 0.5)
+        spread += weight * folded * np.abs(rest)
         total += weight
     system = np.moveaxis(weight_sum, (0, 1), (-2, -1)) + 1e-9 * np.eye(2)
     step = np.linalg.solve(system, np.moveaxis(pull, 0, -1)[..., None])[..., 0]

@@ -9,6 +9,7 @@ from fractions import Fraction
 from imgcover.repeat.phase import Transformed, transform
 from imgcover.repeat.spectrum import Peak, Spectrum, peaks, spectrum
 from imgcover.threads.candidates import Candidate, candidates
+from imgcover.threads.counting import count
 from imgcover.threads.field import Field, flattened, windows_of
 from imgcover.threads.follow import Followed, follow
 from imgcover.threads.lattice import Lattice, fit_lattices
@@ -25,6 +26,9 @@ lay a lattice of their own under everything else."""
 
 MOST_PEAKS = 40
 """Peaks kept; a checked twill shows some thirty."""
+
+STEADY = 0.0015
+"""Unevenness as a share of the count; even cloth lies below it."""
 
 TOLERANCE = 0.8
 """Bins a peak may lie from its place: irregular spacing broadens and splits lines."""
@@ -102,6 +106,7 @@ def identify(field: Field) -> Identified | None:
         if ends.factor == 1 == picks.factor:
             break
         best = _scaled(best, ends.factor, picks.factor)
+    followed = _steadiest(flat, best, seen, followed, sigma)
     return Identified(best, evidence, heard[1:], field, flat, followed, sigma, ends, picks, seen)
 
 
@@ -124,6 +129,26 @@ def _track(
     lines = lines_of(one, seen)
     followed = follow(flat, one.ends, one.picks, lines=lines, sigma=sigma)
     return None if followed is None else (flat, followed, sigma)
+
+
+def _steadiest(
+    flat: Transformed, one: Candidate, seen: Spectrum, plain: Followed, sigma: float
+) -> Followed:
+    """Follow twice the phase instead, where the phase is unsteady and twice it is steadier."""
+    unsteady = _unsteadiness(plain, one)
+    if unsteady < STEADY:
+        return plain
+    twice = follow(flat, one.ends, one.picks, lines=lines_of(one, seen), sigma=sigma, folded=2)
+    return plain if twice is None or _unsteadiness(twice, one) > 0.7 * unsteady else twice
+
+
+def _unsteadiness(followed: Followed, one: Candidate) -> float:
+    """How unevenly the worse set seems to lie, relative to its density."""
+    counts = (
+        count(followed.ends, followed, one.ends),
+        count(followed.picks, followed, one.picks),
+    )
+    return max(math.inf if each is None else each.irregular + each.broken for each in counts)
 
 
 def _scaled(one: Candidate, ends: Fraction, picks: Fraction) -> Candidate:

@@ -12,11 +12,12 @@ from numpy.typing import NDArray
 
 from imgcover.findings import Finding, Flag, found
 from imgcover.repeat.spectrum import spectrum
+from imgcover.threads.candidates import Candidate
 from imgcover.threads.counting import Counted, count
 from imgcover.threads.field import LightSource, Region, field_of, whole, windows_of
 from imgcover.threads.follow import Followed
 from imgcover.threads.identify import WINDOW, Identified, identify
-from imgcover.threads.profile import amplitudes
+from imgcover.threads.profile import SILENT, amplitudes
 from imgcover.threads.reading import Fork, ThreadReading, ThreadSet, Tile, Track
 from imgcover.threads.regions import Pieces, bow_of, divide, local_density
 from imgcover.threads.witness import streak
@@ -33,6 +34,10 @@ FEW_PIXELS = 5.0
 FEWEST_THREADS = 6.0
 """Threads across the field: with fewer, one thread more or less at the edge is the uncertainty."""
 
+LARGEST_SCATTER = 0.06
+"""Relative scatter of the density between tiles of eight threads. Uneven cloth reaches 0.03; where
+stripes turn the contrast over and a thread was lost it is 0.1."""
+
 FINEST_WHEN_SMALL = 6.0
 """Pixels a thread left in a picture made smaller: finer threads are read at full size, and what
 they leave in the smaller picture is not a thread."""
@@ -41,16 +46,22 @@ LEAST_SCORE = 5.0
 """Spectral witnesses (`witness.Evidence.score`): 150 drawn cloths lie at 7.2 to 12, real ones from
 5.4; noise, gravel, foliage and water below 4."""
 
-LEAST_STREAK = 0.34
-"""ln(power) along an axis over the power beside it. The weaker axis of 150 drawn cloths lies at
-0.38 to 5; of knits, bricks, leather, scales and perforated sheets at 0.3 at the most."""
+LEAST_STREAK = 0.4
+"""ln(power) along an axis over the power beside it, of the weaker axis, mean of two window sizes.
+150 drawn cloths lie at 0.41 to 5, real ones from 0.42; knits, bricks, nets, leather and perforated
+sheets at 0.39 at the most."""
 
 MOST_AGAINST = 0.3
 """Share of the lines at broken multiples of the threads: 0.14 at the most in drawn cloth."""
 
 OPEN_GRID_LINES, OPEN_GRID_STREAK = 6.0, 0.3
 """A plain open grid has no weave lines to show and even threads: there the two threads' lines must
-tower over the floor, and the streaks show in windows twice as long."""
+tower over the floor, and fainter streaks do."""
+
+REGULAR_LINES, REGULAR_SCORE = 4.0, 7.5
+"""A lattice that repeats on three threads or more, stepping one by one along both sets, with both
+threads' own lines in it and next to nothing beside it, is that of a twill or satin. In closed
+warp-faced cloth the other set has no streak to show."""
 
 NEAR_HALF_RIGHT = 35.0
 """Degrees of turn from which on the nearer axis says little about which set is the warp."""
@@ -58,6 +69,11 @@ NEAR_HALF_RIGHT = 35.0
 EDGE = 1.7
 """How far the outermost threads stray, in units of the phase's unevenness from place to place:
 fitted so that 2 u covers 95 % of counted truth (tests/threads/sweep_threads.py)."""
+
+DIAGONAL = (
+    "the pattern can be read as threads turned by about 45 degrees, or as straight plain cloth"
+    " of twice as many threads on the diagonals"
+)
 
 LARGEST_U = 0.01
 """A count looser than this has lost its threads somewhere, and decides nothing."""
@@ -108,6 +124,9 @@ def read_threads(
         return _refused(found(Flag.NO_CROSSING_THREADS))
     if not _crossing(seen):
         return _refused(found(Flag.NOT_WOVEN))
+    if seen.candidate.index == 1 and abs(seen.candidate.turn) > NEAR_HALF_RIGHT:
+        # threads turned by 45 degrees, or the diagonals of straight plain cloth in two colours
+        return _refused(found(Flag.TWO_READINGS, DIAGONAL, "lay the swatch straight"))
     return _read(seen, part, warp)
 
 
@@ -131,18 +150,33 @@ def _crossing(seen: Identified) -> bool:
     Knits, bricks, scales and printed dots repeat in two directions too, but nothing in them goes
     on unbroken along both.
     """
-    e = seen.evidence
-    if e.against > MOST_AGAINST:
+    e, one = seen.evidence, seen.candidate
+    if e.against > MOST_AGAINST or _hexagonal(one) or _silent(seen):
         return False
-    if min(e.ends_streak, e.picks_streak) >= LEAST_STREAK:
+    lines = min(e.ends_line, e.picks_line)
+    regular = one.index > 2 and one.parts == (1, 1) and e.against < 0.05 and e.apart < 0.15
+    if regular and abs(one.turn) < 12 and lines > REGULAR_LINES and e.score > REGULAR_SCORE:
         return True
-    if seen.candidate.index > 1 or min(e.ends_line, e.picks_line) < OPEN_GRID_LINES:
-        return False
     wide = spectrum(windows_of(seen.origin, min(2 * WINDOW, *seen.origin.light.shape)))
-    return (
-        min(streak(wide, seen.candidate.ends), streak(wide, seen.candidate.picks))
-        > OPEN_GRID_STREAK
-    )
+    wider = min(streak(wide, one.ends), streak(wide, one.picks))
+    if one.index == 1 and lines > OPEN_GRID_LINES and wider > OPEN_GRID_STREAK:
+        return True
+    return min(e.ends_streak, e.picks_streak) + wider > 2 * LEAST_STREAK
+
+
+def _hexagonal(one: Candidate) -> bool:
+    """Whether the lattice is that of a net or of close-packed dots: six equal neighbours."""
+    ratio = max(one.pixels) / min(one.pixels)
+    return one.index == 2 and abs(ratio / math.sqrt(3) - 1) < 0.015 and abs(one.skew) < 0.7
+
+
+def _silent(seen: Identified) -> bool:
+    """Whether one axis has no line of its own and the lattice does not make up for it."""
+    quiet = SILENT * seen.followed.loudest
+    for multiple, parts in zip((seen.ends, seen.picks), seen.candidate.parts, strict=True):
+        if multiple.amplitude < quiet and (seen.candidate.index == 1 or parts > 1):
+            return True
+    return False
 
 
 def _refused(*findings: Finding, tiles: tuple[Tile, ...] = ()) -> ThreadReading:
@@ -186,8 +220,12 @@ def _read(seen: Identified, region: Region, warp: Direction) -> ThreadReading:
     )
 
 
+def _lost(each: ThreadSet) -> bool:
+    return each.u_relative > LARGEST_U or each.local_scatter > LARGEST_SCATTER
+
+
 def _weak(each: ThreadSet) -> bool:
-    return each.pixels_a_thread < FEWEST_PIXELS or each.u_relative > LARGEST_U
+    return each.pixels_a_thread < FEWEST_PIXELS or _lost(each)
 
 
 def _said_of(name: str, each: ThreadSet, forked: bool) -> list[Finding]:
@@ -199,7 +237,7 @@ def _said_of(name: str, each: ThreadSet, forked: bool) -> list[Finding]:
         said.append(found(Flag.TOO_COARSE, message, remedy))
     elif pixels < FEW_PIXELS:
         said.append(found(Flag.FEW_PIXELS_A_THREAD, f"only {pixels:.1f} pixels a thread ({name})"))
-    if each.u_relative > LARGEST_U:
+    if _lost(each):
         said.append(found(Flag.THREADS_LOST, f"the {name} could not be followed over the field"))
     if forked:
         said.append(found(Flag.TWO_READINGS, f"two readings of the {name} stay possible"))
