@@ -14,6 +14,8 @@ from numpy.typing import ArrayLike, NDArray
 STRAY = 3.5
 """Robust standard deviations beyond which a mark is dropped: one good mark in 2000."""
 FEWEST_MARKS = 6
+LARGEST_SCATTER = 0.2
+"""Pitches: a mark that strays by half a pitch might have another number."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -133,7 +135,8 @@ def fit_comb(numbers: ArrayLike, positions: ArrayLike) -> Comb | None:
     Returns
     -------
     Comb or None
-        None when fewer than `FEWEST_MARKS` or fewer than half of the marks agree.
+        None when fewer than `FEWEST_MARKS` or fewer than half of the marks agree, or when they
+        stray so far that their numbers are in doubt.
     """
     k, x = np.asarray(numbers, dtype=float), np.asarray(positions, dtype=float)
     if len(k) < FEWEST_MARKS or np.ptp(k) == 0:
@@ -148,6 +151,8 @@ def fit_comb(numbers: ArrayLike, positions: ArrayLike) -> Comb | None:
     scatter = float(np.sqrt((rest**2).sum() / freedom))
     if abs(tilt) < 4 * u_tilt:
         tilt, origin, pitch, scatter = 0.0, line.intercept, line.slope, line.scatter
+    if scatter > LARGEST_SCATTER * abs(pitch):
+        return None
     u_pitch = scatter / float(np.sqrt(((k[kept] - middle) ** 2).sum()))
     comb = Comb(middle, origin, pitch, u_pitch, tilt, u_tilt, scatter, kept)
     u_quarters = _quarters(k[kept], x[kept] - comb.position(k[kept]))
@@ -156,23 +161,22 @@ def fit_comb(numbers: ArrayLike, positions: ArrayLike) -> Comb | None:
 
 def _agreeing(k: NDArray[np.float64], x: NDArray[np.float64]) -> NDArray[np.bool_]:
     """Find the marks that one smooth row explains, starting from the median slope."""
-    apart = np.maximum(1, len(k) // 3)
+    apart = max(1, len(k) // 3)
     slope = float(np.median((x[apart:] - x[:-apart]) / (k[apart:] - k[:-apart])))
     rest = x - slope * k
-    kept = np.abs(rest - np.median(rest)) < 3 * max(_spread(rest), 1e-9 * abs(slope))
-    kept |= np.abs(rest - np.median(rest)) < 0.4 * abs(slope)
-    for _ in range(12):
-        if kept.sum() < FEWEST_MARKS:
+    rest = rest - np.median(rest)
+    spread = _spread(rest)
+    weight = (np.abs(rest) < 0.4 * abs(slope) + 3 * spread).astype(float)
+    for _ in range(20):
+        if (weight > 0).sum() < FEWEST_MARKS:
             break
         # a parabola lets a tilted row through; what a tilt cannot do is judged afterwards
-        bend = np.polynomial.Polynomial.fit(k[kept], x[kept], 2)
+        bend = np.polynomial.Polynomial.fit(k, x, 2, w=weight)
         rest = x - bend(k)
-        bound = STRAY * max(_spread(rest[kept]), 1e-6 * abs(slope))
-        new = np.abs(rest) <= bound
-        if np.array_equal(new, kept):
-            break
-        kept = new
-    return np.asarray(kept, dtype=bool)
+        spread = max(_spread(rest[weight > 0]), 1e-6 * abs(slope))
+        # Tukey's biweight: a stray loses its pull step by step, not all marks at once
+        weight = np.clip(1 - (rest / (2 * STRAY * spread)) ** 2, 0, 1)
+    return np.asarray(np.abs(rest) <= STRAY * spread)
 
 
 def _spread(values: NDArray[np.float64]) -> float:

@@ -16,6 +16,9 @@ HIGHEST_FREQUENCY = 0.46
 LOWEST_CYCLES = 3.0
 """Cycles per window. Slower waves are light and shade, and leak through the window's skirt."""
 
+FOLDED_EXCESS = 5.0
+"""ln(power over floor) of a line that is more than grain."""
+
 FLOOR_SPAN = 17
 """Bins of the half-size spectrum over which the floor is a median: wider than any line."""
 
@@ -166,6 +169,24 @@ def peaks(of: Spectrum, *, excess: float, most: int) -> list[Peak]:
     return found[:most]
 
 
+def folded_over(of: Spectrum) -> bool:
+    """Whether the strongest wave lies so near the limit of the pixels that it may be folded over.
+
+    Notes
+    -----
+    Waves too fine for the pixels come back as coarser ones, mirrored at half a cycle per pixel.
+    What is seen below the limit is then no guide to what is there.
+    """
+    middle = of.size // 2
+    axis = np.arange(of.size) - middle
+    cycles = np.hypot(axis[:, None], axis[None, :])
+    lowest = LOWEST_CYCLES * of.size / max(of.window)
+    line = of.log_power - of.log_floor > FOLDED_EXCESS
+    strength = np.where(line & (cycles > lowest), of.log_power, -np.inf)
+    outside = cycles > HIGHEST_FREQUENCY * of.size
+    return bool(strength[outside].max() > strength[~outside].max())
+
+
 def _refined(of: Spectrum, row: int, column: int) -> Peak:
     """Place a peak between bins by the vertex of a parabola through the log power.
 
@@ -188,4 +209,4 @@ def _vertex(before: float, at: float, after: float) -> float:
     return 0.0 if curvature >= 0 else float(np.clip(0.5 * (before - after) / curvature, -0.5, 0.5))
 
 
-__all__ = ["Peak", "Spectrum", "peaks", "spectrum"]
+__all__ = ["Peak", "Spectrum", "folded_over", "peaks", "spectrum"]

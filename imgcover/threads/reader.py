@@ -11,7 +11,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from imgcover.findings import Finding, Flag, found
-from imgcover.repeat.spectrum import spectrum
+from imgcover.repeat.spectrum import folded_over, spectrum
 from imgcover.threads.candidates import Candidate
 from imgcover.threads.counting import Counted, count
 from imgcover.threads.field import LightSource, Region, field_of, whole, windows_of
@@ -19,7 +19,7 @@ from imgcover.threads.follow import Followed
 from imgcover.threads.identify import WINDOW, Identified, identify
 from imgcover.threads.profile import SILENT, amplitudes
 from imgcover.threads.reading import Fork, ThreadReading, ThreadSet, Tile, Track
-from imgcover.threads.regions import Pieces, bow_of, divide, local_density
+from imgcover.threads.regions import Pieces, bow_of, divide, local_density, without_strays
 from imgcover.threads.witness import streak
 from imgcover.weave import Weave
 
@@ -37,6 +37,10 @@ FEWEST_THREADS = 6.0
 LARGEST_SCATTER = 0.06
 """Relative scatter of the density between tiles of eight threads. Uneven cloth reaches 0.03; where
 stripes turn the contrast over and a thread was lost it is 0.1."""
+
+LEAST_AGREEING = 0.75
+"""Share of the clear tiles that must agree on the density: a few hold a burl or a hole, but where
+many differ the threads were not followed."""
 
 FINEST_WHEN_SMALL = 6.0
 """Pixels a thread left in a picture made smaller: finer threads are read at full size, and what
@@ -69,6 +73,8 @@ NEAR_HALF_RIGHT = 35.0
 EDGE = 1.7
 """How far the outermost threads stray, in units of the phase's unevenness from place to place:
 fitted so that 2 u covers 95 % of counted truth (tests/threads/sweep_threads.py)."""
+
+FOLDED = "the strongest pattern is as fine as the pixels themselves: threads may be folded over"
 
 DIAGONAL = (
     "the pattern can be read as threads turned by about 45 degrees, or as straight plain cloth"
@@ -122,6 +128,8 @@ def read_threads(
     seen = _best_zoom(source, part)
     if seen is None or seen.evidence.score < LEAST_SCORE:
         return _refused(found(Flag.NO_CROSSING_THREADS))
+    if seen.origin.zoom == 1 and folded_over(seen.seen):
+        return _refused(found(Flag.TOO_COARSE, FOLDED, "scan at twice the resolution or more"))
     if not _crossing(seen):
         return _refused(found(Flag.NOT_WOVEN))
     if seen.candidate.index == 1 and abs(seen.candidate.turn) > NEAR_HALF_RIGHT:
@@ -187,6 +195,10 @@ def _read(seen: Identified, region: Region, warp: Direction) -> ThreadReading:
     one, followed = seen.candidate, seen.followed
     period = max(one.pixels)
     pieces = divide(followed, period, seen.origin.light.shape)
+    clear = len(pieces.blocks)
+    pieces = without_strays(followed, pieces, one.ends, one.picks)
+    if len(pieces.blocks) < LEAST_AGREEING * clear:
+        return _refused(found(Flag.THREADS_LOST))
     tiles = tuple(_in_picture(tile, seen) for tile in pieces.tiles)
     if not pieces.blocks:
         return _refused(found(Flag.NO_CROSSING_THREADS), tiles=tiles)
