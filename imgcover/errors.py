@@ -11,7 +11,8 @@
     ├── OptionError         an option, or a lot sheet's cell, that says something impossible
     └── OutputError         an output file that cannot be written
 
-A weak number is not an error: it is a finding (`imgcover.findings`). A wrong call is a `ValueError`.
+A weak number is not an error: it is a finding (`imgcover.findings`). A wrong call is a
+`ValueError`.
 """
 
 from __future__ import annotations
