@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from fractions import Fraction
 
 from imgcover.repeat.phase import Transformed, transform
@@ -106,8 +106,30 @@ def identify(field: Field) -> Identified | None:
         if ends.factor == 1 == picks.factor:
             break
         best = _scaled(best, ends.factor, picks.factor)
+    else:
+        return None
     followed = _steadiest(flat, best, seen, followed, sigma)
     return Identified(best, evidence, heard[1:], field, flat, followed, sigma, ends, picks, seen)
+
+
+def taken_as(seen: Identified, ends: Multiple, picks: Multiple) -> Identified | None:
+    """Follow a field anew with its ties settled.
+
+    Parameters
+    ----------
+    seen : Identified
+        What was found.
+    ends, picks : Multiple
+        Their factors say which multiples of the wave vectors the threads are.
+    """
+    one = _scaled(seen.candidate, ends.factor, picks.factor)
+    tracked = _track(seen.origin, one, seen.seen)
+    if tracked is None:
+        return None
+    flat, followed, sigma = tracked
+    return replace(
+        seen, candidate=one, field=flat, followed=followed, sigma=sigma, ends=ends, picks=picks
+    )
 
 
 def _lattices(found: list[Peak], tolerance: float) -> list[Lattice]:
@@ -162,4 +184,4 @@ def _scaled(one: Candidate, ends: Fraction, picks: Fraction) -> Candidate:
     )
 
 
-__all__ = ["Identified", "identify"]
+__all__ = ["Identified", "identify", "taken_as"]

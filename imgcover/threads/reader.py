@@ -11,19 +11,20 @@ import numpy as np
 from numpy.typing import NDArray
 
 from imgcover.findings import Finding, Flag, found
-from imgcover.repeat.spectrum import folded_over, spectrum
-from imgcover.threads.candidates import Candidate
+from imgcover.repeat.spectrum import folded_over
 from imgcover.threads.counting import Counted, count
-from imgcover.threads.field import LightSource, Region, field_of, whole, windows_of
+from imgcover.threads.field import LightSource, Region, field_of, whole
 from imgcover.threads.follow import Followed
-from imgcover.threads.identify import WINDOW, Identified, identify
-from imgcover.threads.profile import SILENT, amplitudes
+from imgcover.threads.identify import Identified, identify, taken_as
+from imgcover.threads.profile import amplitudes
 from imgcover.threads.reading import Fork, ThreadReading, ThreadSet, Tile, Track
 from imgcover.threads.regions import Pieces, bow_of, divide, local_density, without_strays
-from imgcover.threads.witness import streak
+from imgcover.threads.tie import settled
+from imgcover.threads.woven import crossing
 from imgcover.weave import Weave
 
 Direction = Literal["vertical", "horizontal"]
+SetName = Literal["ends", "picks"]
 
 FEWEST_PIXELS = 3.0
 """Pixels a thread: below it a wave and its harmonics fold over each other (DEVELOPERS, threads)."""
@@ -49,23 +50,6 @@ they leave in the smaller picture is not a thread."""
 LEAST_SCORE = 5.0
 """Spectral witnesses (`witness.Evidence.score`): 150 drawn cloths lie at 7.2 to 12, real ones from
 5.4; noise, gravel, foliage and water below 4."""
-
-LEAST_STREAK = 0.4
-"""ln(power) along an axis over the power beside it, of the weaker axis, mean of two window sizes.
-150 drawn cloths lie at 0.41 to 5, real ones from 0.42; knits, bricks, nets, leather and perforated
-sheets at 0.39 at the most."""
-
-MOST_AGAINST = 0.3
-"""Share of the lines at broken multiples of the threads: 0.14 at the most in drawn cloth."""
-
-OPEN_GRID_LINES, OPEN_GRID_STREAK = 6.0, 0.3
-"""A plain open grid has no weave lines to show and even threads: there the two threads' lines must
-tower over the floor, and fainter streaks do."""
-
-REGULAR_LINES, REGULAR_SCORE = 4.0, 7.5
-"""A lattice that repeats on three threads or more, stepping one by one along both sets, with both
-threads' own lines in it and next to nothing beside it, is that of a twill or satin. In closed
-warp-faced cloth the other set has no streak to show."""
 
 NEAR_HALF_RIGHT = 35.0
 """Degrees of turn from which on the nearer axis says little about which set is the warp."""
@@ -130,12 +114,34 @@ def read_threads(
         return _refused(found(Flag.NO_CROSSING_THREADS))
     if seen.origin.zoom == 1 and folded_over(seen.seen):
         return _refused(found(Flag.TOO_COARSE, FOLDED, "scan at twice the resolution or more"))
-    if not _crossing(seen):
+    if not crossing(seen):
         return _refused(found(Flag.NOT_WOVEN))
     if seen.candidate.index == 1 and abs(seen.candidate.turn) > NEAR_HALF_RIGHT:
         # threads turned by 45 degrees, or the diagonals of straight plain cloth in two colours
         return _refused(found(Flag.TWO_READINGS, DIAGONAL, "lay the swatch straight"))
-    return _read(seen, part, warp)
+    settled_by = _settled(seen, weave, warp)
+    if settled_by is None:
+        return _read(seen, part, warp)
+    reading = _read(settled_by, part, warp)
+    told = found(Flag.RESTS_ON_DECLARED_WEAVE)
+    return dataclasses.replace(reading, findings=(*reading.findings, told))
+
+
+def _settled(seen: Identified, weave: Weave | None, warp: Direction) -> Identified | None:
+    """Let the declared weave decide where two readings stay possible; None where none do."""
+    if seen.ends.rival is None and seen.picks.rival is None:
+        return None
+    names = _names(warp)
+    across = settled(seen.ends, weave, names[0])
+    down = settled(seen.picks, weave, names[1])
+    if across is None and down is None:
+        return None
+    return taken_as(seen, across or seen.ends, down or seen.picks)
+
+
+def _names(warp: Direction) -> tuple[SetName, SetName]:
+    """What the set across the picture and the set down it are called."""
+    return ("ends", "picks") if warp == "vertical" else ("picks", "ends")
 
 
 def _best_zoom(source: LightSource, region: Region) -> Identified | None:
@@ -150,41 +156,6 @@ def _best_zoom(source: LightSource, region: Region) -> Identified | None:
         if best is None or seen.evidence.score > best.evidence.score:
             best = seen
     return best
-
-
-def _crossing(seen: Identified) -> bool:
-    """Whether both sets are made of individual threads that run on across the other set.
-
-    Knits, bricks, scales and printed dots repeat in two directions too, but nothing in them goes
-    on unbroken along both.
-    """
-    e, one = seen.evidence, seen.candidate
-    if e.against > MOST_AGAINST or _hexagonal(one) or _silent(seen):
-        return False
-    lines = min(e.ends_line, e.picks_line)
-    regular = one.index > 2 and one.parts == (1, 1) and e.against < 0.05 and e.apart < 0.15
-    if regular and abs(one.turn) < 12 and lines > REGULAR_LINES and e.score > REGULAR_SCORE:
-        return True
-    wide = spectrum(windows_of(seen.origin, min(2 * WINDOW, *seen.origin.light.shape)))
-    wider = min(streak(wide, one.ends), streak(wide, one.picks))
-    if one.index == 1 and lines > OPEN_GRID_LINES and wider > OPEN_GRID_STREAK:
-        return True
-    return min(e.ends_streak, e.picks_streak) + wider > 2 * LEAST_STREAK
-
-
-def _hexagonal(one: Candidate) -> bool:
-    """Whether the lattice is that of a net or of close-packed dots: six equal neighbours."""
-    ratio = max(one.pixels) / min(one.pixels)
-    return one.index == 2 and abs(ratio / math.sqrt(3) - 1) < 0.015 and abs(one.skew) < 0.7
-
-
-def _silent(seen: Identified) -> bool:
-    """Whether one axis has no line of its own and the lattice does not make up for it."""
-    quiet = SILENT * seen.followed.loudest
-    for multiple, parts in zip((seen.ends, seen.picks), seen.candidate.parts, strict=True):
-        if multiple.amplitude < quiet and (seen.candidate.index == 1 or parts > 1):
-            return True
-    return False
 
 
 def _refused(*findings: Finding, tiles: tuple[Tile, ...] = ()) -> ThreadReading:
@@ -207,7 +178,7 @@ def _read(seen: Identified, region: Region, warp: Direction) -> ThreadReading:
     down = _set(seen, followed.picks, pieces, one.picks)
     if across is None or down is None:
         return _refused(found(Flag.TOO_FEW_THREADS), tiles=tiles)
-    names = ("ends", "picks") if warp == "vertical" else ("picks", "ends")
+    names = _names(warp)
     findings: list[Finding] = []
     forks = []
     for name, multiple, each in zip(names, (seen.ends, seen.picks), (across, down), strict=True):
