@@ -1,4 +1,4 @@
-"""Two readings of one set, and a declared weave that may decide between them as it helps a person."""
+"""Two readings of one set, and a declared weave that may decide as it helps a person."""
 
 from __future__ import annotations
 
