@@ -51,14 +51,14 @@ class Cells:
         return (passed - self.open_share) / covered if covered > 0 else 0.0
 
     @property
-    def warp(self) -> float:
-        """Share that the threads beside the pores (the ends) cover of all area."""
-        return float(1 - np.sum(self.open_width * self.height) / self._area)
+    def end_widths(self) -> Floats:
+        """Widths of the threads beside the pores."""
+        return self.width - self.open_width
 
     @property
-    def weft(self) -> float:
-        """Share that the threads above and below the pores (the picks) cover of all area."""
-        return float(1 - np.sum(self.open_height * self.width) / self._area)
+    def pick_widths(self) -> Floats:
+        """Widths of the threads above and below the pores."""
+        return self.height - self.open_height
 
     @property
     def _area(self) -> float:

@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
 
-from imgcover.cover.normal import Meets, Normal
+from imgcover.cover.normal import Meets, Normal, by_terms, multiply
 from imgcover.cover.openings import FAR, LOCAL, SHARED, TERMS, Optics, expect
 from imgcover.cover.places import Places
 from imgcover.cover.reading import Lattice
@@ -26,7 +27,7 @@ DEPTH, DEPTH_U = 2.8, 1.2
 """Yarns let through 6 % in the middle, within two standard uncertainties 0.5 % to 70 %."""
 ALIKE_U = 0.7
 """Ends and picks of one cloth are seldom more unlike than this."""
-EXCESS = 40.0
+EXCESS = 100.0
 """What the fit takes for noise is mostly uneven yarn, and errs alike in many pixels: what the
 picture says of the shared unknowns counts this many times less (tests/cover/sweep_cover.py)."""
 GLARE_U = 0.02
@@ -43,8 +44,10 @@ OUTLYING = 6.0
 """Pores that fit this many times worse than the usual one (mean square) count less."""
 STARTS = (1.0, 1.5)
 """Bare light over the brightest pores that the fit starts from: small pores never reach it."""
+FAIR = 0.02
+"""Misfit over the light of an explanation that is fair: no other start need be tried."""
 FIRST_ROUNDS, ROUNDS = 6, 12
-"""Steps from each start, and from the better of them: six or seven settle."""
+"""Steps while edges keep together, and steps at most after that: six or seven settle."""
 HELD = 0.1
 """At first edges keep together and the section is held: light, blur and depth come first."""
 SETTLED = 3e-4
@@ -103,20 +106,26 @@ class Fit:
         self._terms = light_terms(places.row, places.column, rows, columns)
         self._pitch = cell_sides(lattice)
         self._meets = Meets(places)
+        self._count = np.maximum(1, places.sound.sum(axis=(1, 2)))
+        self._columns = np.asarray(places.sound.any(axis=1), np.bool_)
+        self._rows = np.asarray(places.sound.any(axis=2), np.bool_)
         self._leans = (-lattice.ends[1] / lattice.ends[0], -lattice.picks[0] / lattice.picks[1])
 
     def solve(self) -> Fitted:
-        """Start from several lights, go on from the best, and stop when settled."""
-        tried = []
+        """Start from as many lights as it takes to explain the picture fairly."""
+        tried: list[Fitted] = []
         for brighter in STARTS:
-            edges, optics = self._start(brighter)
-            for _ in range(FIRST_ROUNDS):
-                edges, optics, _ = self._step(edges, optics, HELD)
-            tried.append((self._normal(edges, optics, HELD).usual, edges, optics))
-        _, edges, optics = min(tried, key=lambda each: each[0])
+            tried.append(self._from(*self._start(brighter)))
+            if tried[-1].usual < FAIR * float(np.exp(tried[-1].optics.light[0])):
+                break
+        return min(tried, key=lambda each: each.usual)
+
+    def _from(self, edges: Floats, optics: Optics) -> Fitted:
+        for _ in range(FIRST_ROUNDS):
+            edges, optics, _ = self._step(edges, optics, HELD)
         optics = self._told_by_usual(edges, optics)
         for k in range(ROUNDS):
-            edges, optics, change = self._step(edges, optics, HELD ** (0.5 if k == 0 else 0))
+            edges, optics, change = self._step(edges, optics, math.sqrt(HELD) if k == 0 else 1.0)
             if k > 2 and change < SETTLED:
                 break
         return self._fitted(edges, optics)
@@ -150,20 +159,18 @@ class Fit:
     def _normal(self, edges: Floats, optics: Optics, loose: float = 1.0) -> Normal:
         n = len(edges)
         expected = expect(self._places, edges, optics, self._terms)
-        sound = self._places.sound.reshape(n, -1)
-        off = ((self._places.patch - expected.light).reshape(n, -1)) * sound
-        square = np.sum(off**2, axis=1, dtype=np.float64) / np.maximum(1, sound.sum(axis=1))
+        off = (self._places.patch - expected.light) * self._places.sound
+        square = np.sum(off**2, axis=(1, 2), dtype=np.float64) / self._count
         usual = max(float(np.median(square)), 1e-10)
         weight = 1 / np.maximum(square / (OUTLYING * usual), 1)
-        both = np.concatenate(
-            [expected.by_edge, expected.by_shared, off.reshape(*expected.light.shape, 1)], axis=3
-        )
-        both = both.reshape(n, off.shape[1], -1) * sound[..., None]
-        gram = (both.transpose(0, 2, 1) @ both).astype(np.float64) * weight[:, None, None]
-        edge, rest = slice(0, LOCAL + FAR), slice(LOCAL + FAR, -1)
-        toward_own = self._meets.gather(gram[:, edge, -1:])[..., 0]
-        cross = self._meets.gather(gram[:, edge, rest])
-        shared, toward_shared = gram[:, rest, rest].sum(axis=0), gram[:, rest, -1].sum(axis=0)
+        products = multiply(expected, off, self._columns, self._rows)
+        gram, toward = products.gram * weight[:, None, None], products.toward * weight[:, None]
+        edge = slice(0, LOCAL + FAR)
+        common = by_terms(gram[:, LOCAL + FAR :, LOCAL + FAR :], self._terms)
+        shared = by_terms(common.transpose(0, 2, 1), self._terms).sum(axis=0)
+        toward_shared = by_terms(toward[:, None, LOCAL + FAR :], self._terms)[:, 0].sum(axis=0)
+        toward_own = self._meets.gather(toward[:, edge, None])[..., 0]
+        cross = self._meets.gather(by_terms(gram[:, edge, LOCAL + FAR :], self._terms))
         prior = np.zeros((n, LOCAL, LOCAL))
         self._expect_edges(prior, toward_own, edges, usual, loose)
         _expect_shared(shared, toward_shared, optics, usual, loose)

@@ -21,6 +21,21 @@ TERMS = 6
 """Coefficients of the light field: of 1, x, y, x², xy, y²."""
 SHARED = ("blur", "end depth", "pick depth", "section", "glare")
 """What all pores share beside the light field, in the order of the derivatives."""
+ROWS = (
+    "light",
+    "first",
+    "second",
+    "far first",
+    "far second",
+    "blur",
+    "depth",
+    "section",
+    "offset",
+    "even",
+)
+"""The profiles across one system: the light itself; how it changes with the pore's own two edges,
+with the far edges of the two threads beside it, and with blur, depth and section; the light times
+the distance from the pore's middle; and 1 everywhere."""
 WIDEST = 1.7
 """Half widths are tabulated to this many times the usual one; thick places seldom go beyond."""
 
@@ -49,21 +64,23 @@ class Optics:
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Expected:
-    """The light a set of openings lets through, and how it changes.
+    """The light a set of openings lets through, and the profiles it is the product of.
 
     Parameters
     ----------
     light : ndarray, shape (n, height, width)
-    by_edge : ndarray, shape (n, height, width, 8 + 4)
-        Derivatives by the pore's own edges and their leans, then by those edges of the pores to
-        the left, right, above and below that bound the threads between.
-    by_shared : ndarray, shape (n, height, width, 6 + 5)
-        Derivatives by the light's coefficients and by `SHARED`.
+    across : ndarray, shape (n, 10, width)
+        `ROWS` across the ends.
+    down : ndarray, shape (n, 10, height)
+        `ROWS` across the picks.
+    bare : ndarray, shape (n,)
+        Bare light at each pore.
     """
 
     light: Floats
-    by_edge: Floats
-    by_shared: Floats
+    across: Floats
+    down: Floats
+    bare: Floats
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -72,21 +89,15 @@ class _Profile:
 
     Parameters
     ----------
-    light : ndarray, shape (n, places)
-        Where the patch's middle line crosses the pore.
+    rows : ndarray, shape (n, 8, places)
+        The first eight of `ROWS`, along the patch's middle line.
     lean, bend : ndarray, shape (n, places)
-        First and second coefficient of its change along the threads.
-    by_yarn : ndarray, shape (n, places, 3)
-        Derivatives by blur, depth, section.
-    by_edge : ndarray, shape (n, places, 4)
-        By the pore's own two edges, then by the far edges of the two threads beside it.
+        First and second coefficient of the light's change along the threads.
     """
 
-    light: Floats
+    rows: Floats
     lean: Floats
     bend: Floats
-    by_yarn: Floats
-    by_edge: Floats
 
 
 def expect(
@@ -114,56 +125,40 @@ def expect(
     at = edges.astype(np.float32)
     x = np.arange(width, dtype=np.float32) - np.float32((width - 1) / 2)
     y = np.arange(height, dtype=np.float32) - np.float32((height - 1) / 2)
-    beside = _shifts(places.column, places.beside, places.beside_lacks)[..., None]
-    above = _shifts(places.row, places.above, places.above_lacks)[..., None]
     # Neighbours tell their edges at their own middles, a little further along the threads.
+    beside = _shifts(places.column, places.beside, places.beside_lacks)[..., None]
     beside = beside - _shifts(places.row, places.beside)[..., None] * at[:, 4:6][places.beside]
+    above = _shifts(places.row, places.above, places.above_lacks)[..., None]
     above = above - _shifts(places.column, places.above)[..., None] * at[:, 6:8][places.above]
+    blur = optics.blur_px
     across = _profile(
-        at[:, :2], at[:, 4:6], height / 3, x, places.beside, beside, optics.ends, optics.blur_px
+        at[:, :2], at[:, 4:6], height / 3, x, places.beside, beside, optics.ends, blur
     )
-    down = _profile(
-        at[:, 2:4], at[:, 6:8], width / 3, y, places.above, above, optics.picks, optics.blur_px
+    down = _profile(at[:, 2:4], at[:, 6:8], width / 3, y, places.above, above, optics.picks, blur)
+    x_off = x - at[:, :2].mean(axis=1)[:, None]
+    y_off = y - at[:, 2:4].mean(axis=1)[:, None]
+    bare = np.exp(terms @ optics.light).astype(np.float32)
+    ends = _led(across, y_off)
+    picks = _led(down, x_off).transpose(0, 2, 1)
+    return Expected(
+        light=bare[:, None, None] * ends * picks + np.float32(optics.glare),
+        across=_all_rows(across.rows, x_off),
+        down=_all_rows(down.rows, y_off),
+        bare=bare,
     )
-    bare = np.exp(terms @ optics.light).astype(np.float32)[:, None, None]
-    y_off = (y - at[:, 2:4].mean(axis=1)[:, None])[:, :, None]
-    x_off = (x - at[:, :2].mean(axis=1)[:, None])[:, None, :]
-    ends = across.light[:, None, :] + y_off * across.lean[:, None] + y_off**2 * across.bend[:, None]
-    picks = down.light[:, :, None] + x_off * down.lean[..., None] + x_off**2 * down.bend[..., None]
-    return _assembled(bare, ends, picks, across, down, (x_off, y_off), optics.glare, terms)
 
 
-def _assembled(
-    bare: Floats,
-    ends: Floats,
-    picks: Floats,
-    across: _Profile,
-    down: _Profile,
-    offsets: tuple[Floats, Floats],
-    glare: float,
-    terms: NDArray[np.float64],
-) -> Expected:
-    """Multiply the two profiles, and lay their derivatives into one array."""
-    light = bare * ends * picks
-    n, height, width = light.shape
-    by_edge = np.empty((n, height, width, LOCAL + FAR), np.float32)
-    ends, picks = (bare * ends)[..., None], (bare * picks)[..., None]
-    by_end, by_pick = picks * across.by_edge[:, None], ends * down.by_edge[:, :, None]
-    by_edge[..., 0:2], by_edge[..., 2:4] = by_end[..., :2], by_pick[..., :2]
-    np.multiply(by_edge[..., 0:2], offsets[1][..., None], out=by_edge[..., 4:6])
-    np.multiply(by_edge[..., 2:4], offsets[0][..., None], out=by_edge[..., 6:8])
-    by_edge[..., 8:10], by_edge[..., 10:12] = by_end[..., 2:], by_pick[..., 2:]
-    by_shared = np.empty((n, height, width, TERMS + len(SHARED)), np.float32)
-    np.multiply(
-        light[..., None], terms.astype(np.float32)[:, None, None, :], out=by_shared[..., :TERMS]
-    )
-    a, d = across.by_yarn[:, None], down.by_yarn[:, :, None]
-    by_shared[..., TERMS : TERMS + 1] = picks * a[..., :1] + ends * d[..., :1]
-    by_shared[..., TERMS + 1 : TERMS + 2] = picks * a[..., 1:2]
-    by_shared[..., TERMS + 2 : TERMS + 3] = ends * d[..., 1:2]
-    by_shared[..., TERMS + 3 : TERMS + 4] = picks * a[..., 2:] + ends * d[..., 2:]
-    by_shared[..., TERMS + 4] = 1
-    return Expected(light + np.float32(glare), by_edge, by_shared)
+def _led(profile: _Profile, along: Floats) -> Floats:
+    """Lead a profile along its threads: shape (n, places along, places across)."""
+    along = along[:, :, None]
+    led = profile.rows[:, None, 0] + along * profile.lean[:, None]
+    return np.asarray(led + along * along * profile.bend[:, None], np.float32)
+
+
+def _all_rows(rows: Floats, offset: Floats) -> Floats:
+    """Add the last two of `ROWS`."""
+    last = np.stack([rows[:, 0] * offset, np.ones_like(offset)], axis=1)
+    return np.concatenate([rows, last], axis=1)
 
 
 def _shifts(
@@ -204,13 +199,13 @@ def _profile(
     less, more = (shadow.dark(*threads(edges + side * lean)).sum(axis=1) for side in (-1, 1))
     # A thread's edge that moves by one moves its middle, and half its width, by a half.
     first, second = -(near[..., 4] + near[..., 5]) / 2, (near[..., 5] - near[..., 4]) / 2
-    by_edge = np.stack([-second[:, 0], -first[:, 1], -first[:, 0], -second[:, 1]], axis=-1)
+    by_yarn = near[..., 1:4].sum(axis=1)
+    rows = [1 - here, -second[:, 0], -first[:, 1], -first[:, 0], -second[:, 1]]
+    rows += [-by_yarn[..., k] for k in range(3)]
     return _Profile(
-        light=1 - here,
+        rows=np.stack(rows, axis=1).astype(np.float32),
         lean=(less - more) / np.float32(2 * reach),
         bend=(2 * here - less - more) / np.float32(2 * reach**2),
-        by_yarn=-near[..., 1:4].sum(axis=1),
-        by_edge=by_edge.astype(np.float32),
     )
 
 

@@ -8,7 +8,7 @@ import cv2
 import numpy as np
 from numpy.typing import NDArray
 
-from imgcover.cover.cells import cells_of
+from imgcover.cover.cells import Cells, cells_of
 from imgcover.cover.fitting import Fit, light_terms
 from imgcover.cover.fold import mean_cell
 from imgcover.cover.levels import Surface, open_pore_light, two_levels
@@ -23,7 +23,15 @@ from imgcover.cover.reading import (
     Pitch,
     Seen,
 )
-from imgcover.cover.windows import Sheet, Window, cell_sides, parts, spread, whole_periods
+from imgcover.cover.windows import (
+    PART_CELLS,
+    Sheet,
+    Window,
+    cell_sides,
+    parts,
+    spread,
+    whole_periods,
+)
 from imgcover.cover.witnesses import edge_bias, open_share, weighted
 from imgcover.findings import Flag, found
 from imgcover.quantity import Measured
@@ -36,6 +44,8 @@ FLOOR = 0.0015
 """What drawn cloths of known cover are off by where nothing else speaks."""
 MOST_BIAS = 0.25
 """Where blur makes the half-level edge miss more of the open area, the edge is no witness."""
+ONE_WITNESS = 0.004
+"""Pores that only the light tells of, not their edges, were measured no better than this."""
 FINER = 4
 """Sub-pixels a pixel for the half-level edge: the edge is then placed to a few hundredths px."""
 
@@ -116,17 +126,16 @@ def _by_openings(
     by_shared = fitted.open_by_shared / area
     u_fit = math.sqrt(max(0.0, float(by_shared @ fitted.covariance @ by_shared)))
     optical = two_level if threshold is None else (threshold + two_level) / 2
-    u = math.hypot(u_fit, FLOOR, optical - two_level)
-    # The openings were fitted in parts of the field; their gaps are brought to all of it.
-    wider = math.sqrt(max(0.0, 1 - optical) / max(cells.open_share, 1e-9))
+    u = math.hypot(u_fit, FLOOR, ONE_WITNESS if threshold is None else optical - two_level)
+    warp, weft = _systems(cells, lattice, optical, u)
     edges = np.linspace(0.0, 1.3, 131)
     values = np.concatenate([s[w > 0] for s, w in zip(shares, weights, strict=True)])
     return CoverReading(
         optical=Measured(optical, u, "1"),
         threshold=None if threshold is None else Measured(threshold, u, "1"),
         two_level=Measured(two_level, u, "1"),
-        warp=Measured(1 - (1 - cells.warp) * wider, u, "1"),
-        weft=Measured(1 - (1 - cells.weft) * wider, u, "1"),
+        warp=warp,
+        weft=weft,
         yarn_transmittance=Measured(yarn, FLOOR, "1"),
         pores=describe_pores(cells, lattice, pitch),
         light_field=LightField(
@@ -142,6 +151,26 @@ def _by_openings(
             for window, open_map in zip(windows, open_maps, strict=True)
         ),
         histogram=Histogram(edges, np.histogram(values, edges)[0].astype(np.int64)),
+    )
+
+
+def _systems(cells: Cells, lattice: Lattice, optical: float, u: float) -> tuple[Measured, Measured]:
+    """Each system's own share of the width, its threads' widths measured in parts of the field.
+
+    The widths of all threads are brought to agree with the cover of the whole field.
+    """
+    systems = []
+    for pitch, widths in zip(
+        cell_sides(lattice), (cells.end_widths, cells.pick_widths), strict=True
+    ):
+        # The cells of one thread in one part share its width: they count as one.
+        u_widths = float(widths.std()) / math.sqrt(widths.size / PART_CELLS)
+        systems.append((1 - float(widths.mean()) / pitch, u_widths / pitch))
+    (gap_x, u_x), (gap_y, u_y) = systems
+    wider = math.sqrt(max(0.0, 1 - optical) / max(gap_x * gap_y, 1e-9))
+    return (
+        Measured(1 - gap_x * wider, math.hypot(u_x, u), "1"),
+        Measured(1 - gap_y * wider, math.hypot(u_y, u), "1"),
     )
 
 

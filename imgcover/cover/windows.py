@@ -13,9 +13,9 @@ from imgcover.cover.reading import Lattice, Lit
 
 PIXELS_READ = 1_500_000
 """About this many pixels are measured: 0.1 s a step, and far more pores than the u needs."""
-PIXELS_FITTED = 60_000
-"""About this many pixels are fitted pore by pore: hundreds of pores, a third of a second."""
-PART_SIDE, PART_CELLS, FEWEST_PARTS = 48, 7, 4
+PIXELS_FITTED, PORES_FITTED = 60_000, 900
+"""So many pixels, and pores, are fitted at most: enough to tell light, blur and yarn apart."""
+PART_SIDE, PART_CELLS, FEWEST_PARTS = 48, 6, 6
 """Sides of a fitted part, px and threads, and how many at least: the light is fitted as well."""
 WINDOW_SIDE = 512
 """Side of one window of a large picture, px: tens of threads at any resolution that counts."""
@@ -107,31 +107,40 @@ def parts(windows: list[Window], lattice: Lattice) -> list[Window]:
     """
     across, down = cell_sides(lattice)
     height, width = (max(PART_SIDE, math.ceil(PART_CELLS * side)) for side in (down, across))
-    wanted = max(FEWEST_PARTS, round(PIXELS_FITTED / (height * width)))
+    most = PORES_FITTED * across * down
+    wanted = max(FEWEST_PARTS, round(min(PIXELS_FITTED, most) / (height * width)))
     cut = []
     for window in windows:
-        rows, columns = window.light.shape
-        share = wanted / len(windows)
-        grid_rows = max(1, round(math.sqrt(share * rows / columns)))
-        grid_columns = max(1, round(share / grid_rows))
-        for row in _starts(rows, height, grid_rows):
-            for column in _starts(columns, width, grid_columns):
-                place = (slice(row, row + height), slice(column, column + width))
-                part = Window(
+        for row, column in _places(window.light.shape, height, width, wanted / len(windows)):
+            place = (slice(row, row + height), slice(column, column + width))
+            cut.append(
+                Window(
                     window.row + row,
                     window.column + column,
                     window.light[place],
                     window.inside[place],
                 )
-                cut.append(part)
+            )
     return cut
 
 
-def _starts(length: int, side: int, count: int) -> list[int]:
-    """Where parts begin so that they lie evenly and do not overlap more than they must."""
-    room = max(0, length - side)
-    middles = (np.arange(count) + 0.5) / count * length - side / 2
-    return [int(each) for each in np.unique(np.clip(np.rint(middles), 0, room))]
+def _places(
+    shape: tuple[int, ...], height: int, width: int, wanted: float
+) -> list[tuple[int, int]]:
+    """Spread parts so that no two of them look at the same threads where that can be helped."""
+    count = max(1, round(wanted))
+    step = next(
+        k for k in range(max(1, round(0.618 * count)), count + 2) if math.gcd(k, count) == 1
+    )
+    places = []
+    for k in range(count):
+        shares = ((k * step % count + 0.5) / count, (k + 0.5) / count)
+        row, column = (
+            min(max(0, round(share * length - side / 2)), max(0, length - side))
+            for share, length, side in zip(shares, shape, (height, width), strict=True)
+        )
+        places.append((row, column))
+    return sorted(set(places))
 
 
 def _bounds(source: Lit, field: NDArray[np.bool_] | None) -> tuple[int, int, int, int]:
