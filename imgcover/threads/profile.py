@@ -13,7 +13,6 @@ from fractions import Fraction
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.signal import find_peaks
 
 from imgcover.repeat.phase import Transformed, demodulate
 from imgcover.repeat.spectrum import HIGHEST_FREQUENCY
@@ -171,6 +170,9 @@ def _ridges(
 
 
 def _count(profile: NDArray[np.float64], share: float) -> int:
+    # half a second to import, and needed for few pictures
+    from scipy.signal import find_peaks
+
     around = np.roll(profile, -int(profile.argmin()))
     closed = np.append(around, around[0])
     found, _ = find_peaks(closed, prominence=share * float(np.ptp(profile)))
