@@ -8,13 +8,11 @@ from multiprocessing.connection import wait
 from types import TracebackType
 from typing import Any, Self
 
-from imgcover.audit.hand import FAULTED, FINISHED, NO_MEMORY, READY, Hand
+from imgcover.audit.hand import FAULTED, FINISHED, NO_MEMORY, READY, START_S, Hand
 from imgcover.audit.outcome import Answer, Done, Load, Loss, Lost
 
 MOST_FALSE_STARTS = 3
-"""Workers in a row that end before they listen: Python itself cannot be started any more."""
-START_S = 180.0
-"""A process that does not listen by then never will."""
+"""Workers in a row that end before they are ready: the machine cannot carry them."""
 
 
 class LocalCrew:
@@ -36,6 +34,7 @@ class LocalCrew:
         self._most = hands
         self._limit_s = limit_s
         self._hands: list[Hand] = []
+        self._false_starts = 0
 
     def __enter__(self) -> Self:
         return self
@@ -109,24 +108,14 @@ class LocalCrew:
                 return
             index, load = following
             idle = next((hand for hand in self._hands if hand.index is None), None)
-            hand = self._started() if idle is None else idle
+            hand = self._started(work) if idle is None else idle
             underway[index] = load
             hand.give(index, work, load, self._limit_s)
 
-    def _started(self) -> Hand:
-        """Start a worker and wait until it listens; libraries are loaded with the first work."""
-        said = ""
-        for _ in range(MOST_FALSE_STARTS):
-            hand = Hand()
-            try:
-                if wait([hand.pipe], timeout=START_S) and hand.take()[0] == READY:
-                    self._hands.append(hand)
-                    return hand
-            except (EOFError, OSError):
-                pass
-            said = hand.how_it_ended()
-            hand.end()
-        raise RuntimeError(f"no worker process could be started: the last {said}")
+    def _started(self, work: Callable[[Any], Any]) -> Hand:
+        hand = Hand(work)
+        self._hands.append(hand)
+        return hand
 
     def _gather(self) -> Iterator[Done[Any] | Lost]:
         """Wait for an answer, a death or a deadline, whichever comes first."""
@@ -134,27 +123,54 @@ class LocalCrew:
         patience = min(hand.until for hand in busy) - time.monotonic()
         spoken = set(wait([hand.pipe for hand in busy], timeout=max(0.0, patience)))
         for hand in busy:
+            overrun = time.monotonic() >= hand.until
             if hand.pipe in spoken:
-                yield self._heard(hand)
-            elif time.monotonic() >= hand.until:
-                index = hand.index
-                self._remove(hand)
-                assert index is not None
-                yield Lost(index, Loss.HUNG, f"not done in {self._limit_s:g} s")
+                outcome = self._heard(hand)
+            elif overrun:
+                outcome = self._overrun(hand)
+            else:
+                continue
+            if outcome is not None:
+                yield outcome
 
-    def _heard(self, hand: Hand) -> Done[Any] | Lost:
+    def _heard(self, hand: Hand) -> Done[Any] | Lost | None:
         index = hand.index
         assert index is not None
         try:
             kind, said = hand.take()
         except (EOFError, OSError):
-            how = hand.how_it_ended()
-            self._remove(hand)
-            return Lost(index, Loss.DIED, how)
+            return self._died(hand, index)
+        if not hand.is_ready:
+            if kind != READY:
+                raise RuntimeError(f"a worker process cannot load the program: {said}")
+            self._false_starts = 0
+            hand.ready()
+            return None
         hand.index = None
         if kind == FINISHED:
             return Done(index, said)
         return Lost(index, {FAULTED: Loss.FAULT, NO_MEMORY: Loss.DIED}[kind], str(said))
+
+    def _died(self, hand: Hand, index: int) -> Lost:
+        how = hand.how_it_ended()
+        if not hand.is_ready:
+            self._false_start(how)
+        self._remove(hand)
+        return Lost(index, Loss.DIED, how)
+
+    def _overrun(self, hand: Hand) -> Lost:
+        index = hand.index
+        assert index is not None
+        if not hand.is_ready:
+            self._false_start(f"did not load its libraries in {START_S:g} s")
+        self._remove(hand)
+        return Lost(index, Loss.HUNG, f"not done in {self._limit_s:g} s")
+
+    def _false_start(self, how: str) -> None:
+        """Give up when no worker gets as far as work; one alone may be chance."""
+        self._false_starts += 1
+        if self._false_starts >= MOST_FALSE_STARTS:
+            raise RuntimeError(f"no worker process could be started: the last {how}")
 
     def _remove(self, hand: Hand) -> None:
         self._hands.remove(hand)

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import contextlib
-import math
 import multiprocessing
 import os
 import pickle
@@ -29,10 +28,21 @@ THREAD_SETTINGS = (
 CLOSING_S = 2.0
 
 
-class Hand:
-    """A worker process and the pipe to it."""
+START_S = 300.0
+"""A process that has not loaded its libraries by then never will."""
 
-    def __init__(self) -> None:
+
+class Hand:
+    """A worker process and the pipe to it.
+
+    Parameters
+    ----------
+    work : callable
+        What it will first be asked for: it loads the libraries of that, and then says READY. That
+        takes seconds, and is not counted against the first piece of work.
+    """
+
+    def __init__(self, work: Callable[[Any], Any]) -> None:
         context = multiprocessing.get_context("spawn")
         self.pipe, theirs = context.Pipe()
         self._process = context.Process(target=_serve, args=(theirs,), daemon=True)
@@ -41,15 +51,33 @@ class Hand:
         # kept open here, a dead worker's end would never read as closed
         theirs.close()
         self.index: int | None = None
-        self.until = math.inf
+        self.is_ready = False
+        self.until = time.monotonic() + START_S
+        self._order = b""
+        self._limit_s = 0.0
+        self._send(pickle.dumps(work))
 
     def give(self, index: int, work: Callable[[Any], Any], load: object, limit_s: float) -> None:
-        """Hand out one piece of work; the clock starts now."""
+        """Hand out one piece of work; its clock starts when the worker is ready."""
         self.index = index
-        self.until = time.monotonic() + limit_s
+        self._order = pickle.dumps((work, load))
+        self._limit_s = limit_s
+        if self.is_ready:
+            self._begin()
+
+    def ready(self) -> None:
+        """It has loaded its libraries, and starts on what it was given."""
+        self.is_ready = True
+        self._begin()
+
+    def _begin(self) -> None:
+        self.until = time.monotonic() + self._limit_s
+        self._send(self._order)
+
+    def _send(self, content: bytes) -> None:
         with contextlib.suppress(BrokenPipeError, ConnectionResetError):
-            # it died while idle: reading from it tells, and the work is given again
-            self.pipe.send_bytes(pickle.dumps((work, load)))
+            # it died meanwhile: reading from it tells
+            self.pipe.send_bytes(content)
 
     def take(self) -> tuple[str, Any]:
         """Receive what it says; only when its pipe can be read.
@@ -107,21 +135,32 @@ def _serve(pipe: Connection) -> None:
     # Ctrl-C reaches the whole group; the parent decides what becomes of the work
     signal.signal(signal.SIGINT, signal.SIG_IGN)
     _leave_with_parent()
-    pipe.send((READY, None))
-    _quiet()
+    listening = False
     while True:
         try:
             order = pipe.recv_bytes()
         except (EOFError, OSError):
             return
         try:
-            pipe.send(_done(order))
+            pipe.send(_done(order) if listening else _loaded(order))
         except OSError:
             return
+        if not listening:
+            listening = True
+            _quiet()
+
+
+def _loaded(order: bytes) -> tuple[str, Any]:
+    """Load what the work needs; reading the name of a function imports its module."""
+    try:
+        pickle.loads(order)
+    except BaseException as fault:
+        return FAULTED, "".join(traceback.format_exception(fault))
+    return READY, None
 
 
 def _done(order: bytes) -> tuple[str, Any]:
-    """Do what was ordered; reading the order loads the libraries it needs."""
+    """Do what was ordered."""
     try:
         work, load = pickle.loads(order)
         return FINISHED, work(load)
@@ -156,4 +195,4 @@ def _quiet() -> None:
     os.close(nowhere)
 
 
-__all__ = ["FAULTED", "FINISHED", "NO_MEMORY", "READY", "Hand"]
+__all__ = ["FAULTED", "FINISHED", "NO_MEMORY", "READY", "START_S", "Hand"]

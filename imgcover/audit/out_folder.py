@@ -6,8 +6,9 @@ import contextlib
 import hashlib
 import os
 import re
-from collections.abc import Callable, Container, Iterator
+from collections.abc import Container, Iterator
 from pathlib import Path
+from typing import BinaryIO
 
 from imgcover.errors import OutputError
 
@@ -53,11 +54,11 @@ class OutFolder:
         OutputError
             When it cannot be written.
         """
-        with self.writing(name) as write:
-            write(content if isinstance(content, bytes) else content.encode())
+        with self.opened(name) as file:
+            file.write(content if isinstance(content, bytes) else content.encode())
 
     @contextlib.contextmanager
-    def writing(self, name: str) -> Iterator[Callable[[bytes], None]]:
+    def opened(self, name: str) -> Iterator[BinaryIO]:
         """Open a file that appears whole when this ends well, and not at all otherwise."""
         place = self.root / name
         # two audits may write here at once
@@ -65,11 +66,7 @@ class OutFolder:
         with _told(place):
             try:
                 with beside.open("wb") as file:
-
-                    def write(content: bytes) -> None:
-                        file.write(content)
-
-                    yield write
+                    yield file
                     file.flush()
                     os.fsync(file.fileno())
                 beside.replace(place)

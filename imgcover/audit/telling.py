@@ -205,15 +205,18 @@ def _gave_nothing(each: Member) -> bool:
 
 
 def _write_records(round_: Round, lots: list[ToldLot]) -> None:
-    with round_.out.writing("records.jsonl") as write:
+    with round_.out.opened("records.jsonl") as file:
         for _, row in _rows(round_, tuple(range(len(round_.listing.pictures)))):
-            write(f"{canonical(record_in(row.entry))}\n".encode())
+            file.write(f"{canonical(record_in(row.entry))}\n".encode())
         for lot in lots:
-            write(f"{canonical(lot.record(round_.ledger))}\n".encode())
+            file.write(f"{canonical(lot.record(round_.ledger))}\n".encode())
 
 
 def _write_workbook(round_: Round, lots: list[ToldLot], about: About) -> None:
-    with AuditWorkbook(round_.out.root) as book:
+    with (
+        round_.out.opened("report.xlsx") as file,
+        AuditWorkbook(file, scratch=round_.out.scratch) as book,
+    ):
         for lot in lots:
             book.lot(lot.record(round_.ledger))
             for _, row in _rows(round_, lot.indices):
@@ -227,7 +230,6 @@ def _write_workbook(round_: Round, lots: list[ToldLot], about: About) -> None:
                 ("ledger head", about.head),
             ]
         )
-    round_.out.write("report.xlsx", book.content)
 
 
 def _page_order(round_: Round, lot: ToldLot, about: About) -> PageOrder:

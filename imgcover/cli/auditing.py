@@ -165,11 +165,11 @@ class Audit:
                 write(headline(lot.record(round_.ledger), units=lot.units) + "\n")
         unlisted = len(round_.listing.unlisted)
         if unlisted:
-            tell(f"{unlisted} pictures lie in the folder but not in {round_.listing.sheet}")
+            tell(f"in the folder but not in {round_.listing.sheet}: {_pictures(unlisted)}")
         counts = {How.MEASURED: "measured", How.KNOWN: "known from before"}
         counts |= {How.LOST: "lost", How.REFUSED: "refused"}
         said = ", ".join(f"{how[each]} {word}" for each, word in counts.items() if how[each])
-        tell(f"{len(round_.listing.pictures)} pictures: {said}")
+        tell(f"{_pictures(len(round_.listing.pictures))}: {said}")
         tell(lead(Counter(lot.decision for lot in lots)))
 
 
@@ -196,7 +196,8 @@ def _watched(audit: Audit, asked: AuditAsked, out: OutFolder) -> ExitCode:
         if now != done and listing.pictures:
             audit.round(listing)
             done = now
-            tell(f"{waiting} pictures are not whole yet" if waiting else "waiting for pictures")
+            still = f"; not whole yet: {_pictures(waiting)}" if waiting else ""
+            tell(f"waiting for pictures{still}")
     return ExitCode.CONFORMS
 
 
@@ -225,6 +226,10 @@ def _code(round_: Round, lot: ToldLot) -> ExitCode:
 
 def _name(round_: Round, told: Told) -> str:
     return round_.listing.pictures[told.index].name
+
+
+def _pictures(n: int) -> str:
+    return f"{n} picture{'' if n == 1 else 's'}"
 
 
 def _last_line(said: str) -> str:

@@ -2,11 +2,10 @@
 
 from __future__ import annotations
 
-import io
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
-from typing import TYPE_CHECKING, Any, Self
+from typing import TYPE_CHECKING, Any, BinaryIO, Self
 
 from imgcover.report.lots_csv import QUANTITIES, lot_values
 from imgcover.report.plain import plain
@@ -82,21 +81,22 @@ FINDINGS = {
 class AuditWorkbook:
     """A workbook that is written as the audit is told, one row in memory at a time.
 
-    A context manager; `content` is the file once it is closed.
+    A context manager; the file is written when it ends well.
 
     Parameters
     ----------
+    file : BinaryIO
+        Where the workbook goes.
     scratch : Path
         A folder for the rows of finished sheets until then.
     """
 
-    def __init__(self, scratch: Path) -> None:
+    def __init__(self, file: BinaryIO, *, scratch: Path) -> None:
         from xlsxwriter import Workbook
 
-        self._buffer = io.BytesIO()
         # text stays text whatever it begins with; rows go to the file as they are finished
         self._book = Workbook(
-            self._buffer,
+            file,
             {
                 "constant_memory": True,
                 "tmpdir": str(scratch),
@@ -136,11 +136,6 @@ class AuditWorkbook:
             self._pictures.finish()
             self._findings.finish()
             self._book.close()
-
-    @property
-    def content(self) -> bytes:
-        """The file's bytes."""
-        return self._buffer.getvalue()
 
     def lot(self, lot: Mapping[str, Any]) -> None:
         """Add a lot, schema imgcover/lot/1, and its findings."""

@@ -2,6 +2,7 @@
 
 import time
 
+import audit_rig
 import cluster_rig
 import crew_work
 import pytest
@@ -47,6 +48,16 @@ def test_workers_with_other_versions_are_refused(running):
         ClusterCrew(
             running.address, limit_s=9, certificates=cluster_rig.TLS, alike=crew_work.unlike
         )
+
+
+def test_pictures_travel_as_bytes_or_by_path_and_records_are_the_same(running, tmp_path):
+    goods = tmp_path / "goods"
+    audit_rig.lay(goods, {"A": 2})
+    audit_rig.audit_inline(goods, tmp_path / "here")
+    for send in ("bytes", "path"):
+        with joined(running) as crew:
+            audit_rig.audit_inline(goods, tmp_path / send, crew=crew, send=send == "bytes")
+        assert audit_rig.timeless(tmp_path / send) == audit_rig.timeless(tmp_path / "here")
 
 
 def test_a_lost_worker_loses_nothing(running):

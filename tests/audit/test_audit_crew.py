@@ -71,6 +71,25 @@ def test_what_cannot_be_loaded_is_a_fault():
     assert "no_such_library" in lost.said
 
 
+def test_loading_the_program_takes_no_time_from_the_first_picture():
+    # its module sleeps for two seconds when it is loaded
+    import slow_to_load
+
+    with LocalCrew(hands=1, limit_s=1.0) as crew:
+        assert list(crew.run(slow_to_load.double, [(0, 4)])) == [Done(0, 8)]
+
+
+def test_a_program_that_cannot_be_loaded_is_not_blamed_on_pictures(tmp_path, monkeypatch):
+    (tmp_path / "goes_away.py").write_text("def work(n):\n    return n\n")
+    monkeypatch.syspath_prepend(str(tmp_path))
+    import goes_away
+
+    (tmp_path / "goes_away.py").write_text("import no_such_library\n")
+    crew = LocalCrew(hands=2, limit_s=30)
+    with pytest.raises(RuntimeError, match="no_such_library"), crew:
+        list(crew.run(goes_away.work, enumerate(range(4))))
+
+
 def alive(pid: int) -> bool:
     try:
         os.kill(pid, 0)

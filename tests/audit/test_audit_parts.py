@@ -159,8 +159,8 @@ def test_a_file_just_written_is_read_again(tmp_path):
 def test_a_file_appears_whole_or_not_at_all(tmp_path):
     out = OutFolder(tmp_path / "out")
     out.write("a.txt", "one")
-    with pytest.raises(RuntimeError), out.writing("a.txt") as write:
-        write(b"tw")
+    with pytest.raises(RuntimeError), out.opened("a.txt") as file:
+        file.write(b"tw")
         raise RuntimeError
     assert (tmp_path / "out" / "a.txt").read_text() == "one"
     assert not list((tmp_path / "out").glob(".*.part"))

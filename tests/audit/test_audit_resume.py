@@ -10,6 +10,8 @@ import audit_rig
 import pytest
 from audit_rig import audit_inline, lay, records, timeless
 
+from imgcover.audit.outcome import Loss, Lost
+from imgcover.audit.work import Answer
 from imgcover.cli.exits import ExitCode
 from imgcover.errors import LotSheetError
 
@@ -30,7 +32,7 @@ def test_a_second_run_measures_only_what_changed(tmp_path, capsys):
     sheet = goods / "lots.csv"
     whole = sheet.read_text()
     # a pitch of half: that picture is measured again, and its lot with it
-    sheet.write_text(whole.replace("2,backlit,24px/mm", "2,backlit,12px/mm"))
+    sheet.write_text(whole.replace("2,24px/mm", "2,12px/mm"))
     audit_inline(goods, out)
     assert "3 pictures: 1 measured, 2 known from before" in capsys.readouterr().err
     assert records(out)[2]["threads"]["ends"]["value"] == pytest.approx(12.5, rel=0.01)
@@ -113,9 +115,56 @@ def test_a_copy_of_a_picture_is_not_another_place(tmp_path):
     first = tmp_path / "goods" / "A-1.png"
     (tmp_path / "goods" / "A-2.png").write_bytes(first.read_bytes())
     with (tmp_path / "goods" / "lots.csv").open("a") as sheet:
-        sheet.write("A-2.png,A,G-1,2,backlit,24px/mm\n")
+        sheet.write("A-2.png,A,G-1,2,24px/mm\n")
     code = audit_inline(tmp_path / "goods", tmp_path / "out")
     lot = records(tmp_path / "out")[-1]
     assert lot["n_places"] == 1
     assert "same-picture-twice" in {each["code"] for each in lot["findings"]}
     assert code is ExitCode.UNDECIDED
+
+
+class Unlucky(audit_rig.Inline):
+    """A crew that loses its second picture."""
+
+    def __init__(self, loss):
+        self._loss = loss
+
+    def run(self, work, loads):
+        for done in super().run(work, loads):
+            lost = done.index == 1 and isinstance(done.answer, Answer)
+            yield Lost(1, self._loss, "line one\nplanted") if lost else done
+
+
+@pytest.mark.parametrize(
+    ("loss", "flag", "code"),
+    [
+        (Loss.DIED, "measuring-died", ExitCode.UNDECIDED),
+        (Loss.HUNG, "measuring-took-too-long", ExitCode.UNDECIDED),
+        (Loss.FAULT, "program-fault", ExitCode.BUG),
+    ],
+)
+def test_a_lost_picture_has_its_record_and_is_tried_again(tmp_path, capsys, loss, flag, code):
+    goods, out = tmp_path / "goods", tmp_path / "out"
+    lay(goods, {"A": 2})
+    # one of two places is left, and one place never decides a lot
+    assert audit_inline(goods, out, crew=Unlucky(loss)) is code
+    assert "A-2.png: planted" in capsys.readouterr().err
+    lost = records(out)[1]
+    assert [each["code"] for each in lost["findings"] if each["severity"] == "refusal"] == [flag]
+    assert lost["threads"] is None and lost["sample"]["place"] == "2"
+    assert audit_inline(goods, out) is ExitCode.CONFORMS
+    assert "1 measured, 1 known from before" in capsys.readouterr().err
+    assert records(out)[1]["threads"] is not None
+
+
+def test_a_file_that_an_option_names_and_cannot_be_used_is_said(tmp_path, capsys):
+    goods, out = tmp_path / "goods", tmp_path / "out"
+    lay(goods, {"A": 1})
+    (goods / "blank.png").write_bytes(b"no picture")
+    sheet = goods / "lots.csv"
+    sheet.write_text(
+        sheet.read_text().replace("pitch\n", "pitch,blank\n").replace("/mm", "/mm,blank.png")
+    )
+    assert audit_inline(goods, out) is ExitCode.USAGE
+    assert "blank" in capsys.readouterr().err
+    assert records(out)[0]["findings"][0]["code"] == "option-unusable"

@@ -25,7 +25,7 @@ def test_pictures_are_measured_as_they_come_and_half_written_ones_waited_for(tmp
         listener = threading.Thread(target=lambda: said.extend(process.stderr))
         listener.start()
         try:
-            heard(said, "1 pictures are not whole yet")
+            heard(process, said, "not whole yet: 1 picture\n")
             assert [r["picture"]["name"] for r in pictures(out)] == ["A-1.png"]
             # as a scanner writes: a piece, a pause, the rest
             with (goods / "A-2.png").open("wb") as file:
@@ -34,7 +34,7 @@ def test_pictures_are_measured_as_they_come_and_half_written_ones_waited_for(tmp
                     file.write(late[n * part : (n + 1) * part])
                     file.flush()
                     time.sleep(0.7)
-            heard(said, "waiting for pictures")
+            heard(process, said, "waiting for pictures\n")
         finally:
             process.send_signal(signal.SIGINT)
             process.wait(60)
@@ -47,10 +47,10 @@ def test_pictures_are_measured_as_they_come_and_half_written_ones_waited_for(tmp
     assert "2 pictures: 1 measured, 1 known from before" in "".join(said)
 
 
-def heard(said: list[str], words: str) -> None:
+def heard(process: subprocess.Popen[str], said: list[str], words: str) -> None:
     until = time.monotonic() + 120
     while not any(words in line for line in said):
-        assert time.monotonic() < until, said
+        assert process.poll() is None and time.monotonic() < until, said
         time.sleep(0.05)
 
 

@@ -16,8 +16,8 @@ LOT = "R5102"
 """The lot that was woven with too few picks."""
 SEEN = (100, 20, 900, 1010)
 """The piece of the page that the README shows, px: decision, figures, places against limits."""
-COLOURS = 64
-"""Enough for a page of text and lines, and a third of the bytes."""
+COLOURS = 160
+"""Enough for a page of text and lines, and half of the bytes."""
 
 
 def main() -> int:

@@ -29,13 +29,14 @@ RECORD = {
 @pytest.fixture
 def book(tmp_path):
     lots = [lot_record("good"), {**lot_record("short"), "lot": "=1+1"}]
-    with AuditWorkbook(tmp_path) as made:
+    file = io.BytesIO()
+    with AuditWorkbook(file, scratch=tmp_path) as made:
         for lot in lots:
             made.lot(lot)
         made.picture(RECORD, row=3)
         made.about([("ledger head", "3:abc"), ("folder", "=1")])
     assert list(tmp_path.iterdir()) == []
-    return load_workbook(io.BytesIO(made.content))
+    return load_workbook(io.BytesIO(file.getvalue()))
 
 
 def column(sheet, title):
