@@ -43,6 +43,10 @@ LEAST_AGREEING = 0.75
 """Share of the clear tiles that must agree on the density: a few hold a burl or a hole, but where
 many differ the threads were not followed."""
 
+CLEAR_SCORE, COARSE_PIXELS = 8.0, 18.0
+"""A score most drawn cloths reach, with enough threads in a window: the smaller picture is then not
+asked."""
+
 FINEST_WHEN_SMALL = 6.0
 """Pixels a thread left in a picture made smaller: finer threads are read at full size, and what
 they leave in the smaller picture is not a thread."""
@@ -150,12 +154,19 @@ def _best_zoom(source: LightSource, region: Region) -> Identified | None:
     for zoom in (1, 3):
         if zoom > 1 and min(region.width, region.height) < 128 * zoom:
             break
+        if best is not None and _clear(best):
+            break
         seen = identify(field_of(source, region, zoom))
         if seen is None or (zoom > 1 and min(seen.candidate.pixels) < FINEST_WHEN_SMALL):
             continue
         if best is None or seen.evidence.score > best.evidence.score:
             best = seen
     return best
+
+
+def _clear(seen: Identified) -> bool:
+    """Whether a reading needs no second look at a smaller scale."""
+    return seen.evidence.score > CLEAR_SCORE and max(seen.candidate.pixels) < COARSE_PIXELS
 
 
 def _refused(*findings: Finding, tiles: tuple[Tile, ...] = ()) -> ThreadReading:

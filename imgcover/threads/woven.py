@@ -42,11 +42,14 @@ def crossing(seen: Identified) -> bool:
     regular = one.index > 2 and one.parts == (1, 1) and e.against < 0.05 and e.apart < 0.15
     if regular and abs(one.turn) < 12 and lines > REGULAR_LINES and e.score > REGULAR_SCORE:
         return True
+    narrow = min(e.ends_streak, e.picks_streak)
+    if narrow > 2 * LEAST_STREAK:
+        return True
     wide = spectrum(windows_of(seen.origin, min(2 * WINDOW, *seen.origin.light.shape)))
     wider = min(streak(wide, one.ends), streak(wide, one.picks))
     if one.index == 1 and lines > OPEN_GRID_LINES and wider > OPEN_GRID_STREAK:
         return True
-    return min(e.ends_streak, e.picks_streak) + wider > 2 * LEAST_STREAK
+    return narrow + wider > 2 * LEAST_STREAK
 
 
 def _hexagonal(one: Candidate) -> bool:
