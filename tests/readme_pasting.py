@@ -16,13 +16,15 @@ import sys
 import tempfile
 from pathlib import Path
 
-from imgcover.cli.exits import MEANING
+from imgcover.cli.exits import MEANING, ExitCode
 from imgcover.findings import Flag
 
 ROOT = Path(__file__).resolve().parent.parent
 README = ROOT / "README.md"
 CONSOLE = re.compile(r"```console\n\$ (?P<command>imgcover[^\n]*)\n(?P<shown>.*?)```", re.DOTALL)
 TABLE = re.compile(r"<!-- (?P<name>\w+) -->\n(?P<shown>.*?)<!-- -->", re.DOTALL)
+FAULTS = {ExitCode.USAGE, ExitCode.BUG, ExitCode.OUTPUT}
+"""No README shows a command that ends so: what it said then is not to be pasted."""
 
 
 def told(command: str) -> str:
@@ -49,6 +51,8 @@ def told(command: str) -> str:
             text=True,
             encoding="utf-8",
         )
+    if ended.returncode in FAULTS:
+        raise RuntimeError(f"{command}: exit {ended.returncode}: {ended.stderr}")
     return ended.stdout
 
 
