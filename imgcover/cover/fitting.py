@@ -99,22 +99,39 @@ class Fitted:
 
 
 class Fit:
-    """One least-squares problem: the pores, and what is expected of them before looking."""
+    """One least-squares problem: the pores, and what is expected of them before looking.
 
-    def __init__(self, places: Places, lattice: Lattice, *, rows: int, columns: int) -> None:
+    Parameters
+    ----------
+    places : Places
+    lattice : Lattice
+    rows, columns : int
+        Size of the picture, px.
+    known_light_u : float or None
+        Relative standard uncertainty of the bare light when the patches are given as shares of
+        it; None when the light is to be found.
+    """
+
+    def __init__(
+        self,
+        places: Places,
+        lattice: Lattice,
+        *,
+        rows: int,
+        columns: int,
+        known_light_u: float | None = None,
+    ) -> None:
         self._places = places
         self._terms = light_terms(places.row, places.column, rows, columns)
         self._pitch = cell_sides(lattice)
         self._meets = Meets(places)
-        self._count = np.maximum(1, places.sound.sum(axis=(1, 2)))
-        self._columns = np.asarray(places.sound.any(axis=1), np.bool_)
-        self._rows = np.asarray(places.sound.any(axis=2), np.bool_)
+        self._known_light_u = known_light_u
         self._leans = (-lattice.ends[1] / lattice.ends[0], -lattice.picks[0] / lattice.picks[1])
 
     def solve(self) -> Fitted:
         """Start from as many lights as it takes to explain the picture fairly."""
         tried: list[Fitted] = []
-        for brighter in STARTS:
+        for brighter in STARTS if self._known_light_u is None else STARTS[:1]:
             tried.append(self._from(*self._start(brighter)))
             if tried[-1].usual < FAIR * float(np.exp(tried[-1].optics.light[0])):
                 break
@@ -150,8 +167,9 @@ class Fit:
             edges[:, k], edges[:, k + 1] = place - gap / 2, place + gap / 2
             edges[:, 4 + k : 6 + k] = lean
         light = np.zeros(TERMS)
-        light[0] = np.log(high * brighter)
-        depth = 0.7 * float(np.log(high * brighter / low))
+        bare = high * brighter if self._known_light_u is None else 1.0
+        light[0] = np.log(bare)
+        depth = 0.7 * float(np.log(bare / low)) if bare > low else DEPTH
         ends = Yarn(float(across - width) / 2, depth, SECTION)
         picks = Yarn(float(down - height) / 2, depth, SECTION)
         return edges, Optics(light, BLUR, ends, picks, 0.1 * low)
@@ -160,10 +178,14 @@ class Fit:
         n = len(edges)
         expected = expect(self._places, edges, optics, self._terms)
         off = (self._places.patch - expected.light) * self._places.sound
-        square = np.sum(off**2, axis=(1, 2), dtype=np.float64) / self._count
+        # A clipped pixel only tells that there was at least so much light.
+        counts = self._places.sound & ~(self._places.clipped & (off < 0))
+        off = off * counts
+        square = np.sum(off**2, axis=(1, 2), dtype=np.float64)
+        square = square / np.maximum(1, counts.sum(axis=(1, 2)))
         usual = max(float(np.median(square)), 1e-10)
         weight = 1 / np.maximum(square / (OUTLYING * usual), 1)
-        products = multiply(expected, off, self._columns, self._rows)
+        products = multiply(expected, off, counts)
         gram, toward = products.gram * weight[:, None, None], products.toward * weight[:, None]
         edge = slice(0, LOCAL + FAR)
         common = by_terms(gram[:, LOCAL + FAR :, LOCAL + FAR :], self._terms)
@@ -174,6 +196,10 @@ class Fit:
         prior = np.zeros((n, LOCAL, LOCAL))
         self._expect_edges(prior, toward_own, edges, usual, loose)
         _expect_shared(shared, toward_shared, optics, usual, loose)
+        if self._known_light_u is not None:
+            stiff = usual / self._known_light_u**2
+            shared[:TERMS, :TERMS] += stiff * np.eye(TERMS)
+            toward_shared[:TERMS] -= stiff * optics.light
         return Normal(
             gram[:, edge, edge],
             prior,

@@ -48,31 +48,36 @@ class Products:
     toward: Floats
 
 
-def multiply(
-    expected: Expected, off: NDArray[np.float32], across: NDArray[np.bool_], down: NDArray[np.bool_]
-) -> Products:
-    """Multiply the derivatives, which being products of profiles need no pixel.
+def multiply(expected: Expected, off: NDArray[np.float32], counts: NDArray[np.bool_]) -> Products:
+    """Multiply the derivatives of all patches.
 
     Parameters
     ----------
     expected : Expected
     off : ndarray, shape (n, height, width)
         Light less expected light; 0 where nothing is to be learnt.
-    across, down : ndarray, shapes (n, width) and (n, height), bool
-        Columns and rows of the patches that count.
+    counts : ndarray, shape (n, height, width), bool
+        Pixels that something is learnt from.
 
     Notes
     -----
-    Derivatives are taken for straight edges. Where edges lean, or single pixels do not count,
-    the products are a little off, which slows the steps but does not move where they end.
+    Derivatives are taken for straight edges. Where edges lean the products are a little off,
+    which slows the steps but hardly moves where they end.
     """
     x_rows = [ROWS.index(x) for x, _ in ATOMS]
     y_rows = [ROWS.index(y) for _, y in ATOMS]
+    across, down = counts.any(axis=1), counts.any(axis=2)
     seen_x, seen_y = expected.across * across[:, None], expected.down * down[:, None]
-    by_x = seen_x @ seen_x.transpose(0, 2, 1)
-    by_y = seen_y @ seen_y.transpose(0, 2, 1)
-    gram = by_x[:, x_rows][:, :, x_rows] * by_y[:, y_rows][:, :, y_rows]
     toward = (seen_y @ off @ seen_x.transpose(0, 2, 1))[:, y_rows, x_rows]
+    if np.array_equal(counts, down[:, :, None] & across[:, None, :]):
+        # Products of profiles need no pixel: sums along x times sums along y.
+        by_x = seen_x @ seen_x.transpose(0, 2, 1)
+        by_y = seen_y @ seen_y.transpose(0, 2, 1)
+        gram = by_x[:, x_rows][:, :, x_rows] * by_y[:, y_rows][:, :, y_rows]
+    else:
+        atoms = seen_y[:, y_rows, :, None] * seen_x[:, x_rows, None, :] * counts[:, None]
+        atoms = atoms.reshape(len(off), len(ATOMS), -1)
+        gram = atoms @ atoms.transpose(0, 2, 1)
     scale = np.repeat(expected.bare[:, None], len(ATOMS), axis=1)
     scale[:, -1] = 1  # glare is not light that came through
     member = np.zeros((len(ATOMS), MEMBERS[-1] + 1), np.float32)

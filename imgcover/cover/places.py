@@ -12,8 +12,6 @@ from scipy.ndimage import map_coordinates
 from imgcover.cover.reading import Lattice
 from imgcover.cover.windows import Window, cell_sides
 
-CLIPPED = 0.995
-"""Linear light from which a pixel counts as clipped: 254.4 of 255 in sRGB."""
 ALONE = 0.3
 """Share of the pitch that is still seen on a side where the next pore is not known."""
 NEIGHBOURS = (-2, -1, 0, 1, 2)
@@ -29,7 +27,9 @@ class Places:
     patch : ndarray, shape (n, height, width), float32
         Linear light around each pore, reaching half a pitch from it.
     sound : ndarray, shape (n, height, width), bool
-        False where the light is clipped and says only how bright it is at least.
+        False beyond a thread whose next pore is not known: light leaks from there.
+    clipped : ndarray, shape (n, height, width), bool
+        True where the light is at least as much as the patch says.
     row, column : ndarray, shape (n,), float64
         Of the patch's middle pixel, in the picture.
     x, y : ndarray, shape (n,), float64
@@ -44,6 +44,7 @@ class Places:
 
     patch: NDArray[np.float32]
     sound: NDArray[np.bool_]
+    clipped: NDArray[np.bool_]
     row: NDArray[np.float64]
     column: NDArray[np.float64]
     x: NDArray[np.float64]
@@ -80,10 +81,13 @@ def pore_places(windows: list[Window], lattice: Lattice) -> Places:
         empty, none = np.zeros(0), np.zeros((0, 5))
         patch = np.zeros((0, 2 * reach[0] + 1, 2 * reach[1] + 1), np.float32)
         index = np.zeros((0, 5), np.int64)
-        return Places(patch, patch > 0, empty, empty, empty, empty, index, index, none, none)
+        return Places(
+            patch, patch > 0, patch > 0, empty, empty, empty, empty, index, index, none, none
+        )
     names = (
         "patch",
         "sound",
+        "clipped",
         "row",
         "column",
         "x",
@@ -124,9 +128,10 @@ def _in_window(
     patch = window.light[r + down_px, c + across_px]
     return Places(
         patch=patch,
-        sound=(patch < CLIPPED)
+        sound=np.ones(patch.shape, np.bool_)
         & _known(across_px, beside_lacks, across)
         & _known(down_px, above_lacks, down),
+        clipped=window.clipped[r + down_px, c + across_px],
         row=row[fits].astype(float) + window.row,
         column=column[fits].astype(float) + window.column,
         x=x[fits] - column[fits],

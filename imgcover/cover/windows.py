@@ -11,6 +11,8 @@ from numpy.typing import NDArray
 
 from imgcover.cover.reading import Lattice, Lit
 
+CLIPPED = 0.995
+"""Linear light from which a pixel counts as clipped: 254.4 of 255 in sRGB."""
 PIXELS_READ = 1_500_000
 """About this many pixels are measured: 0.1 s a step, and far more pores than the u needs."""
 PIXELS_FITTED, PORES_FITTED = 60_000, 900
@@ -32,12 +34,15 @@ class Window:
     light : ndarray, shape (rows, columns), float32, linear light
     inside : ndarray, shape (rows, columns), bool
         What belongs to the field.
+    clipped : ndarray, shape (rows, columns), bool
+        Where the file could hold no more light.
     """
 
     row: int
     column: int
     light: NDArray[np.float32]
     inside: NDArray[np.bool_]
+    clipped: NDArray[np.bool_]
 
 
 @dataclass(frozen=True, slots=True)
@@ -119,6 +124,7 @@ def parts(windows: list[Window], lattice: Lattice) -> list[Window]:
                     window.column + column,
                     window.light[place],
                     window.inside[place],
+                    window.clipped[place],
                 )
             )
     return cut
@@ -161,7 +167,8 @@ def _read(
         cut = (slice(row, row + height), slice(column, column + width))
         inside = np.ones((height, width), bool) if field is None else field[cut].copy()
         if inside.mean() > 0.5:
-            windows.append(Window(row, column, source.light(cut), inside))
+            light = source.light(cut)
+            windows.append(Window(row, column, light, inside, light >= CLIPPED))
     return windows
 
 
