@@ -117,7 +117,24 @@ def facts(rows: Sequence[tuple[str, str]], *, indent: int = 2) -> list[str]:
 
 def wrapped(text: str, *, first: str = "  ", then: str = "    ") -> list[str]:
     """Break a sentence into lines that fit; words longer than a line are cut."""
-    return textwrap.wrap(text, WIDTH, initial_indent=first, subsequent_indent=then)
+    if columns(text) == len(text):
+        return textwrap.wrap(text, WIDTH, initial_indent=first, subsequent_indent=then)
+    # letters two columns wide, or none: textwrap counts each as one
+    lines, line, bare = [], first, True
+    for word in text.split():
+        joined = line + word if bare else f"{line} {word}"
+        if columns(joined) > WIDTH:
+            if not bare:
+                lines.append(line)
+                line = then
+            joined = line
+            for letter in word:
+                if columns(joined + letter) > WIDTH:
+                    lines.append(joined)
+                    joined = then
+                joined += letter
+        line, bare = joined, False
+    return [*lines, line]
 
 
 __all__ = [
