@@ -134,6 +134,7 @@ def lay_rule(
     px_per_mm: float,
     mm_to_picture: NDArray[np.float64],
     shadow: float = 0.0,
+    clear: bool = False,
     oversample: int = 2,
 ) -> NDArray[np.float32]:
     """Lay a drawn rule into a picture.
@@ -151,6 +152,9 @@ def lay_rule(
         corner) to picture pixels.
     shadow : float
         How far, in picture pixels, the rule's shadow reaches.
+    clear : bool
+        Whether the rule is of clear plastic: `flat` is then what it lets through, and the cloth
+        shows under it.
     oversample : int
         Picture pixels are averaged from this many samples squared.
 
@@ -172,6 +176,8 @@ def lay_rule(
     if shadow:
         dark = cv2.GaussianBlur(mask, (0, 0), shadow)
         under = (picture * (1.0 - 0.5 * dark)).astype(np.float32)
+    if clear:
+        return (under * (1.0 - mask + light)).astype(np.float32)
     return (under * (1.0 - mask) + light).astype(np.float32)
 
 

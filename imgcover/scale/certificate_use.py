@@ -154,7 +154,8 @@ def check_certificate(
             outcomes.append(Holding.FAILS if far else Holding.OPEN)
         reasons.append(
             f"{AXES[index]}: {new.value:.5g} px/mm against {old.value:.5g}, "
-            f"{100 * difference:+.3f} % where {100 * HOLDS_WITHIN * u:.3f} % is uncertain: {outcomes[-1]}"
+            f"{100 * difference:+.3f} % where {100 * HOLDS_WITHIN * u:.3f} % is uncertain: "
+            f"{outcomes[-1]}"
         )
     if Holding.FAILS in outcomes:
         return CertificateCheck(Holding.FAILS, tuple(reasons))

@@ -31,8 +31,11 @@ MOST_SEEDS = 24
 """Spots followed on each level: on drawn pictures a rule's row is among the first eight."""
 LARGEST_SCATTER = 0.06
 """Pitches: lines that stray more from equal distances belong to a bent tape or to no rule."""
-LARGEST_CHANGE = 0.03
-"""Relative change of scale over the frame up to which a tilt is corrected; beyond, refused."""
+LARGEST_CHANGE = 0.08
+"""Relative change of scale over the frame up to which a tilt is corrected; beyond, refused. Up to
+here the correction was seen right to a hundredth of the change (tests/scale/sweep_rule.py)."""
+U_CORRECTION = 0.02
+"""Of the change over the frame: standard uncertainty of its correction."""
 
 Unit = Literal["auto", "mm", "inch"]
 
@@ -128,14 +131,18 @@ def find_rules(
 
 
 def _rows_on(level: Level, unit: Unit) -> list[tuple[Row, Proof]]:
-    """Follow and judge the seeds of one level; of rows that overlap keep the longest."""
+    """Follow and judge the seeds of one level; of rows that overlap keep a proven one."""
     kept: list[tuple[Row, Proof]] = []
     for seed in find_seeds(even_out_tone(level), most=MOST_SEEDS):
-        if any(_inside(row, seed) for row, _ in kept):
+        if any(proof.proven and _inside(row, seed) for row, proof in kept):
             continue
+        covers = any(_inside(row, seed) for row, _ in kept)
         for row in follow_row(level.tone, seed):
             proof = prove(row, unit)
-            if proof is not None:
+            if proof is not None and proof.proven:
+                # half-millimetre lines hide the foot of the millimetres that a seed beyond found
+                kept = [each for each in kept if each[1].proven or not _inside(each[0], seed)]
+            if proof is not None and (proof.proven or not covers):
                 kept.append((row, proof))
                 break
     return kept
@@ -236,7 +243,12 @@ def _scale_at_middle(
         return None
     pitch = comb.pitch_at(number) * (1 + across * t)
     u_along = 2 * comb.u_tilt * abs(number - comb.middle) if comb.tilt else 0.0
-    relative = math.sqrt((comb.u_pitch / comb.pitch) ** 2 + u_along**2 + (u_across * t) ** 2)
+    relative = math.sqrt(
+        (comb.u_pitch / comb.pitch) ** 2
+        + u_along**2
+        + (u_across * t) ** 2
+        + (U_CORRECTION * change) ** 2
+    )
     return pitch, relative, change
 
 
@@ -277,7 +289,7 @@ def _near(one: RuleReading, other: RuleReading) -> bool:
     """Whether two readings can be of one picture: scanners' axes differ by up to one per cent."""
     apart = abs(math.sin(one.angle - other.angle))
     ratio = one.px_per_mm.value / other.px_per_mm.value
-    return abs(ratio - 1) < 0.006 + 0.02 * apart
+    return abs(ratio - 1) < 0.01 + 2 * math.hypot(one.u_fit, other.u_fit) + 0.02 * apart
 
 
 def _said(reading: RuleReading) -> str:

@@ -59,8 +59,6 @@ PATTERNS: tuple[tuple[tuple[int, ...], tuple[Graduation, ...]], ...] = (
     ((1, 5), (Graduation.MM, Graduation.TENTH_INCH)),
     ((1, 10), (Graduation.MM, Graduation.TENTH_INCH)),
     ((1, 2, 10, 20), (Graduation.HALF_MM,)),
-    ((1, 2, 10), (Graduation.HALF_MM,)),
-    ((1, 2, 20), (Graduation.HALF_MM,)),
     ((1, 2, 4, 8), (Graduation.EIGHTH_INCH,)),
     ((1, 2, 4, 8, 16), (Graduation.SIXTEENTH_INCH,)),
     ((1, 4, 8, 16), (Graduation.SIXTEENTH_INCH,)),

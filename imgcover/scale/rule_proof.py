@@ -24,17 +24,23 @@ from imgcover.scale.rule_hierarchy import (
 )
 from imgcover.scale.rule_lines import Row
 
-LEAST_EXPLAINED = 0.8
+LEAST_EXPLAINED = 0.75
 """Share of a row's lines that must end where the pattern wants them."""
 LARGEST_COST = 1.35
 """Mean distance of the lines from the pattern, in scatters (0.8 pixel or an eighth of a pitch)."""
 LEAST_EVIDENCE = 5.0
 """Powers of ten by which the found order of lengths is rarer than chance would have it. All spots,
 phases and patterns together are some 10⁴ trials."""
+TWO_LENGTHS = 3.0
+"""Powers more for a pattern of only two lengths: stripes and fringes come near it more easily."""
 LEAST_RISE = 6.0
 """Scatters between the shortest and the longest lines: three pixels' difference, clearly seen."""
 MARGIN = 10.0
 """What a pattern of another unit must cost more to be out of the question."""
+MOST_LONGER = 0.25
+"""Of the lines that keep their level's length: how many may be longer."""
+LEAST_KEPT = 0.5
+"""Of each level's lines that must keep its length; the rest may be worn or under dust."""
 MM_SHORTEST = 1.75
 """Pitches. Tenths of an inch this tall would be 4.4 mm lines at 2.5 mm distance; no rule at hand
 has them, and millimetre lines are hardly ever shorter."""
@@ -79,16 +85,22 @@ def prove(row: Row, unit: str) -> Proof | None:
     patterns = match_patterns(row)
     if not patterns or not _fits(patterns[0], row):
         return None
-    rivals = [each for each in patterns if each.cost < patterns[0].cost + MARGIN]
-    standing = [each for each in rivals if _recurs(each, row) is Recurrence.SEEN]
-    if not standing and _recurs(patterns[0], row) is Recurrence.DISPROVED:
+    rivals = [
+        (each, _recurs(each, row))
+        for each in patterns
+        if each.cost < patterns[0].cost + MARGIN and _fits(each, row)
+    ]
+    possible = [(each, seen) for each, seen in rivals if seen is not Recurrence.DISPROVED]
+    if not possible:
         return None
     readings: list[Graduation] = []
-    for pattern in standing:
-        readings += [each for each in _readings(pattern, unit) if each not in readings]
-    if _recurs(patterns[0], row) is Recurrence.NOT_IN_FRAME:
-        readings += [each for each in _unseen(patterns[0], unit) if each not in readings]
-    return Proof(tuple(readings), (standing or patterns)[0]) if readings else None
+    for pattern, seen in possible:
+        if seen is Recurrence.SEEN:
+            readings += [each for each in _readings(pattern, unit) if each not in readings]
+    first, seen = possible[0]
+    if seen is Recurrence.NOT_IN_FRAME:
+        readings += [each for each in _unseen(first, unit) if each not in readings]
+    return Proof(tuple(readings), first) if readings else None
 
 
 def _unseen(pattern: Pattern, unit: str) -> tuple[Graduation, ...]:
@@ -113,7 +125,7 @@ def _fits(pattern: Pattern, row: Row) -> bool:
         pattern.explained >= LEAST_EXPLAINED
         and pattern.cost / len(row.numbers) <= LARGEST_COST
         and pattern.lengths[-1] - pattern.lengths[0] >= LEAST_RISE * scatter
-        and evidence(pattern, row) >= LEAST_EVIDENCE
+        and evidence(pattern, row) >= LEAST_EVIDENCE + (len(pattern.steps) == 2) * TWO_LENGTHS
     )
 
 
@@ -121,12 +133,12 @@ def evidence(pattern: Pattern, row: Row) -> float:
     """Return how rare the row's order of lengths is, in powers of ten.
 
     As many lines of each length can be put in order in n!/(n₁! n₂! …) ways, and only one is the
-    pattern's; a line out of place is charged as one power.
+    pattern's; a line out of place is charged as half a power.
     """
     level = levels(row.numbers - pattern.phase, pattern.steps)
     counts = np.bincount(level)
     ways = gammaln(len(level) + 1) - gammaln(counts + 1).sum()
-    return float(ways / math.log(10) - (1 - pattern.explained) * len(level))
+    return float(ways / math.log(10) - 0.5 * (1 - pattern.explained) * len(level))
 
 
 class Recurrence(Enum):
@@ -151,9 +163,12 @@ def _recurs(pattern: Pattern, row: Row) -> Recurrence:
     top, between = pattern.lengths[-1], pattern.lengths[-2]
     # a faded tip is allowed for, but not half the way down to the next level
     bound = max(2 * scatter, 0.3 * (top - between))
-    ends = misfit(row, np.full(len(row.numbers), top)) <= bound
+    reach = row.reach / row.pitch
+    ends = misfit(row, np.full(len(reach), top)) <= bound
+    if not _orderly(pattern, row, bound):
+        return Recurrence.DISPROVED
     longest = dict(zip(row.numbers.tolist(), ends.tolist(), strict=True))
-    length = dict(zip(row.numbers.tolist(), (row.reach / row.pitch).tolist(), strict=True))
+    length = dict(zip(row.numbers.tolist(), reach.tolist(), strict=True))
     tried = 0
     for first in range(int(row.numbers[0]), int(row.numbers[-1]) - (need - 1) * period + 1):
         chain = [longest.get(first + i * period) for i in range(need)]
@@ -164,6 +179,24 @@ def _recurs(pattern: Pattern, row: Row) -> Recurrence:
         if all(chain) and middle < top - 2 * scatter:
             return Recurrence.SEEN
     return Recurrence.DISPROVED if tried else Recurrence.NOT_IN_FRAME
+
+
+def _orderly(pattern: Pattern, row: Row, bound: float) -> bool:
+    """Whether every level keeps its length.
+
+    Wear and dust shorten lines; what is longer belongs to a longer period, or is a digit's doing.
+    """
+    level = levels(row.numbers - pattern.phase, pattern.steps)
+    off = misfit(row, np.array(pattern.lengths)[level])
+    longer = (row.reach / row.pitch) > np.array(pattern.lengths)[level]
+    for index in range(len(pattern.steps)):
+        mine = level == index
+        kept = int((mine & (off <= bound)).sum())
+        if (mine & longer & (off > bound)).sum() > MOST_LONGER * kept:
+            return False
+        if kept < LEAST_KEPT * mine.sum():
+            return False
+    return True
 
 
 def _readings(pattern: Pattern, unit: str) -> list[Graduation]:

@@ -97,7 +97,9 @@ def woven(
     return np.asarray(np.clip(picture, 0, 1), dtype=np.float32)
 
 
-def rule_case(seed: int, *, divisions: tuple[Division, ...] | None = None) -> RuleCase:
+def rule_case(
+    seed: int, *, divisions: tuple[Division, ...] | None = None, lean: float | None = None
+) -> RuleCase:
     """Draw one picture with a rule: everything about it follows from the seed."""
     generator = np.random.default_rng([7, seed])
     if divisions is None:
@@ -107,29 +109,39 @@ def rule_case(seed: int, *, divisions: tuple[Division, ...] | None = None) -> Ru
     shape = (int(generator.integers(900, 1500)), int(generator.integers(900, 1500)))
     rule = _rule(divisions, generator)
     turn = _turn(generator)
-    tilt = generator.random() < 0.06
+    tilt = generator.random() < 0.06 or lean is not None
     flat_scale = max(3.0 * px_per_mm, 40.0)
     rule = replace(rule, length=min(rule.length, 1.6 * float(np.hypot(*shape)) / px_per_mm))
     flat = draw_rule(rule, px_per_mm=flat_scale, generator=generator)
     place = _place(rule, shape, px_per_mm, turn, generator)
     if tilt:
-        place = _tilted(place, shape, generator)
+        place = _tilted(place, shape, generator, lean or 2e-5)
     thread = generator.uniform(0.2, 0.7) * px_per_mm
     ground = woven(
         shape, thread_px=max(thread, 3.0), turn=generator.normal(0, 0.05), generator=generator
     )
+    # what came later draws from a generator of its own, so that a seed's picture stays the same
+    later = np.random.default_rng([13, seed])
+    clear = rule.material is Material.PLASTIC and rule.body > 0.5 and later.random() < 0.3
     light = lay_rule(
         ground,
-        flat,
+        np.clip(flat * 1.25, 0, 0.95).astype(np.float32) if clear else flat,
         px_per_mm=flat_scale,
         mm_to_picture=place,
         shadow=generator.choice([0.0, 0.5 * px_per_mm]),
+        clear=clear,
     )
     if generator.random() < 0.25:
         light = _flap(light, ground, place, rule, generator)
     light = camera(light, generator)
+    if later.random() < 0.3:
+        light = compressed(light, int(later.integers(70, 96)))
     what = f"{'+'.join(divisions)} {rule.material} {px_per_mm:.2f} px/mm {np.degrees(turn):.1f}°"
-    extras = (f" wear {rule.wear:.1f}" if rule.wear else "") + (" dust" if rule.dust else "")
+    extras = (
+        (" clear" if clear else "")
+        + (f" wear {rule.wear:.1f}" if rule.wear else "")
+        + (" dust" if rule.dust else "")
+    )
     return RuleCase(
         seed, light, px_per_mm, divisions, what + extras + (" tilted away" if tilt else "")
     )
@@ -178,6 +190,13 @@ def camera(light: NDArray[np.float32], generator: np.random.Generator) -> NDArra
     seen = seen + generator.normal(0, generator.uniform(0.002, 0.012), light.shape)
     levels = np.round(np.clip(seen, 0, 1) ** (1 / 2.2) * 255) / 255
     return np.asarray(levels**2.2, dtype=np.float32)
+
+
+def compressed(light: NDArray[np.float32], quality: int) -> NDArray[np.float32]:
+    """Store as JPEG and read back."""
+    stored = np.round(light ** (1 / 2.2) * 255).astype(np.uint8)
+    _, coded = cv2.imencode(".jpg", stored, [cv2.IMWRITE_JPEG_QUALITY, quality])
+    return np.asarray((cv2.imdecode(coded, 0) / np.float32(255)) ** 2.2, dtype=np.float32)
 
 
 def _divisions(generator: np.random.Generator) -> tuple[Division, ...]:
@@ -255,11 +274,14 @@ def _place(
 
 
 def _tilted(
-    place: NDArray[np.float64], shape: tuple[int, int], generator: np.random.Generator
+    place: NDArray[np.float64],
+    shape: tuple[int, int],
+    generator: np.random.Generator,
+    most: float,
 ) -> NDArray[np.float64]:
     """Tilt the scene about the frame's middle, where its scale stays what it was."""
     x, y = shape[1] / 2, shape[0] / 2
-    lean = generator.uniform(-2e-5, 2e-5, 2)
+    lean = generator.uniform(-most, most, 2)
     there = np.array([[1, 0, -x], [0, 1, -y], [0, 0, 1.0]])
     back = np.array([[1, 0, x], [0, 1, y], [0, 0, 1.0]])
     away = np.array([[1, 0, 0], [0, 1, 0], [lean[0], lean[1], 1.0]])

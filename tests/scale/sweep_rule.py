@@ -67,7 +67,7 @@ def sweep(with_rule: int, without: int, first: int) -> None:
             else ""
         )
         say(f"{kind:<18}{len(errors):>5}{len(errors) - len(read):>9}{shown}")
-    say(f"within 2 u: {inside:.0f}; without a rule: {alarms} of {without} taken for one;", end=" ")
+    say(f"within 2 u: {inside:.0f}; without a rule: {alarms} of {without} taken for one")
     say(f"{taken / max(1, with_rule + without):.2f} s a picture")
 
 

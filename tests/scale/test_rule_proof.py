@@ -1,0 +1,124 @@
+"""Which unit do long and short lines spell? Tables of line lengths, no picture."""
+
+from __future__ import annotations
+
+import numpy as np
+import pytest
+from numpy.typing import NDArray
+
+from imgcover.loom.rule import STEP_MM, STEPS, Division
+from imgcover.scale.rule_frame import Frame
+from imgcover.scale.rule_hierarchy import Graduation, levels
+from imgcover.scale.rule_lines import Row
+from imgcover.scale.rule_proof import prove
+
+LENGTHS_MM = {
+    Division.MM: (3.0, 4.5, 6.0),
+    Division.HALF_MM: (2.5, 3.5, 5.0, 6.5),
+    Division.TENTH: (3.0, 4.5, 6.5),
+    Division.SIXTEENTH: (2.5, 3.5, 4.8, 6.2, 8.5),
+    Division.THIRTYSECOND: (2.0, 3.0, 4.0, 5.0, 6.2, 8.5),
+    Division.SIXTYFOURTH: (1.8, 2.5, 3.2, 4.0, 5.0, 6.2, 8.5),
+}
+PITCH = 8.0
+FULL = {"mm": 45, "inch": 140}
+
+
+def row(reach: NDArray[np.float64]) -> Row:
+    """A row of lines with these heights, in pitches."""
+    numbers = np.arange(len(reach))
+    ends = reach * PITCH
+    return Row(
+        Frame(0, 0, 0, np.pi / 2),
+        PITCH,
+        numbers,
+        numbers * PITCH,
+        ends,
+        ends,
+        np.ones(len(reach)),
+        False,
+        float(ends.min()),
+    )
+
+
+def heights(division: Division, count: int, start: int = 3, seed: int = 1) -> NDArray[np.float64]:
+    """Line heights of a division in pitches, with a tenth of a pitch of scatter at most."""
+    level = levels(np.arange(start, start + count), STEPS[division])
+    generator = np.random.default_rng(seed)
+    return np.array(LENGTHS_MM[division])[level] / STEP_MM[division] + generator.uniform(
+        -0.08, 0.08, count
+    )
+
+
+@pytest.mark.parametrize("division", list(Division))
+@pytest.mark.parametrize("start", [0, 7, 13])
+def test_each_division_is_told(division: Division, start: int) -> None:
+    """Truth is drawn: lengths by division. Tenths of an inch look like millimetres, so they stay
+    open until the user says which."""
+    count = FULL["mm" if "mm" in division else "inch"]
+    proof = prove(row(heights(division, count, start)), "auto")
+    assert proof is not None
+    if division is Division.TENTH:
+        assert set(proof.graduations) == {Graduation.MM, Graduation.TENTH_INCH}
+        said = prove(row(heights(division, count, start)), "inch")
+        assert said is not None and said.graduations == (Graduation.TENTH_INCH,)
+    else:
+        assert [each.value for each in proof.graduations] == [division.value]
+
+
+def test_an_inch_scale_with_one_inch_line_stays_open() -> None:
+    """Truth is theory: with its longest lines seen once, a sixteenth may be a thirty-second."""
+    proof = prove(row(heights(Division.SIXTEENTH, 30, start=17)), "auto")
+    assert proof is not None and not proof.proven
+    assert {Graduation.SIXTEENTH_INCH, Graduation.THIRTYSECOND_INCH} <= set(proof.graduations)
+
+
+def test_ten_lines_prove_nothing() -> None:
+    """Truth is theory: a dozen lines with two longer ones come by chance too often."""
+    assert prove(row(heights(Division.MM, 13, start=4)), "auto") is None
+
+
+def test_the_stated_unit_does_not_make_a_rule() -> None:
+    """Truth is theory: an inch scale is not a millimetre scale because someone says so."""
+    assert prove(row(heights(Division.SIXTEENTH, 140)), "mm") is None
+    assert prove(row(heights(Division.MM, 60)), "inch") is None
+
+
+def test_every_second_ten_longer_is_not_millimetres() -> None:
+    """Truth is theory: lines long at 10 and longer at 20 may be half millimetres without their
+    first level: a period of ten is disproved by its own longest lines."""
+    level = levels(np.arange(90), (1, 10, 20))
+    proof = prove(row(np.array([3.5, 5.5, 7.5])[level]), "auto")
+    assert proof is None or not proof.proven
+
+
+@pytest.mark.parametrize("seed", range(8))
+def test_lines_of_random_length_are_no_rule(seed: int) -> None:
+    """Truth is theory: a fringe has equal distances and any lengths."""
+    generator = np.random.default_rng(seed)
+    assert prove(row(generator.uniform(2, 9, 80)), "auto") is None
+    mixed = np.where(generator.random(80) < 0.2, 6.0, 3.5)
+    assert prove(row(mixed), "auto") is None
+
+
+@pytest.mark.parametrize("period", [3, 4, 6, 7, 9, 12, 14])
+def test_stripes_of_other_periods_are_no_rule(period: int) -> None:
+    """Truth is theory: no rule lengthens every third or seventh line."""
+    lengths = np.where(np.arange(84) % period == 0, 6.0, 3.5)
+    assert prove(row(lengths), "auto") is None
+
+
+def test_dust_and_wear_do_not_turn_the_unit() -> None:
+    """Truth is drawn: one line in eight cut short, at random; it may stay open, never be wrong."""
+    told = 0
+    for seed in range(12):
+        for division in (Division.MM, Division.HALF_MM, Division.SIXTEENTH, Division.THIRTYSECOND):
+            lengths = heights(division, 140, seed=seed)
+            generator = np.random.default_rng([10, seed])
+            spoilt = generator.choice(140, 17, replace=False)
+            lengths[spoilt] *= generator.uniform(0.3, 0.95, 17)
+            proof = prove(row(lengths), "auto")
+            assert proof is not None
+            told += proof.proven
+            assert not proof.proven or proof.graduations[0].value == division.value
+    assert told >= 44  # nine in ten
