@@ -29,6 +29,18 @@ threads' own lines in it and next to nothing beside it, is that of a twill or sa
 warp-faced cloth the other set has no streak to show."""
 
 
+STRAIGHT = 12.0
+"""Degrees of turn within which a pair is taken for what it looks like: nearly all swatches lie so,
+and few combinations of other lines of a pattern do."""
+
+EVEN_LOUDNESS = 0.55
+"""Share of the strongest line's amplitude: where a lattice with weave lines in it has both threads'
+own lines among its strongest, threads that are too even to leave a streak are threads still."""
+
+TURNED_LOUDNESS = 0.1
+"""A turned pair whose own lines are fainter than this is a combination of other lines."""
+
+
 def crossing(seen: Identified) -> bool:
     """Whether both sets are made of individual threads that run on across the other set.
 
@@ -40,7 +52,13 @@ def crossing(seen: Identified) -> bool:
         return False
     lines = min(e.ends_line, e.picks_line)
     regular = one.index > 2 and one.parts == (1, 1) and e.against < 0.05 and e.apart < 0.15
-    if regular and abs(one.turn) < 12 and lines > REGULAR_LINES and e.score > REGULAR_SCORE:
+    loud = min(seen.ends.amplitude, seen.picks.amplitude) / seen.followed.loudest
+    straight = abs(one.turn) < STRAIGHT
+    if not straight and loud < TURNED_LOUDNESS:
+        return False
+    if straight and one.index > 1 and one.parts == (1, 1) and loud > EVEN_LOUDNESS:
+        return e.against < 0.05
+    if regular and straight and lines > REGULAR_LINES and e.score > REGULAR_SCORE:
         return True
     narrow = min(e.ends_streak, e.picks_streak)
     if narrow > 2 * LEAST_STREAK:
