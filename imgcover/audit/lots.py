@@ -34,22 +34,6 @@ class Member:
     observed: Observed
 
 
-@dataclass(frozen=True, slots=True)
-class Summed:
-    """A lot and its pictures' places.
-
-    Parameters
-    ----------
-    record : dict
-        Schema imgcover/lot/1.
-    numbers : tuple of int or None
-        For each picture the place it was counted as, from 1; None for one that was not.
-    """
-
-    record: dict[str, Any]
-    numbers: tuple[int | None, ...]
-
-
 def member(row: Row, record: Mapping[str, Any]) -> Member:
     """Take from a ledger's row what its lot needs."""
     picture, sample = record["picture"], record["sample"]
@@ -66,7 +50,7 @@ def sum_lot(
     lot: str,
     declaration: Declaration | None,
     risk: float | None,
-) -> Summed:
+) -> dict[str, Any]:
     """Sum a lot's pictures by place.
 
     A picture that shows the same pixels as an earlier one counts once: a copy under another name
@@ -82,6 +66,11 @@ def sum_lot(
         Of its article.
     risk : float or None
         As in `imgcover.verdict.lot.judge_lot`.
+
+    Returns
+    -------
+    dict
+        Schema imgcover/lot/1.
     """
     copies = _copies(members)
     counted = [each for at, each in enumerate(members) if at not in copies]
@@ -98,7 +87,13 @@ def sum_lot(
         )
         for at, first in copies.items()
     )
-    return Summed(tidied(record), tuple(_numbers(members, copies)))
+    summed: dict[str, Any] = tidied(record)
+    return summed
+
+
+def place_numbers(members: Sequence[Member]) -> tuple[int | None, ...]:
+    """Say as which place of its lot, from 1, each picture was counted; None for a copy."""
+    return tuple(_numbers(members, _copies(members)))
 
 
 def _copies(members: Sequence[Member]) -> dict[int, int]:
@@ -122,4 +117,4 @@ def _numbers(members: Sequence[Member], copies: Mapping[int, int]) -> Iterable[i
             yield numbers.setdefault(place, len(numbers) + 1)
 
 
-__all__ = ["Member", "Summed", "member", "sum_lot"]
+__all__ = ["Member", "member", "place_numbers", "sum_lot"]

@@ -69,7 +69,7 @@ class OrderBook:
     ) -> None:
         self._grounds = grounds
         self._defaults = dict(defaults)
-        self._versions = dict(versions)
+        self.versions = dict(versions)
         self._options: dict[tuple[tuple[str, str], ...], Options] = {}
         self._declarations: dict[Path, Declaration | DeclarationError] = {}
         self._digests: dict[Path, str | None] = {}
@@ -131,7 +131,7 @@ class OrderBook:
             "device": self._digest(options.device),
             "blank": self._digest(options.blank),
             "dark": self._digest(options.dark),
-            "versions": self._versions,
+            "versions": self.versions,
         }
         return hashlib.sha256(canonical(parts).encode("utf-8", "backslashreplace")).hexdigest()
 

@@ -12,7 +12,7 @@ from pathlib import Path
 from typing import Any
 
 from imgcover.audit.folder import LotName
-from imgcover.audit.lots import Member, member, sum_lot
+from imgcover.audit.lots import Member, member, place_numbers, sum_lot
 from imgcover.audit.out_folder import page_name
 from imgcover.audit.outcome import Crew, Lost
 from imgcover.audit.run import Round, record_in
@@ -111,28 +111,25 @@ def sum_lots(round_: Round, *, risk: float | None) -> Iterator[ToldLot]:
         declaration = None if isinstance(declared, DeclarationError) else declared
         rows = [row for _, row in _rows(round_, indices)]
         members = [member(row, json.loads(row.entry.body)) for row in rows]
-        summed = sum_lot(members, lot=name.lot, declaration=declaration, risk=risk)
         subject = f"lot:{round_.folder}/{name.lot}/{name.article.name if name.article else ''}"
-        entry = Entry(
-            LOT_SCHEMA,
-            subject,
-            _lot_key(rows, declaration, risk),
-            canonical(summed.record),
-            _now(),
-        )
-        round_.ledger.append([entry])
+        key = _lot_key(round_, rows, declaration, risk)
         kept = round_.ledger.last(subject)
-        assert kept is not None
+        if kept is None or kept.entry.key != key:
+            summed = sum_lot(members, lot=name.lot, declaration=declaration, risk=risk)
+            round_.ledger.append([Entry(LOT_SCHEMA, subject, key, canonical(summed), _now())])
+            kept = round_.ledger.last(subject)
+            assert kept is not None
+        record = json.loads(kept.entry.body)
         page = page_name(name.lot, name.article.name if name.article else "", taken=pages)
         pages.add(page.lower())
         yield ToldLot(
             name=name,
             row=kept.n,
-            decision=summed.record["decision"],
-            n_places=summed.record["n_places"],
-            required=summed.record["required"],
+            decision=record["decision"],
+            n_places=record["n_places"],
+            required=record["required"],
             indices=tuple(indices),
-            numbers=summed.numbers,
+            numbers=place_numbers(members),
             unread=sum(_gave_nothing(each) for each in members),
             units=units_of(declaration),
             page=page,
@@ -140,7 +137,7 @@ def sum_lots(round_: Round, *, risk: float | None) -> Iterator[ToldLot]:
 
 
 def write_reports(
-    round_: Round, lots: list[ToldLot], crew: Crew, *, versions: Mapping[str, str]
+    round_: Round, lots: list[ToldLot], crew: Crew, *, drawn: dict[str, int] | None = None
 ) -> Head:
     """Write records.jsonl, lots.csv, report.xlsx, a page a lot and report.html.
 
@@ -151,8 +148,9 @@ def write_reports(
         From `sum_lots`.
     crew : Crew
         Who writes the pages.
-    versions : mapping of str to str
-        Of the program and its libraries.
+    drawn : dict of str to int, optional
+        Pages of an earlier round by the ledger's row that they tell: a page that would tell the
+        same row is left as it is, with the head of its own day. Brought up to date.
 
     Returns
     -------
@@ -160,18 +158,27 @@ def write_reports(
         Of the ledger, as every report ends with it.
     """
     head, made_at = round_.ledger.head(), _now()
-    about = About(units="cm", head=str(head), made_at=made_at.replace("T", " "), versions=versions)
+    told = {} if drawn is None else drawn
+    about = About(
+        units="cm", head=str(head), made_at=made_at.replace("T", " "), versions=round_.book.versions
+    )
     _write_records(round_, lots)
     lines = lots_csv_lines(
         ((lot.record(round_.ledger), lot.page, lot.row) for lot in lots), head=(head.n, head.seal)
     )
     round_.out.write("lots.csv", "\ufeff" + "".join(lines))
     _write_workbook(round_, lots, about)
-    orders = ((n, _page_order(round_, lot, about)) for n, lot in enumerate(lots))
+    orders = (
+        (n, _page_order(round_, lot, about))
+        for n, lot in enumerate(lots)
+        if told.get(lot.page) != lot.row
+    )
     for outcome in crew.run(made_page, orders):
         if isinstance(outcome, Lost):
             raise RuntimeError(f"the page of a lot could not be written: {outcome.said}")
-        round_.out.write(lots[outcome.index].page, outcome.answer)
+        lot = lots[outcome.index]
+        round_.out.write(lot.page, outcome.answer)
+        told[lot.page] = lot.row
     round_.out.write("report.html", _first_page(round_, lots, about))
     return head
 
@@ -190,8 +197,12 @@ def _rows(round_: Round, indices: list[int] | tuple[int, ...]) -> Iterator[tuple
         yield index, row
 
 
-def _lot_key(rows: list[Row], declaration: Declaration | None, risk: float | None) -> str:
+def _lot_key(
+    round_: Round, rows: list[Row], declaration: Declaration | None, risk: float | None
+) -> str:
+    """Hash what a lot's record rests on: while it is the same there is nothing to sum."""
     parts = {
+        "versions": round_.book.versions,
         "pictures": [[row.entry.subject, row.seal] for row in rows],
         "declaration": None if declaration is None else declaration.sha256,
         "risk": risk,

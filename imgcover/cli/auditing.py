@@ -118,14 +118,15 @@ class Audit:
         self._risk = risk
         self._digests = Digests()
         self._fresh = asked.fresh
+        self._drawn: dict[str, int] = {}
 
     def round(self, listing: Listing) -> ExitCode:
         """Measure what is new, sum all lots, write all reports."""
-        asked, versions = self._asked, _versions()
+        asked = self._asked
         bases = [asked.folder, *([asked.articles] if asked.articles else [])]
         round_ = Round(
             listing=listing,
-            book=OrderBook(Grounds.of(bases), defaults=asked.words, versions=versions),
+            book=OrderBook(Grounds.of(bases), defaults=asked.words, versions=_versions()),
             folder=asked.folder.resolve().name,
             ledger=self._ledger,
             out=self._out,
@@ -139,7 +140,7 @@ class Audit:
         for fault in round_.book.faults:
             tell(f"imgcover: {fault}")
         lots = list(sum_lots(round_, risk=self._risk))
-        head = write_reports(round_, lots, self._pages, versions=versions)
+        head = write_reports(round_, lots, self._pages, drawn=self._drawn)
         self._tell(round_, lots, how)
         tell(f"reports in {self._out.root}; ledger head {head}")
         codes = [_code(round_, lot) for lot in lots]

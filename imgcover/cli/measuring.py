@@ -116,9 +116,9 @@ class _Run:
                 declaration=self._declaration,
                 risk=read_options(self._asked.words).risk,
             )
-            self._lot = summed.record
-            self._remember(summed.record)
-            yield summed.record
+            self._lot = summed
+            self._remember(summed)
+            yield summed
 
     def finish(self) -> None:
         """Sum up several pictures on stderr, and write the reference of an approved swatch."""

@@ -11,7 +11,7 @@ from imgcover.audit import machine
 from imgcover.audit.digests import Digests
 from imgcover.audit.evidence import evidence_text, observed_from
 from imgcover.audit.folder import list_folder
-from imgcover.audit.lots import Member, sum_lot
+from imgcover.audit.lots import Member, place_numbers, sum_lot
 from imgcover.audit.out_folder import OutFolder, page_name
 from imgcover.audit.settling import Settling, signature
 from imgcover.cli.progress import Progress
@@ -64,12 +64,12 @@ def test_pictures_are_summed_by_place_and_copies_once():
         Member("f", None, Observed(place="")),
     ]
     summed = sum_lot(members, lot="7", declaration=None, risk=None)
-    assert summed.numbers == (1, 2, None, 2, 3, 4)
-    assert summed.record["n_places"] == 2
+    assert place_numbers(members) == (1, 2, None, 2, 3, 4)
+    assert summed["n_places"] == 2
     # two places, 25 and 26: their mean, whatever the number of pictures of each
-    assert summed.record["means"]["ends"]["value"] == pytest.approx(25.5)
-    assert summed.record["decision"] is None
-    said = [each["message"] for each in summed.record["findings"]]
+    assert summed["means"]["ends"]["value"] == pytest.approx(25.5)
+    assert summed["decision"] is None
+    said = [each["message"] for each in summed["findings"]]
     assert "c shows the same pixels as a; counted once" in said
 
 
