@@ -23,6 +23,9 @@ LARGEST_REPEAT = 16
 """Cells of the pattern in one cell of the threads, as an area ratio: a 4-end dent over a weave
 that repeats on 4 is the largest met."""
 
+REGULAR_REPEATS = (2, 3, 4, 5, 8)
+"""Threads on which the common regular weaves repeat: plain, twills, satins."""
+
 STEEPEST_SKEW = 12.0
 """Degrees from the right angle; cloth is asked for to 8, and a wave vector has an error."""
 
@@ -70,6 +73,22 @@ class Candidate:
         ends = math.atan2(self.ends[1], self.ends[0])
         picks = math.atan2(-self.picks[0], self.picks[1])
         return math.degrees((ends + picks) / 2)
+
+    @property
+    def repeat(self) -> tuple[int, int] | None:
+        """Ends and picks after which a regular weave repeats; None where the lines show none.
+
+        A regular weave on n threads steps through all n of both sets. Whatever else divides the
+        lattice (dents, pairs, stripes) says nothing of the weave, and is passed over.
+        """
+        if self.parts != (1, 1) or self.index not in REGULAR_REPEATS:
+            return None
+        at = np.linalg.solve(self.basis, self.lattice.basis) * self.index
+        nearest = np.round(at).astype(int)
+        if np.abs(at - nearest).max() > 0.25:
+            return None
+        steps = [self.index // math.gcd(self.index, *(int(v) for v in row)) for row in nearest]
+        return (steps[0], steps[1]) if steps == [self.index] * 2 else None
 
     @property
     def pixels(self) -> tuple[float, float]:

@@ -133,14 +133,12 @@ def read_threads(
 
 def _settled(seen: Identified, weave: Weave | None, warp: Direction) -> Identified | None:
     """Let the declared weave decide where two readings stay possible; None where none do."""
-    if seen.ends.rival is None and seen.picks.rival is None:
+    if weave is None or (seen.ends.rival is None and seen.picks.rival is None):
         return None
-    names = _names(warp)
-    across = settled(seen.ends, weave, names[0])
-    down = settled(seen.picks, weave, names[1])
-    if across is None and down is None:
-        return None
-    return taken_as(seen, across or seen.ends, down or seen.picks)
+    if warp == "horizontal":
+        weave = dataclasses.replace(weave, matrix=weave.matrix.T)
+    both = settled(seen.candidate, seen.ends, seen.picks, weave)
+    return None if both is None else taken_as(seen, *both)
 
 
 def _names(warp: Direction) -> tuple[SetName, SetName]:
@@ -208,7 +206,7 @@ def _read(seen: Identified, region: Region, warp: Direction) -> ThreadReading:
         kept["picks"],
         _track(seen, followed, warp),
         tiles,
-        None,
+        one.repeat,
         tuple(forks),
         tuple(findings),
     )

@@ -120,7 +120,7 @@ class ThreadReading:
     tiles : tuple of Tile
         The field's pieces, used and left out.
     repeat : tuple of int or None
-        (ends, picks) in the smallest repeat the spectrum shows.
+        (ends, picks) in the repeat of the regular weave whose lines the spectrum shows.
     forks : tuple of Fork
         Sets that were refused because two readings stay possible.
     findings : tuple of Finding

@@ -2,47 +2,78 @@
 
 from __future__ import annotations
 
+import itertools
+import math
 from dataclasses import replace
-from typing import Literal
 
 import numpy as np
 
+from imgcover.threads.candidates import Candidate
 from imgcover.threads.profile import Multiple
 from imgcover.weave import Weave
 
 
 def settled(
-    multiple: Multiple, weave: Weave | None, name: Literal["ends", "picks"]
-) -> Multiple | None:
+    one: Candidate, ends: Multiple, picks: Multiple, woven: Weave
+) -> tuple[Multiple, Multiple] | None:
     """Break a tie by the declared weave.
 
     Parameters
     ----------
-    multiple : Multiple
-        With a rival.
-    weave : Weave or None
-        As declared.
-    name : {"ends", "picks"}
-        Which set was read.
+    one : Candidate
+        What the factors of both sets multiply.
+    ends, picks : Multiple
+        What the profiles say; at least one with a rival.
+    woven : Weave
+        As declared, its ends being the set across the picture.
 
     Returns
     -------
-    Multiple or None
-        Without a rival; None where the weave says nothing of it.
+    tuple of Multiple, or None
+        Both without a rival; None where the weave bears out none of the readings.
 
     Notes
     -----
-    Where neighbours weave alike (hopsack, rib) they lie together, and the finer of two readings
-    counts them singly. In any other weave neighbours differ, so a ridge is a thread and the
-    coarser reading holds. What decides is not in the picture: the count must carry
-    `rests-on-declared-weave`.
+    A weave says how many threads of each set lie in its smallest cell, and how that cell lies. The
+    picture shows a cell too. Only one reading can put as many threads into it as the weave does;
+    where none does, something else repeats (dents, pairs, colours) or the weave does not show. What
+    decides is not in the picture: the count must carry `rests-on-declared-weave`.
     """
-    if weave is None or multiple.rival is None:
-        return None
-    threads = weave.matrix.T if name == "ends" else weave.matrix
-    alike = bool((threads == np.roll(threads, 1, axis=0)).all(axis=1).any())
-    low, high = sorted((multiple.factor, multiple.rival))
-    return replace(multiple, factor=high if alike else low, rival=None)
+    want = cell(woven)
+    for across, down in itertools.product(_readings(ends), _readings(picks)):
+        parts = (across.factor * one.parts[0], down.factor * one.parts[1])
+        if (across.factor * down.factor * one.index, *parts) == want:
+            return across, down
+    return None
 
 
-__all__ = ["settled"]
+def cell(woven: Weave) -> tuple[int, int, int]:
+    """Crossings in the smallest cell of a weave, and how it divides the ends and the picks.
+
+    Examples
+    --------
+    >>> from imgcover.weave import weave
+    >>> cell(weave("plain")), cell(weave("2/2 hopsack")), cell(weave("2/2 warp rib"))
+    ((2, 1, 1), (8, 2, 2), (4, 1, 2))
+    """
+    picks, ends = woven.matrix.shape
+    moves = [
+        (across, down)
+        for across, down in itertools.product(range(ends), range(picks))
+        if (np.roll(woven.matrix, (down, across), axis=(0, 1)) == woven.matrix).all()
+    ]
+    return (
+        picks * ends // len(moves),
+        math.gcd(ends, *(across for across, _ in moves)),
+        math.gcd(picks, *(down for _, down in moves)),
+    )
+
+
+def _readings(multiple: Multiple) -> list[Multiple]:
+    both = [replace(multiple, rival=None)]
+    if multiple.rival is not None:
+        both.append(replace(multiple, factor=multiple.rival, rival=None))
+    return both
+
+
+__all__ = ["cell", "settled"]
