@@ -7,7 +7,7 @@ from typing import Annotated
 import typer
 
 from imgcover import __version__
-from imgcover.cli import audit, calibrate, draw, ledger, measure, predict
+from imgcover.cli import audit, calibrate, draw, ledger, measure, plan, predict
 
 EPILOG = "Exit codes, findings and what no picture can tell: README.md."
 
@@ -26,6 +26,7 @@ def assembled() -> typer.Typer:
     app.callback()(_top)
     app.command("measure", epilog=measure.EXAMPLES)(measure.measure)
     app.command("predict", epilog=predict.EXAMPLES)(predict.predict)
+    app.command("plan", epilog=plan.EXAMPLES)(plan.plan)
     app.command("audit", epilog=audit.EXAMPLES)(audit.audit)
     app.add_typer(calibrate.assembled(), name="calibrate")
     app.add_typer(ledger.assembled(), name="ledger")

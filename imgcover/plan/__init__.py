@@ -1,0 +1,1 @@
+"""What a device can tell about an article, before anyone scans."""
