@@ -5,9 +5,11 @@ from __future__ import annotations
 import hashlib
 from collections.abc import Mapping
 from dataclasses import asdict, dataclass
+from datetime import UTC, datetime
 from pathlib import Path
 from typing import Any
 
+from imgcover.asking import certificate
 from imgcover.audit.folder import Listed
 from imgcover.audit.grounds import Grounds, OffGroundsError, read_file
 from imgcover.cloth.declaration import Declaration, read_declaration
@@ -72,7 +74,8 @@ class OrderBook:
         self.versions = dict(versions)
         self._options: dict[tuple[tuple[str, str], ...], Options] = {}
         self._declarations: dict[Path, Declaration | DeclarationError] = {}
-        self._digests: dict[Path, str | None] = {}
+        self._certificates: dict[str, tuple[str, bool]] = {}
+        self._digests: dict[Path, str] = {}
 
     @property
     def faults(self) -> list[DeclarationError]:
@@ -86,14 +89,18 @@ class OrderBook:
         ------
         LotSheetError
             When its row says something impossible; row and column are named.
+        CertificateError
+            When the certificate of its device cannot be read.
         """
         declared = self.declared(listed.article)
+        options = self._read(listed)
+        self._certificate(options.device)
         unread = isinstance(declared, DeclarationError)
         return Order(
             name=listed.name,
             path=listed.path,
             fault=listed.fault,
-            options=self._read(listed),
+            options=options,
             declaration=None if isinstance(declared, DeclarationError) else declared,
             sample=Sample(**{**listed.sample}),
             notes=(found(Flag.DECLARATION_UNREADABLE, str(declared)),) if unread else (),
@@ -128,23 +135,33 @@ class OrderBook:
             "notes": [each.message for each in order.notes],
             "options": options.record(),
             "sample": asdict(order.sample),
-            "device": self._digest(options.device),
+            "device": self._certificate(options.device),
             "blank": self._digest(options.blank),
             "dark": self._digest(options.dark),
             "versions": self.versions,
         }
         return hashlib.sha256(canonical(parts).encode("utf-8", "backslashreplace")).hexdigest()
 
-    def _digest(self, named: str | Path | None) -> str | None:
-        """Hash a file that pictures share; a name that is no file stands for itself."""
-        if named is None:
+    def _certificate(self, device: str | None) -> tuple[str, bool] | None:
+        """What a certificate holds, and whether it is valid today: both can touch a decision."""
+        if device is None:
             return None
-        path = Path(named)
+        if device not in self._certificates:
+            held = certificate(device)
+            assert held is not None
+            valid = held.made <= datetime.now(UTC).date() <= held.valid_until
+            self._certificates[device] = (held.sha256, valid)
+        return self._certificates[device]
+
+    def _digest(self, path: Path | None) -> str | None:
+        """Hash a file that pictures share; one that cannot be read stands for itself."""
+        if path is None:
+            return None
         if path not in self._digests:
             try:
                 self._digests[path] = hashlib.sha256(read_file(path.resolve())).hexdigest()
             except OffGroundsError:
-                self._digests[path] = str(named)
+                self._digests[path] = str(path)
         return self._digests[path]
 
     def _read(self, listed: Listed) -> Options:

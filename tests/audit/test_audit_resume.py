@@ -5,15 +5,22 @@ Audited in this process, with no workers: how work is spread is tested elsewhere
 
 import sqlite3
 from contextlib import closing
+from datetime import date, timedelta
 
 import audit_rig
+import numpy as np
 import pytest
 from audit_rig import audit_inline, lay, records, timeless
 
 from imgcover.audit.outcome import Loss, Lost
 from imgcover.audit.work import Answer
 from imgcover.cli.exits import ExitCode
-from imgcover.errors import LotSheetError
+from imgcover.errors import CertificateError, LotSheetError
+from imgcover.quantity import Measured
+from imgcover.scale.certificate import write_certificate
+from imgcover.scale.sheet import SHEET_NAME, Bars
+from imgcover.scale.sheet_bed import BedMap
+from imgcover.scale.sheet_device import DeviceReading
 
 
 def rows(out):
@@ -168,3 +175,68 @@ def test_a_file_that_an_option_names_and_cannot_be_used_is_said(tmp_path, capsys
     assert audit_inline(goods, out) is ExitCode.USAGE
     assert "blank" in capsys.readouterr().err
     assert records(out)[0]["findings"][0]["code"] == "option-unusable"
+
+
+def certified(folder, *, pitch, made, valid_until):
+    """Write a device's certificate with this pitch, px/mm, and these dates."""
+    there = np.zeros((16, 2))
+    reading = DeviceReading(
+        Measured(pitch, pitch * 1e-4, "px/mm"),
+        Measured(pitch, pitch * 1e-4, "px/mm"),
+        1e-4,
+        Measured(0.0, 1e-5, "rad"),
+        BedMap(there, there, 0.004),
+        True,
+        16,
+        (0.0, 0.0, 0.0),
+        (1e-4, 1e-4),
+    )
+    (folder / "bench.toml").write_text(
+        write_certificate(
+            reading,
+            name="bench",
+            resolution_dpi=(pitch * 25.4, pitch * 25.4),
+            tone="srgb",
+            made=made,
+            valid_until=valid_until,
+            sheet=SHEET_NAME,
+            bars=Bars(180.0, 260.0, 0.3),
+            scans_sha256=("ab" * 32,),
+        )
+    )
+
+
+def test_a_certificate_made_anew_or_expired_measures_again(tmp_path, capsys):
+    goods, out, today = tmp_path / "goods", tmp_path / "out", date.today()
+    lay(goods, {"A": 1})
+    sheet = goods / "lots.csv"
+    sheet.write_text(
+        sheet.read_text().replace("pitch\n", "device\n").replace("24px/mm", "bench.toml")
+    )
+    year = timedelta(365)
+    certified(goods, pitch=24.0, made=today - year, valid_until=today + year)
+    audit_inline(goods, out)
+    first = records(out)[0]
+    assert first["provenance"]["device"] is not None
+    assert first["threads"]["ends"]["value"] == pytest.approx(25.0, rel=0.01)
+    audit_inline(goods, out)
+    assert "1 known from before" in capsys.readouterr().err
+    certified(goods, pitch=12.0, made=today - year, valid_until=today + year)
+    audit_inline(goods, out)
+    assert "1 measured" in capsys.readouterr().err
+    assert records(out)[0]["threads"]["ends"]["value"] == pytest.approx(12.5, rel=0.01)
+    certified(goods, pitch=24.0, made=today - 2 * year, valid_until=today - year)
+    audit_inline(goods, out)
+    assert "certificate-expired" in {each["code"] for each in records(out)[0]["findings"]}
+
+
+def test_a_certificate_that_is_none_is_refused_before_anything_is_measured(tmp_path):
+    goods = tmp_path / "goods"
+    lay(goods, {"A": 1})
+    sheet = goods / "lots.csv"
+    sheet.write_text(
+        sheet.read_text().replace("pitch\n", "device\n").replace("24px/mm", "bench.toml")
+    )
+    (goods / "bench.toml").write_text("[device]\n")
+    with pytest.raises(CertificateError, match=r"bench\.toml"):
+        audit_inline(goods, tmp_path / "out")
