@@ -41,8 +41,8 @@ def settled(
     """
     want = cell(woven)
     for across, down in itertools.product(_readings(ends), _readings(picks)):
-        parts = (across.factor * one.parts[0], down.factor * one.parts[1])
-        if (across.factor * down.factor * one.index, *parts) == want:
+        index = across.factor * down.factor * one.index
+        if [index, across.factor * one.parts[0], down.factor * one.parts[1]] == [*want]:
             return across, down
     return None
 

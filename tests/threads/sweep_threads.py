@@ -64,12 +64,12 @@ def used_mask(reading: ThreadReading, shape: tuple[int, int]) -> NDArray[np.bool
     return mask
 
 
-def count_one(job: tuple[str, int]) -> list[Counted]:
+def count_one(job: tuple[str, int], reach: Reach = REACH) -> list[Counted]:
     """Draw one cloth, read it, and hold both counts against the threads in the tiles used."""
     cv2.setNumThreads(1)
     family, seed = job
     rng = np.random.default_rng([SEED, seed, list(FAMILIES).index(family)])
-    case = random_case(rng, family=family, reach=REACH)
+    case = random_case(rng, family=family, reach=reach)
     drawn = case.draw(rng)
     start = time.process_time()
     reading = read_threads(Plain(light_of(drawn.stored, case.camera.tone)))
