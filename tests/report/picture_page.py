@@ -34,7 +34,7 @@ def main() -> int:
         page = out / "lots" / f"{LOT}.html"
         browser.open(page, "--window-size=1000,1400", f"--screenshot={shot}")
         piece = Image.open(shot).convert("RGB").crop(SEEN)
-    target = ROOT / "docs" / "lot-page.png"
+    target = ROOT / ".readme" / "lot-page.png"
     target.parent.mkdir(exist_ok=True)
     piece.quantize(COLOURS).save(target, optimize=True)
     return 0
