@@ -25,6 +25,8 @@ MOST_PLACES = 50
 """Beyond it nobody cuts swatches: a better scale is cheaper."""
 LONGEST_MM = 1000.0
 """No bed is longer; a field that must be is none."""
+LEFT_BY_PLACES = 0.8
+"""Share of what may be spent that places alone may take, so that a scale anyone can make does."""
 BISECTIONS = 40
 
 
@@ -42,6 +44,22 @@ class Room:
 
     nearest: float
     width: float
+
+
+@dataclass(frozen=True, slots=True)
+class BetterScale:
+    """A scale that would do.
+
+    Parameters
+    ----------
+    u : float
+        Its largest relative standard uncertainty.
+    places : int
+        At how many places of a lot it then does.
+    """
+
+    u: float
+    places: int
 
 
 @dataclass(frozen=True, slots=True)
@@ -66,9 +84,8 @@ class Proof:
     places : int or None
         Places of a lot at which its mean leaves half of the tolerance, five at least; None where
         no number will do. Five without a tolerance.
-    scale_u : float or None
-        Where the scale is too weak: the largest u of it that would do with five places; None where
-        it is good enough, or where even an exact one would not do.
+    better : BetterScale or None
+        Where the scale stands in the way: one that would not.
     """
 
     standard_mm: float
@@ -78,7 +95,7 @@ class Proof:
     guard: float
     possible: bool | None
     places: int | None
-    scale_u: float | None
+    better: BetterScale | None
 
 
 def room_of(limits: Limits | None, figure: float, *, relative: bool) -> Room | None:
@@ -150,7 +167,7 @@ def proof(
         guard_over(field_mm),
         None if room is None else guard_over(field_mm) < room.nearest,
         PLACES if most is None else _fewest(lambda n: lot_guard(n, scale_u), most),
-        None if most is None else _scale_that_would_do(lot_guard, scale_u, most),
+        None if most is None else _better_scale(lot_guard, scale_u, most),
     )
 
 
@@ -169,17 +186,20 @@ def _fewest(guard_at: Callable[[int], float], most: float) -> int | None:
     return next((n for n in range(PLACES, MOST_PLACES + 1) if guard_at(n) <= most), None)
 
 
-def _scale_that_would_do(
+def _better_scale(
     lot_guard: Callable[[int, float], float], scale_u: float, most: float
-) -> float | None:
-    """Largest relative u of the scale that does with the standard's places, where this does not."""
-    if lot_guard(PLACES, scale_u) <= most or lot_guard(PLACES, 0.0) > most:
+) -> BetterScale | None:
+    """Find the scale that would do, where this one does not with the standard's places."""
+    if lot_guard(PLACES, scale_u) <= most:
+        return None
+    places = _fewest(lambda n: lot_guard(n, 0.0), LEFT_BY_PLACES * most)
+    if places is None or lot_guard(places, scale_u) <= most:
         return None
     low, high = 0.0, scale_u
     for _ in range(BISECTIONS):
         middle = (low + high) / 2
-        low, high = (middle, high) if lot_guard(PLACES, middle) <= most else (low, middle)
-    return low
+        low, high = (middle, high) if lot_guard(places, middle) <= most else (low, middle)
+    return BetterScale(low, places)
 
 
-__all__ = ["BETWEEN_PLACES", "MOST_SPENT", "Proof", "Room", "proof", "room_of"]
+__all__ = ["BETWEEN_PLACES", "MOST_SPENT", "BetterScale", "Proof", "Room", "proof", "room_of"]

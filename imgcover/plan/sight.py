@@ -10,8 +10,8 @@ from imgcover.scale.pitch import INCH_MM
 from imgcover.threads.reader import FEW_PIXELS, FEWEST_PIXELS
 
 COMFORTABLE_PIXELS = 8.0
-"""Pixels a thread: from here on drawn covers are read as well as at twice the resolution
-(tests/plan/test_plan_trial.py)."""
+"""Pixels a thread: from here on drawn covers are read no worse than with half as many again
+(tests/test_plan.py)."""
 FLATBED_DETAIL_MM = 0.05
 """Flatbeds show nothing smaller, however high their stated resolution."""
 FEWEST_DETAILS = 2.0

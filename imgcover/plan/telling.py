@@ -11,7 +11,6 @@ from imgcover.plan.planning import CoverPlan, Plan, SystemPlan
 from imgcover.plan.sight import COMFORTABLE_PIXELS, FEWEST_DETAILS, Standing, detail_dpi
 from imgcover.plan.trial import THREADS_DRAWN, Told
 from imgcover.verdict.line import Basis
-from imgcover.verdict.standard import PLACES
 
 SCHEMA = "imgcover/plan/1"
 
@@ -128,13 +127,14 @@ def _counting(name: str, system: SystemPlan) -> Iterator[str]:
     elif proof.needed_mm is None:
         yield (
             f"of {name}, the guard band takes {100 * proof.guard / room.nearest:.0f} % of the "
-            "tolerance, whatever the field: many swatches in order will stay undecided"
+            "tolerance, and over any field more than half: many swatches in order will stay "
+            "undecided"
         )
-    if proof.scale_u is not None:
+    if proof.better is not None:
         yield (
-            f"a scale with u of {_share_down(proof.scale_u)} or better would prove the {name} at "
-            f"{PLACES} places: make the device's certificate (imgcover calibrate), or state "
-            "--pitch-u where it is known"
+            f"a scale with u of {_share_down(proof.better.u)} or better would prove the {name} "
+            f"at {proof.better.places} places: make the device's certificate (imgcover "
+            "calibrate), or state --pitch-u where it is known"
         )
     elif proof.places is None:
         yield (
@@ -192,7 +192,9 @@ def _system_section(system: SystemPlan) -> Record:
         "needed_mm": None if proof is None else proof.needed_mm,
         "field_mm": None if proof is None else proof.field_mm,
         "places": None if proof is None else proof.places,
-        "scale_u_needed": None if proof is None else proof.scale_u,
+        "better_scale": None
+        if proof is None or proof.better is None
+        else {"u": proof.better.u, "places": proof.better.places},
     }
 
 
