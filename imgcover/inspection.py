@@ -122,7 +122,7 @@ def _judged(answers: Answers, request: Request) -> Inspection:
         scale=answers.scale,
         cover=answers.cover,
         gsm=options.gsm,
-        conditioned=request.sample.conditioned is not None,
+        conditioned=request.sample.is_conditioned,
         findings=answers.findings,
         place=request.sample.place or "",
     )

@@ -16,6 +16,7 @@ import pytest
 from imgcover.cloth.declaration import Declaration, read_declaration
 from imgcover.inspection import inspect
 from imgcover.ledger.canonical import canonical, digest
+from imgcover.ledger.record import Sample
 from imgcover.loom.camera import CameraSpec
 from imgcover.loom.redraw import draw_into
 from imgcover.request import Request, read_options
@@ -157,6 +158,19 @@ def test_what_is_no_picture_has_a_record_that_says_so(content: bytes) -> None:
     assert told["findings"][0]["code"] == "picture-unreadable"
     assert told["verdict"]["decision"] == "undecided"
     assert len(told["picture"]["sha256"]) == 64
+
+
+@pytest.mark.parametrize(
+    ("said", "conditioned"),
+    [
+        *((None, False), ("", False), ("no", False), ("No", False), ("not yet", False)),
+        *(("yes?", False), ("2 days late", False), ("ISO 139: no", False)),
+        *(("yes", True), ("Yes, 24 h", True), ("2031-04-02", True), ("ISO 139", True)),
+    ],
+)
+def test_only_a_yes_takes_moisture_out_of_the_mass(said: str | None, conditioned: bool) -> None:
+    sample = Sample(conditioned=said)
+    assert inspect(Request(source=b"", name="x", sample=sample)).observed.conditioned is conditioned
 
 
 def test_a_name_that_is_no_unicode_can_be_recorded() -> None:

@@ -36,7 +36,7 @@ def reference_table(
     >>> print(reference_table(optical_cover=Measured(0.8123, 0.0041, "1"), warp_cover=None,
     ...                       weft_cover=None, source="swatch 7"))
     [reference]
-    optical_cover = { value = 0.8123, u = 0.0041 }
+    optical_cover = "0.812300 u 0.004100"
     source = "swatch 7"
     <BLANKLINE>
     """
@@ -48,7 +48,7 @@ def reference_table(
     if not any(covers.values()):
         raise ValueError("expected at least one cover, got none")
     lines = [
-        f"{key} = {{ value = {round(cover.value, 6)}, u = {max(round(cover.u, 6), LEAST_U)} }}"
+        f'{key} = "{cover.value:.6f} u {max(cover.u, LEAST_U):.6f}"'
         for key, cover in covers.items()
         if cover is not None
     ]

@@ -8,6 +8,7 @@ says why.
 
 from __future__ import annotations
 
+import re
 from dataclasses import asdict, dataclass
 
 from imgcover.cloth.prediction import Prediction
@@ -24,6 +25,10 @@ from imgcover.threads.reading import ThreadReading, ThreadSet
 from imgcover.verdict.verdict import Verdict
 
 SCHEMA = "imgcover/record/1"
+CONDITIONED = frozenset({"yes", "y", "true", "1", "x", "conditioned"})
+"""As people tick a box; what a workbook's TRUE is read as is among them."""
+CONDITIONED_AS = re.compile(r"yes[ ,;(]|iso 139$|\d{4}-\d\d-\d\d\b")
+"""A yes with more behind it, the standard, or the day it was done."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -37,6 +42,15 @@ class Sample:
     operator: str | None = None
     conditioned: str | None = None
     note: str | None = None
+
+    @property
+    def is_conditioned(self) -> bool:
+        """Whether the sheet says that the swatch was conditioned: yes, when, or to ISO 139.
+
+        Of any other word nobody can tell; moisture then stays in the u of its mass.
+        """
+        said = (self.conditioned or "").strip().lower()
+        return said in CONDITIONED or CONDITIONED_AS.match(said) is not None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)

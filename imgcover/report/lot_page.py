@@ -13,7 +13,7 @@ from imgcover.report.layout import Units, figure, near, shown_as
 from imgcover.report.pages import decision_class, limits_text, page, said_decision
 from imgcover.report.plain import plain
 from imgcover.report.plot import Panel, Point, places_drawing
-from imgcover.report.text import reason
+from imgcover.report.text import reason, weighed
 
 MOST_THUMBNAILS = 40
 """Small pictures on one page; the first that need looking at, then the first of the others."""
@@ -82,6 +82,7 @@ def lot_page(lot: Mapping[str, Any], glances: Sequence[Glance], *, about: About)
             for line in lot["lines"]
             if line["decision"] != "conforms"
         ],
+        weighed=[f"{name}: {said}" for name, said in weighed(lot)],
         suspects=[_suspect(each) for each in lot["diagnosis"][:SUSPECTS_SHOWN]],
         drawing=_drawing(lot, about.units),
         rows=[_row(each, about.units) for each in glances],

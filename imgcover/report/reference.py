@@ -5,11 +5,10 @@ from __future__ import annotations
 from collections.abc import Mapping
 from typing import Any
 
+from imgcover.cloth.reference import reference_table
 from imgcover.findings import Severity
 from imgcover.ledger.canonical import digest
-
-KEYS = (("optical_cover", "optical"), ("warp_cover", "warp"), ("weft_cover", "weft"))
-"""As the declaration spells them, and as the record does."""
+from imgcover.quantity import Measured
 
 
 def reference_toml(record: Mapping[str, Any]) -> str:
@@ -28,14 +27,16 @@ def reference_toml(record: Mapping[str, Any]) -> str:
     cover = record["cover"]
     if cover is None or cover["optical"] is None:
         raise ValueError("the record holds no optical cover")
-    lines = ["[reference]"]
-    lines += [
-        f'{key} = "{cover[name]["value"]:.5f} u {cover[name]["u"]:.5f}"'
-        for key, name in KEYS
-        if cover[name] is not None
-    ]
-    lines.append(f'source = "imgcover record {digest(record)[:16]}"')
-    return "\n".join(lines) + "\n"
+    optical, warp, weft = (
+        None if cover[name] is None else Measured(**cover[name])
+        for name in ("optical", "warp", "weft")
+    )
+    return reference_table(
+        optical_cover=optical,
+        warp_cover=warp,
+        weft_cover=weft,
+        source=f"imgcover record {digest(record)[:16]}",
+    )
 
 
 def reasons_against(record: Mapping[str, Any]) -> str:

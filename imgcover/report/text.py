@@ -41,6 +41,8 @@ def lot_text(record: Mapping[str, Any], *, units: Units) -> str:
     places = f"{record['n_places']} of {record['required']} places"
     lines = [headline(record, units=units), f"  {places}", ""]
     lines += _judged(record["lines"], units)
+    mean = weighed(record)
+    lines += ["", *facts(mean)] if mean else []
     lines += _why(record, units)
     lines += _diagnosis(record)
     lines += findings_text(record["findings"])
@@ -60,7 +62,7 @@ def _circumstances(record: Mapping[str, Any]) -> list[str]:
 def _numbers(record: Mapping[str, Any], units: Units) -> list[str]:
     verdict = record["verdict"]
     lines = _judged(verdict["lines"], units) if verdict is not None else _bare(record, units)
-    also = [*_counted(record["threads"], units), *_seen(record, units)]
+    also = [*_counted(record["threads"], units), *_seen(record, units), *weighed(verdict)]
     return [*lines, "", *facts(also)] if also else lines
 
 
@@ -144,6 +146,20 @@ def _seen(record: Mapping[str, Any], units: Units) -> list[tuple[str, str]]:
     return rows
 
 
+def weighed(verdict: Mapping[str, Any] | None) -> list[tuple[str, str]]:
+    """The mean count that mass and threads lead to, where there was a weighing."""
+    mean = None if verdict is None else verdict.get("mean_count")
+    if mean is None:
+        return []
+    said = (
+        f"{figure(mean['tex'], 'cm')} = {figure(mean['ne'], 'cm')} by mass and threads, declared "
+        f"{brief(mean['declared_tex'])} tex"
+    )
+    if mean["only_indicates"]:
+        said += "; it only indicates, since size or the change in finishing was not declared"
+    return [("mean count used", said)]
+
+
 def _why(verdict: Mapping[str, Any] | None, units: Units) -> list[str]:
     """Reasons for every line that does not simply conform."""
     if verdict is None:
@@ -200,6 +216,9 @@ def _diagnosis(verdict: Mapping[str, Any] | None) -> list[str]:
                 for text in suspect[key]
                 for each in wrapped(plain(f"{word}: {text}"), first="         ", then="           ")
             ]
+        if suspect.get("tied_with"):
+            tied = plain(f"not to be told from: {'; '.join(suspect['tied_with'])}")
+            lines += wrapped(tied, first="         ", then="           ")
         lines += wrapped(
             plain(f"to settle it: {suspect['settle']}"), first="         ", then="           "
         )
@@ -217,4 +236,4 @@ def findings_text(findings: Sequence[Mapping[str, str]]) -> list[str]:
     return lines
 
 
-__all__ = ["findings_text", "lot_text", "reason", "record_text"]
+__all__ = ["findings_text", "lot_text", "reason", "record_text", "weighed"]

@@ -150,7 +150,7 @@ def test_an_approved_swatch_becomes_the_reference_of_its_declaration(
     whole = (goods / "tarn.toml").read_text("utf-8") + target.read_text("utf-8")
     approved = read_declaration(whole.encode(), name="approved.toml").reference.optical_cover
     assert approved is not None
-    assert table["optical_cover"].startswith(f"{approved.value:.5f} u")
+    assert table["optical_cover"].startswith(f"{approved.value:.6f} u")
     # the same swatch held against itself differs from its reference by nothing
     (tmp_path / "approved.toml").write_text(whole, "utf-8")
     _, out, _ = ended(*GOOD, "--light", "backlit", "-a", str(tmp_path / "approved.toml"),

@@ -101,3 +101,17 @@ def test_no_line_is_wider_than_a_terminal_and_none_steers_it(
 def test_a_number_is_rounded_by_its_uncertainty() -> None:
     assert figure({"value": 0.83714, "u": 0.0123, "unit": "1"}, "cm") == "83.7 ± 1.2 %"
     assert figure(None, "cm") == "–"
+
+
+def test_causes_that_cannot_be_told_apart_and_the_mean_count_are_named() -> None:
+    told = record(**CONFORMING | {"picks": per_cm(22.8)})
+    told["verdict"]["diagnosis"][0]["tied_with"] = ["the scale is off", "equal shrinkage"]
+    told["verdict"]["mean_count"] = {
+        "tex": {"value": 18.5, "u": 0.4, "unit": "tex"},
+        "ne": {"value": 31.92, "u": 0.7, "unit": "Ne"},
+        "declared_tex": 18.454,
+        "only_indicates": True,
+    }
+    text = " ".join(record_text(told, units="inch").split())
+    assert "not to be told from: the scale is off; equal shrinkage" in text
+    assert "18.50 ± 0.40 tex = 31.92 ± 0.70 Ne by mass and threads, declared 18.45 tex" in text
