@@ -106,7 +106,7 @@ def _sides(
 def _transmittance(yarn: Yarn, half: Floats) -> Floats:
     """Mean transmittance across yarns of several half widths; a wider one is thicker."""
     across = (np.arange(PARTS) + 0.5) / PARTS
-    thick = (1 - across**yarn.section) ** (1 / yarn.section)
+    thick = (1 - across ** (1 / yarn.roundness)) ** yarn.roundness
     depth = yarn.depth * half[:, None] / yarn.half_px
     return np.asarray(np.exp(-depth * thick).mean(axis=1), np.float64)
 

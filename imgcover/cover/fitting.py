@@ -17,19 +17,20 @@ from imgcover.cover.windows import cell_sides
 
 Floats = NDArray[np.float64]
 
-SECTION, SECTION_U = 3.0, 0.6
-"""Cross-section expected where the picture cannot tell: round (2) and fairly flat (4) are both
-within two standard uncertainties."""
+ROUNDNESS, ROUNDNESS_U = 0.33, 0.12
+"""Cross-section expected where the picture cannot tell: a round yarn (0.5) and a flat ribbon (0.1)
+are both within two standard uncertainties."""
 BLUR, BLUR_U = 0.8, 0.8
 """Blur expected where the picture cannot tell, px, and the standard uncertainty of its logarithm:
 a weak hint, from sharp to badly out of focus."""
 DEPTH, DEPTH_U = 2.8, 1.2
 """Yarns let through 6 % in the middle, within two standard uncertainties 0.5 % to 70 %."""
-ALIKE_U = 0.7
+ALIKE_U = 0.25
 """Ends and picks of one cloth are seldom more unlike than this."""
-EXCESS = 100.0
-"""What the fit takes for noise is mostly uneven yarn, and errs alike in many pixels: what the
-picture says of the shared unknowns counts this many times less (tests/cover/sweep_cover.py)."""
+EXCESS = 2.5
+"""What the fit takes for noise is mostly uneven yarn, blurred: it errs alike over about as many
+pixels as the blur covers, and in every pore. What the picture says of the shared unknowns counts
+so many times less again (tests/cover/sweep_cover.py)."""
 GLARE_U = 0.02
 """Glare, a share of the light, is seldom more: a dark room and a clean glass give less."""
 FIELD_U = 0.5
@@ -40,6 +41,12 @@ PLACE_U = 0.3
 """A gap's middle may lie this share of the pitch from where the phase of the repeat puts it."""
 LEAN_U = 0.05
 """An edge leans by about this much against the lattice: yarns wave in step with the weave."""
+DENSE_U = 0.15
+"""Yarns are denser and less dense from place to place by about so much of the usual."""
+MOST_LEAN = 0.4
+"""Neither leans nor densities can be followed further than this."""
+FLATTEST, ROUNDEST = 0.05, 0.65
+"""Limits of the roundness: a ribbon with steep edges, and a yarn that thins towards its rim."""
 OUTLYING = 6.0
 """Pores that fit this many times worse than the usual one (mean square) count less."""
 STARTS = (1.0, 1.5)
@@ -54,7 +61,7 @@ SETTLED = 3e-4
 """Change of the logarithm of light and blur below which the fit has settled."""
 DAMPING = 1e-3
 """Share added to each pore's own curvature: an edge that nothing shows does not run away."""
-MOST = np.array([0.2] * TERMS + [0.25, 0.5, 0.5, 0.5, 0.01])
+MOST = np.array([0.2] * TERMS + [0.25, 0.15, 0.15, 0.1, 0.01])
 """Largest step of what is shared: beyond it the derivatives no longer hold."""
 
 
@@ -65,7 +72,7 @@ class Fitted:
     Parameters
     ----------
     optics : Optics
-    edges : ndarray, shape (n, 8)
+    edges : ndarray, shape (n, 12)
         See `openings.LOCAL`.
     misfit : ndarray, shape (n,)
         Root mean square misfit of each pore's patch, linear light.
@@ -166,12 +173,13 @@ class Fit:
         ):
             edges[:, k], edges[:, k + 1] = place - gap / 2, place + gap / 2
             edges[:, 4 + k : 6 + k] = lean
+        edges[:, 8:] = 0
         light = np.zeros(TERMS)
         bare = high * brighter if self._known_light_u is None else 1.0
         light[0] = np.log(bare)
         depth = 0.7 * float(np.log(bare / low)) if bare > low else DEPTH
-        ends = Yarn(float(across - width) / 2, depth, SECTION)
-        picks = Yarn(float(down - height) / 2, depth, SECTION)
+        ends = Yarn(float(across - width) / 2, depth, ROUNDNESS)
+        picks = Yarn(float(down - height) / 2, depth, ROUNDNESS)
         return edges, Optics(light, BLUR, ends, picks, 0.1 * low)
 
     def _normal(self, edges: Floats, optics: Optics, loose: float = 1.0) -> Normal:
@@ -235,6 +243,10 @@ class Fit:
             for lean in (4 + k, 5 + k):
                 own[:, lean, lean] += straight
                 toward[:, lean] += straight * (self._leans[k // 2] - edges[:, lean])
+            even = usual / (loose * DENSE_U) ** 2
+            for dense in (8 + k, 9 + k):
+                own[:, dense, dense] += even
+                toward[:, dense] -= even * edges[:, dense]
 
     def _step(
         self, edges: Floats, optics: Optics, loose: float = 1.0
@@ -247,7 +259,7 @@ class Fit:
         moved = alone - carried @ change
         reach = 0.12 * min(self._pitch)
         edges = edges + np.clip(moved, -reach, reach)
-        edges[:, 4:] = np.clip(edges[:, 4:], -0.4, 0.4)
+        edges[:, 4:] = np.clip(edges[:, 4:], -MOST_LEAN, MOST_LEAN)
         for k in (0, 2):
             crossed = edges[:, k] > edges[:, k + 1]
             edges[crossed, k : k + 2] = edges[crossed, k : k + 2].mean(axis=1)[:, None]
@@ -273,7 +285,7 @@ class Fit:
             edges=edges,
             misfit=np.sqrt(normal.square),
             usual=float(np.sqrt(normal.usual)),
-            covariance=np.asarray(np.linalg.inv(matrix) * (EXCESS * normal.usual)),
+            covariance=np.asarray(np.linalg.inv(matrix) * (_alike(optics) * normal.usual)),
             open_by_shared=-np.einsum("na,nak->k", by_edge, carried[:, :4]) / len(edges),
             light=normal.light,
         )
@@ -287,27 +299,36 @@ def _expect_shared(
     expected = (
         *((k, FIELD_U, -optics.light[k]) for k in range(1, TERMS)),
         (TERMS, BLUR_U * optics.blur_px, -optics.blur_px * np.log(optics.blur_px / BLUR)),
-        (TERMS + 1, DEPTH_U, DEPTH - optics.ends.depth),
-        (TERMS + 2, DEPTH_U, DEPTH - optics.picks.depth),
-        (TERMS + SHARED.index("section"), loose * SECTION_U, SECTION - optics.ends.section),
+        (TERMS + 1, DEPTH_U / optics.ends.depth, DEPTH / optics.ends.depth - 1),
+        (TERMS + 2, DEPTH_U / optics.picks.depth, DEPTH / optics.picks.depth - 1),
+        (
+            TERMS + SHARED.index("roundness"),
+            loose * ROUNDNESS_U,
+            ROUNDNESS - optics.ends.roundness,
+        ),
         (TERMS + SHARED.index("glare"), GLARE_U * bare, -optics.glare),
     )
-    usual = EXCESS * usual
+    usual = _alike(optics) * usual
     for k, u, off in expected:
         matrix[k, k] += usual / u**2
         toward[k] += usual / u**2 * off
     alike = usual / ALIKE_U**2
-    apart = optics.ends.depth - optics.picks.depth
+    apart = math.log(optics.ends.depth / optics.picks.depth)
     matrix[TERMS + 1 : TERMS + 3, TERMS + 1 : TERMS + 3] += alike * np.array([[1, -1], [-1, 1]])
     toward[TERMS + 1 : TERMS + 3] += alike * apart * np.array([-1, 1])
 
 
+def _alike(optics: Optics) -> float:
+    """How many times the misfit of a pixel is that of its neighbours over again."""
+    return EXCESS * (1 + 4 * math.pi * optics.blur_px**2)
+
+
 def _moved(optics: Optics, change: Floats) -> Optics:
     """Step what is shared, within what is possible."""
-    blur, ends, picks, section, glare = (float(each) for each in change[TERMS:])
-    section = min(max(optics.ends.section + section, 1.5), 8.0)
+    blur, ends, picks, rounder, glare = (float(each) for each in change[TERMS:])
+    roundness = min(max(optics.ends.roundness + rounder, FLATTEST), ROUNDEST)
     yarns = [
-        replace(yarn, depth=min(max(yarn.depth + deeper, 0.2), 9.0), section=section)
+        replace(yarn, depth=min(max(yarn.depth * (1 + deeper), 0.2), 9.0), roundness=roundness)
         for yarn, deeper in ((optics.ends, ends), (optics.picks, picks))
     ]
     return Optics(

@@ -19,17 +19,20 @@ CONJUGATES, CLOSE = 25, 1e-6
 ATOMS = (
     *(("first", "light"), ("second", "light"), ("light", "first"), ("light", "second")),
     *(("first", "offset"), ("second", "offset"), ("offset", "first"), ("offset", "second")),
+    *(("first dense", "light"), ("second dense", "light")),
+    *(("light", "first dense"), ("light", "second dense")),
     *(("far first", "light"), ("far second", "light")),
     *(("light", "far first"), ("light", "far second")),
     ("light", "light"),
     *(("blur", "light"), ("light", "blur")),
-    *(("depth", "light"), ("light", "depth")),
-    *(("section", "light"), ("light", "section")),
+    *(("first dense", "light"), ("second dense", "light")),
+    *(("light", "first dense"), ("light", "second dense")),
+    *(("roundness", "light"), ("light", "roundness")),
     ("even", "even"),
 )
 """Every derivative of a patch is a profile across times a profile down, or a sum of two such:
 these products, in the order of `openings.LOCAL`, `FAR`, the light, and `openings.SHARED`."""
-MEMBERS = (*range(LOCAL + FAR + 1), 13, 13, 14, 15, 16, 16, 17)
+MEMBERS = (*range(LOCAL + FAR + 1), 17, 17, 18, 18, 19, 19, 20, 20, 21)
 """The unknown that each of `ATOMS` belongs to."""
 
 
@@ -39,9 +42,9 @@ class Products:
 
     Parameters
     ----------
-    gram : ndarray, shape (n, 18, 18)
-        Unknowns: 8 own, 4 far, the light, 5 shared.
-    toward : ndarray, shape (n, 18)
+    gram : ndarray, shape (n, 22, 22)
+        Unknowns: 12 own, 4 far, the light, 5 shared.
+    toward : ndarray, shape (n, 22)
     """
 
     gram: Floats
@@ -66,7 +69,8 @@ def multiply(expected: Expected, off: NDArray[np.float32], counts: NDArray[np.bo
     """
     x_rows = [ROWS.index(x) for x, _ in ATOMS]
     y_rows = [ROWS.index(y) for _, y in ATOMS]
-    across, down = counts.any(axis=1), counts.any(axis=2)
+    across = np.asarray(counts.any(axis=1), np.bool_)
+    down = np.asarray(counts.any(axis=2), np.bool_)
     seen_x, seen_y = expected.across * across[:, None], expected.down * down[:, None]
     toward = (seen_y @ off @ seen_x.transpose(0, 2, 1))[:, y_rows, x_rows]
     if np.array_equal(counts, down[:, :, None] & across[:, None, :]):
@@ -98,13 +102,13 @@ class Normal:
 
     Parameters
     ----------
-    gram : ndarray, shape (n, 12, 12)
+    gram : ndarray, shape (n, 16, 16)
         Products of the derivatives by own and far edges, patch by patch.
-    expected : ndarray, shape (n, 8, 8)
+    expected : ndarray, shape (n, 12, 12)
         What is known of each pore's own edges before looking.
-    cross : ndarray, shape (n, 8, 11)
+    cross : ndarray, shape (n, 12, 11)
     shared : ndarray, shape (11, 11)
-    toward_own, toward_shared : ndarray, shapes (n, 8) and (11,)
+    toward_own, toward_shared : ndarray, shapes (n, 12) and (11,)
     meets : Meets
     """
 
@@ -124,9 +128,9 @@ class Normal:
 
         Returns
         -------
-        alone : ndarray, shape (n, 8)
+        alone : ndarray, shape (n, 12)
             Steps of the pores' own unknowns were the shared ones to stay.
-        carried : ndarray, shape (n, 8, 11)
+        carried : ndarray, shape (n, 12, 11)
             How own unknowns answer to shared ones, with the sign turned.
         matrix, toward : ndarray, shapes (11, 11) and (11,)
         """
@@ -177,19 +181,19 @@ class Meets:
         )
 
     def spread(self, own: Floats) -> Floats:
-        """Give each patch its own unknowns and the far ones: (n, 8, k) to (n, 12, k)."""
+        """Give each patch its own unknowns and the far ones: (n, 12, k) to (n, 16, k)."""
         far = [own[pore, edge] for pore, edge in self._far]
         return np.concatenate([own, np.stack(far, axis=1)], axis=1)
 
     def gather(self, seen: Floats) -> Floats:
-        """Add up for each pore what its edges do in all patches: (n, 12, k) to (n, 8, k)."""
+        """Add up for each pore what its edges do in all patches: (n, 16, k) to (n, 12, k)."""
         own = seen[:, :LOCAL].copy()
         for k, (pore, edge) in enumerate(self._far):
             np.add.at(own[:, edge], pore, seen[:, LOCAL + k])
         return own
 
     def gather_diagonal(self, gram: Floats) -> Floats:
-        """Add up the far edges' own curvature for each pore: shape (n, 8)."""
+        """Add up the far edges' own curvature for each pore: shape (n, 12)."""
         diagonal = np.einsum("naa->na", gram).copy()
         diagonal[:, :LOCAL] = 0
         return self.gather(diagonal[..., None])[..., 0]

@@ -12,14 +12,14 @@ from imgcover.cover.shadow import Yarn, cast
 
 Floats = NDArray[np.float32]
 
-LOCAL = 8
+LOCAL = 12
 """Of each pore: left, right, upper, lower edge (px from the patch's middle), then the lean of each
-(px a px along it)."""
+(px a px along it), then how much denser than usual the thread beyond each is (relative)."""
 FAR = 4
 """Edges of the four pores next to it that bound the threads between: blur carries their light."""
 TERMS = 6
 """Coefficients of the light field: of 1, x, y, x², xy, y²."""
-SHARED = ("blur", "end depth", "pick depth", "section", "glare")
+SHARED = ("blur", "end depth", "pick depth", "roundness", "glare")
 """What all pores share beside the light field, in the order of the derivatives."""
 ROWS = (
     "light",
@@ -28,14 +28,15 @@ ROWS = (
     "far first",
     "far second",
     "blur",
-    "depth",
-    "section",
+    "first dense",
+    "second dense",
+    "roundness",
     "offset",
     "even",
 )
 """The profiles across one system: the light itself; how it changes with the pore's own two edges,
-with the far edges of the two threads beside it, and with blur, depth and section; the light times
-the distance from the pore's middle; and 1 everywhere."""
+with the far edges of the two threads beside it, and with blur, density and roundness; the light
+times the distance from the pore's middle; and 1 everywhere."""
 WIDEST = 1.7
 """Half widths are tabulated to this many times the usual one; thick places seldom go beyond."""
 
@@ -69,9 +70,9 @@ class Expected:
     Parameters
     ----------
     light : ndarray, shape (n, height, width)
-    across : ndarray, shape (n, 10, width)
+    across : ndarray, shape (n, 11, width)
         `ROWS` across the ends.
-    down : ndarray, shape (n, 10, height)
+    down : ndarray, shape (n, 11, height)
         `ROWS` across the picks.
     bare : ndarray, shape (n,)
         Bare light at each pore.
@@ -89,8 +90,8 @@ class _Profile:
 
     Parameters
     ----------
-    rows : ndarray, shape (n, 8, places)
-        The first eight of `ROWS`, along the patch's middle line.
+    rows : ndarray, shape (n, 9, places)
+        The first nine of `ROWS`, along the patch's middle line.
     lean, bend : ndarray, shape (n, places)
         First and second coefficient of the light's change along the threads.
     """
@@ -108,7 +109,7 @@ def expect(
     Parameters
     ----------
     places : Places
-    edges : ndarray, shape (n, 8)
+    edges : ndarray, shape (n, 12)
         As `LOCAL` says.
     optics : Optics
     terms : ndarray, shape (n, 6)
@@ -132,9 +133,11 @@ def expect(
     above = above - _shifts(places.column, places.above)[..., None] * at[:, 6:8][places.above]
     blur = optics.blur_px
     across = _profile(
-        at[:, :2], at[:, 4:6], height / 3, x, places.beside, beside, optics.ends, blur
+        at[:, [0, 1, 4, 5, 8, 9]], height / 3, x, places.beside, beside, optics.ends, blur
     )
-    down = _profile(at[:, 2:4], at[:, 6:8], width / 3, y, places.above, above, optics.picks, blur)
+    down = _profile(
+        at[:, [2, 3, 6, 7, 10, 11]], width / 3, y, places.above, above, optics.picks, blur
+    )
     x_off = x - at[:, :2].mean(axis=1)[:, None]
     y_off = y - at[:, 2:4].mean(axis=1)[:, None]
     bare = np.exp(terms @ optics.light).astype(np.float32)
@@ -171,8 +174,7 @@ def _shifts(
 
 
 def _profile(
-    edges: Floats,
-    leans: Floats,
+    own: Floats,
     reach: float,
     at: Floats,
     neighbours: NDArray[np.int64],
@@ -180,7 +182,20 @@ def _profile(
     yarn: Yarn,
     blur_px: float,
 ) -> _Profile:
-    """Take the shadows of the four nearest threads from the light."""
+    """Take the shadows of the four nearest threads from the light.
+
+    Parameters
+    ----------
+    own : ndarray, shape (n, 6)
+        Each pore's two edges across the threads, their leans, and the threads' densities.
+    reach : float
+        Px along the threads at which the leaning edges are looked at.
+    at : ndarray, shape (places,)
+        Px across the threads.
+    neighbours, shifts : ndarray, shapes (n, 5) and (n, 5, 1)
+        The pores whose threads are near, and px to their middles.
+    """
+    edges, leans, denser = own[:, :2], own[:, 2:4], own[:, 4:]
     shadow = cast(yarn, blur_px=blur_px, widest_px=WIDEST * yarn.half_px)
 
     def threads(here: Floats) -> tuple[Floats, Floats]:
@@ -199,9 +214,11 @@ def _profile(
     less, more = (shadow.dark(*threads(edges + side * lean)).sum(axis=1) for side in (-1, 1))
     # A thread's edge that moves by one moves its middle, and half its width, by a half.
     first, second = -(near[..., 4] + near[..., 5]) / 2, (near[..., 5] - near[..., 4]) / 2
-    by_yarn = near[..., 1:4].sum(axis=1)
-    rows = [1 - here, -second[:, 0], -first[:, 1], -first[:, 0], -second[:, 1]]
-    rows += [-by_yarn[..., k] for k in range(3)]
+    by_blur, by_roundness = near[..., 1].sum(axis=1), near[..., 3].sum(axis=1)
+    dense = near[..., 2] * np.float32(yarn.depth)
+    light = 1 - here - np.einsum("nk,nkx->nx", denser, dense)
+    rows = [light, -second[:, 0], -first[:, 1], -first[:, 0], -second[:, 1]]
+    rows += [-by_blur, -dense[:, 0], -dense[:, 1], -by_roundness]
     return _Profile(
         rows=np.stack(rows, axis=1).astype(np.float32),
         lean=(less - more) / np.float32(2 * reach),

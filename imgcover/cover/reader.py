@@ -44,7 +44,7 @@ FLOOR = 0.0015
 """What drawn cloths of known cover are off by where nothing else speaks."""
 MOST_BIAS = 0.25
 """Where blur makes the half-level edge miss more of the open area, the edge is no witness."""
-ONE_WITNESS = 0.004
+ONE_WITNESS = 0.006
 """Pores that only the light tells of, not their edges, were measured no better than this."""
 FINER = 4
 """Sub-pixels a pixel for the half-level edge: the edge is then placed to a few hundredths px."""

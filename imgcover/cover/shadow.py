@@ -14,7 +14,7 @@ ROWS = 12
 FINER = 2
 """Parts of a step when the sharp shadow is laid down: its rim is steep."""
 NUDGE = 1e-3
-"""Step of the numerical derivative by the section: far above rounding, far below its own size."""
+"""Step of the numerical derivative by the roundness: far above rounding, far below its own size."""
 BLURS = 4.5
 """The table ends this many standard deviations of the blur beyond the edge: 3e-6 are left."""
 
@@ -29,13 +29,14 @@ class Yarn:
         Half the usual width, px.
     depth : float
         −ln of the transmittance through the middle of a yarn of the usual width.
-    section : float
-        Exponent of the superellipse that the cross-section follows: 2 round, larger flatter.
+    roundness : float
+        1 over the exponent of the superellipse that the cross-section follows: 0 a flat ribbon,
+        0.5 round.
     """
 
     half_px: float
     depth: float
-    section: float
+    roundness: float
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -45,7 +46,7 @@ class Shadow:
     Parameters
     ----------
     table : ndarray, shape (widths × places, 4), float32
-        The shadow and its derivatives by blur, depth and section, by the distance from the
+        The shadow and its derivatives by blur, depth and roundness, by the distance from the
         yarn's edge: from one width to the next the profile then moves along with the edge.
     places : int
         Columns of the table.
@@ -73,7 +74,7 @@ class Shadow:
         return np.asarray(low + (high - low) * b, np.float32)
 
     def change(self, offset: NDArray[np.float32], half: NDArray[np.float32]) -> NDArray[np.float32]:
-        """Shadow and its derivatives by blur, depth, section, offset, half width: (..., 6)."""
+        """Shadow and its derivatives by blur, depth, roundness, offset, half width: (..., 6)."""
         at, a, b = self._find(offset, half)
         a, b = a[..., None], b[..., None]
         here, next_ = self.table[at], self.table[at + 1]
@@ -125,24 +126,26 @@ def cast(yarn: Yarn, *, blur_px: float, widest_px: float) -> Shadow:
     def tabulated(transform: NDArray[np.complex128]) -> NDArray[np.float64]:
         return np.take_along_axis(np.fft.irfft(transform, axis=1), column, axis=1)
 
-    inside, thick = _body(half, places, yarn.section)
-    _, flatter = _body(half, places, yarn.section + NUDGE)
+    inside, thick = _body(half, places, yarn.roundness)
+    _, rounder = _body(half, places, yarn.roundness + NUDGE)
     dense = (half / yarn.half_px)[:, None] * thick
     passed = inside * np.exp(-yarn.depth * dense)
     here = spectrum(inside - passed) * passes
-    by_section = passed * (yarn.depth / NUDGE) * (half / yarn.half_px)[:, None] * (flatter - thick)
+    by_roundness = (
+        passed * (yarn.depth / NUDGE) * (half / yarn.half_px)[:, None] * (rounder - thick)
+    )
     layers = (
         here,
         here * (-4 * np.pi**2 * blur_px * frequency**2),
         spectrum(passed * dense) * passes,
-        spectrum(by_section) * passes,
+        spectrum(by_roundness) * passes,
     )
     table = np.stack([tabulated(layer) for layer in layers], axis=-1)
     return Shadow(table.reshape(-1, 4).astype(np.float32), places, float(half[1]))
 
 
 def _body(
-    half: NDArray[np.float64], places: int, section: float
+    half: NDArray[np.float64], places: int, roundness: float
 ) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
     """Share of each part that the yarn covers, and its thickness there (1 in the middle)."""
     part = STEP_PX / FINER
@@ -151,7 +154,7 @@ def _body(
     inside = np.clip((wide - offset) / part + 0.5, 0, 1)
     # Taken at the middle of what the yarn covers of each part.
     across = np.minimum(offset / wide, np.maximum(1 - inside * part / (2 * wide), 0))
-    return inside, (1 - across**section) ** (1 / section)
+    return inside, (1 - across ** (1 / roundness)) ** roundness
 
 
 __all__ = ["Shadow", "Yarn", "cast"]
