@@ -34,6 +34,9 @@ LARGEST_SCATTER = 0.06
 LARGEST_CHANGE = 0.08
 """Relative change of scale over the frame up to which a tilt is corrected; beyond, refused. Up to
 here the correction was seen right to a hundredth of the change (tests/scale/sweep_rule.py)."""
+LARGEST_U = 0.001
+"""Relative standard uncertainty of fit and tilt beyond which a reading is not given: three times
+it is the 0.3 % that a scale by rule is held to."""
 U_CORRECTION = 0.02
 """Of the change over the frame: standard uncertainty of its correction."""
 
@@ -189,6 +192,8 @@ def _read(
     if scale is None:
         return "it lies too much aslant to the camera"
     pitch, u_relative, tilt = scale
+    if u_relative > LARGEST_U:
+        return "its lines leave the scale too uncertain: they are few, or lie aslant to the camera"
     px_per_mm = pitch * finest.factor / graduation.step_mm
     numbers = fitted.numbers[comb.kept]
     length = float(numbers[-1] - numbers[0]) * graduation.step_mm

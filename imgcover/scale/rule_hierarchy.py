@@ -28,7 +28,6 @@ class Graduation(StrEnum):
     MM = "1 mm"
     HALF_MM = "1/2 mm"
     TENTH_INCH = "1/10 in"
-    EIGHTH_INCH = "1/8 in"
     SIXTEENTH_INCH = "1/16 in"
     THIRTYSECOND_INCH = "1/32 in"
     SIXTYFOURTH_INCH = "1/64 in"
@@ -48,7 +47,6 @@ STEP_MM = {
     Graduation.MM: 1.0,
     Graduation.HALF_MM: 0.5,
     Graduation.TENTH_INCH: INCH_MM / 10,
-    Graduation.EIGHTH_INCH: INCH_MM / 8,
     Graduation.SIXTEENTH_INCH: INCH_MM / 16,
     Graduation.THIRTYSECOND_INCH: INCH_MM / 32,
     Graduation.SIXTYFOURTH_INCH: INCH_MM / 64,
@@ -59,7 +57,6 @@ PATTERNS: tuple[tuple[tuple[int, ...], tuple[Graduation, ...]], ...] = (
     ((1, 5), (Graduation.MM, Graduation.TENTH_INCH)),
     ((1, 10), (Graduation.MM, Graduation.TENTH_INCH)),
     ((1, 2, 10, 20), (Graduation.HALF_MM,)),
-    ((1, 2, 4, 8), (Graduation.EIGHTH_INCH,)),
     ((1, 2, 4, 8, 16), (Graduation.SIXTEENTH_INCH,)),
     ((1, 4, 8, 16), (Graduation.SIXTEENTH_INCH,)),
     ((1, 2, 4, 8, 16, 32), (Graduation.THIRTYSECOND_INCH,)),

@@ -39,6 +39,8 @@ MARGIN = 10.0
 """What a pattern of another unit must cost more to be out of the question."""
 MOST_LONGER = 0.25
 """Of the lines that keep their level's length: how many may be longer."""
+MOST_LONGEST = 0.12
+"""The same of the longest lines: longer ones among them are a level more, seen under wear."""
 LEAST_KEPT = 0.5
 """Of each level's lines that must keep its length; the rest may be worn or under dust."""
 MM_SHORTEST = 1.75
@@ -52,6 +54,15 @@ INCH_SHORTEST_MM = (0.7, 9.0)
 """Outside, a reading as a fraction of an inch would have lines that no rule has."""
 TENTH_TALLEST = 2.8
 """Pitches: lines 7 mm tall for tenths of an inch are millimetre lines misnamed."""
+
+
+OTHERWISE = {
+    Graduation.HALF_MM: Graduation.MM,
+    Graduation.SIXTEENTH_INCH: Graduation.THIRTYSECOND_INCH,
+    Graduation.THIRTYSECOND_INCH: Graduation.SIXTYFOURTH_INCH,
+    Graduation.SIXTYFOURTH_INCH: Graduation.THIRTYSECOND_INCH,
+}
+"""What a pattern may be as well when its longest lines are seen once: the next one up."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -108,15 +119,7 @@ def _unseen(pattern: Pattern, unit: str) -> tuple[Graduation, ...]:
     same = pattern.graduations
     if unit != "auto" and len(same) == 2:
         return same
-    twice = {Graduation.MM: Graduation.HALF_MM}
-    binary = (
-        Graduation.EIGHTH_INCH,
-        Graduation.SIXTEENTH_INCH,
-        Graduation.THIRTYSECOND_INCH,
-        Graduation.SIXTYFOURTH_INCH,
-    )
-    twice |= dict(zip(binary, (*binary[1:], Graduation.THIRTYSECOND_INCH), strict=True))
-    return same if len(same) > 1 else (*same, twice.get(same[0], Graduation.MM))
+    return same if len(same) > 1 else (*same, OTHERWISE[same[0]])
 
 
 def _fits(pattern: Pattern, row: Row) -> bool:
@@ -192,9 +195,11 @@ def _orderly(pattern: Pattern, row: Row, bound: float) -> bool:
     for index in range(len(pattern.steps)):
         mine = level == index
         kept = int((mine & (off <= bound)).sum())
-        if (mine & longer & (off > bound)).sum() > MOST_LONGER * kept:
+        most = MOST_LONGER if index + 1 < len(pattern.steps) else MOST_LONGEST
+        if (mine & longer & (off > bound)).sum() > most * kept:
             return False
-        if kept < LEAST_KEPT * mine.sum():
+        # two at least: one line cut short must not be a level of its own
+        if kept < max(LEAST_KEPT * mine.sum(), min(2, mine.sum())):
             return False
     return True
 

@@ -8,6 +8,7 @@ scale. Everything on the field lies on a half-millimetre grid, so that it is dra
 from __future__ import annotations
 
 import io
+import math
 from dataclasses import dataclass
 from functools import cache
 from typing import TYPE_CHECKING, Any, Literal
@@ -111,10 +112,14 @@ def draw_sheet(kind: Kind, *, dpi: int = 600) -> bytes:
     from matplotlib.figure import Figure
 
     with matplotlib.rc_context({"svg.hashsalt": SHEET_NAME, "pdf.fonttype": 42}):
-        figure = Figure(figsize=(PAGE_MM[0] / 25.4, PAGE_MM[1] / 25.4))
+        width, height = (math.ceil(side * dpi / 25.4) / dpi for side in PAGE_MM)
+        if kind != "png":
+            width, height = PAGE_MM[0] / 25.4, PAGE_MM[1] / 25.4
+        figure = Figure(figsize=(width, height))
         axes = figure.add_axes((0.0, 0.0, 1.0, 1.0))
-        axes.set_xlim(0, PAGE_MM[0])
-        axes.set_ylim(PAGE_MM[1], 0)
+        # a png has whole pixels: the page is let run a little over, not squeezed into them
+        axes.set_xlim(0, width * 25.4)
+        axes.set_ylim(height * 25.4, 0)
         axes.axis("off")
         _draw_field(axes)
         _draw_bars(axes)
@@ -138,23 +143,37 @@ def _draw_field(axes: Axes) -> None:
         for y0, y1, x0, x1 in _runs(black, turned=turned)
     ]
     shapes = [[(x0, y0), (x1, y0), (x1, y1), (x0, y1)] for x0, y0, x1, y1 in rectangles]
-    axes.add_collection(PolyCollection(shapes, facecolor="black", edgecolor="none"))
+    field = PolyCollection(shapes, facecolor="black", edgecolor="none")
+    field.set_snap(False)  # edges rounded to whole pixels would stretch the field
+    axes.add_collection(field)
 
 
 def _runs(black: NDArray[np.bool_], *, turned: bool) -> list[tuple[int, int, int, int]]:
-    """List the black runs along rows (or columns): first and end row, first and end column."""
+    """List the black runs along rows (or columns), equal ones in a row joined.
+
+    Each is (first row, end row, first column, end column).
+    """
     field = black.T if turned else black
-    found = []
+    found: list[tuple[int, int, int, int]] = []
+    last: dict[tuple[int, int], int] = {}
     for row, line in enumerate(field):
         edges = np.flatnonzero(np.diff(np.concatenate([[0], line.astype(int), [0]])))
-        for start, end in edges.reshape(-1, 2).tolist():
-            found.append((start, end, row, row + 1) if turned else (row, row + 1, start, end))
-    return found
+        runs = [(start, end) for start, end in edges.reshape(-1, 2).tolist()]
+        begun = {run: last.get(run, row) for run in runs}
+        found += [(first, row, *run) for run, first in last.items() if run not in begun]
+        last = begun
+    found += [(first, len(field), *run) for run, first in last.items()]
+    return [(x0, x1, y0, y1) for y0, y1, x0, x1 in found] if turned else found
 
 
 def _draw_bars(axes: Axes) -> None:
     """Draw the bars: a thin line between two thin end lines, measured from middle to middle."""
-    line: dict[str, Any] = {"color": "black", "linewidth": 0.5, "solid_capstyle": "butt"}
+    line: dict[str, Any] = {
+        "color": "black",
+        "linewidth": 0.5,
+        "solid_capstyle": "butt",
+        "snap": False,
+    }
     y, x0 = 196.0, 15.0
     axes.plot([x0, x0 + BAR_A_MM], [y, y], **line)
     for x in (x0, x0 + BAR_A_MM):

@@ -106,7 +106,9 @@ def map_bed(
         bed = bed + weights @ (what - sheet - bed)
         if several:
             sheet = _common(what - bed, keys, turn)
-    rest = what - bed - sheet
+    # many rounds follow noise as well; how rough it is, one round tells
+    own = what - sheet
+    rest = own - weights @ own
     return BedMap(where, bed, float(np.sqrt((rest**2).mean())))
 
 

@@ -53,9 +53,7 @@ def test_noise_has_no_lines() -> None:
     The mean of nine independent exponential variables exceeds e^2.2 = 9 with chance 1e-27.
     """
     generator = np.random.default_rng(2)
-    tiles = [
-        np.asarray(generator.uniform(0, 1, (SIDE, SIDE)), np.float32) for _ in range(9)
-    ]
+    tiles = [np.asarray(generator.uniform(0, 1, (SIDE, SIDE)), np.float32) for _ in range(9)]
     assert peaks(spectrum(tiles), excess=2.2, most=9) == []
 
 

@@ -46,7 +46,7 @@ class Scan:
     shear: float = 0.0
     turn: float = 0.0
     at: tuple[float, float] = (10.0, 10.0)
-    size: tuple[float, float] = (216.0, 220.0)
+    size: tuple[float, float] = (195.0, 195.0)
     stretch: tuple[float, float] = (1.0, 1.0)
     skew: float = 0.0
     distort: Distort = field(default=nowhere)

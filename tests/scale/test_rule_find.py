@@ -20,7 +20,7 @@ from imgcover.scale.rule_area import area_mask
 from imgcover.scale.rule_scale import UNEQUAL_AXES, measure_rules
 
 
-@pytest.mark.parametrize("seed", [0, 3, 5, 9, 10, 12, 18, 20, 29, 93])
+@pytest.mark.parametrize("seed", [0, 3, 5, 10, 18, 21, 29, 99])
 def test_drawn_rules_are_read(seed: int) -> None:
     """Truth is drawn: the homography that lays each rule; wood, steel, tape, plastic, any angle,
     dust, wear, 1 mm to 1/64 inch. The requirement is 0.3 %; drawn rules are exact, so what is

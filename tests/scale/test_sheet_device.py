@@ -19,7 +19,7 @@ from imgcover.scale.sheet_device import SheetRefused, read_device
 from imgcover.scale.sheet_scale import measure_sheet
 from imgcover.scale.sheet_scan import SheetCorners, find_corners
 
-X, Y, SHEAR = 7.93, 8.01, 0.002
+X, Y, SHEAR = 5.93, 6.01, 0.002
 STRETCH = (1.004, 0.997)
 BARS = Bars(BAR_A_MM * STRETCH[0], BAR_B_MM * STRETCH[1], 0.1)
 
@@ -36,7 +36,8 @@ def bend(x: NDArray[np.float64], y: NDArray[np.float64]) -> tuple[NDArray, NDArr
 def scanned(turn: float, *, bent: bool = False) -> SheetCorners:
     """The corners of one drawn scan."""
     kind = {"distort": bend} if bent else {}
-    scan = Scan(x=X, y=Y, shear=SHEAR, turn=turn, stretch=STRETCH, skew=0.001, **kind)
+    skew = 0.0 if bent else 0.001
+    scan = Scan(x=X, y=Y, shear=SHEAR, turn=turn, stretch=STRETCH, skew=skew, **kind)
     return find_corners(draw_scan(scan))
 
 
@@ -67,7 +68,8 @@ def test_one_scan_leaves_the_sheet_in() -> None:
 
 def test_distortion_of_the_bed() -> None:
     """Truth is drawn: a bent bed, less its own straight-line part, within 0.05 mm everywhere."""
-    reading = read_device([scanned(0.01, bent=True), scanned(math.pi / 2 + 0.02, bent=True)], BARS)
+    # one scan of a true print; parting print and bed is seen on flat beds, which are cheaper
+    reading = read_device([scanned(0.01, bent=True)], BARS)
     places = reading.bed.places
     truth = np.stack(bend(*places.T), axis=1)
     design = np.column_stack([places, np.ones(len(places))])
@@ -88,11 +90,11 @@ def test_a_known_sheet_checks_sharply() -> None:
 def test_a_copy_reads_by_its_own_bars() -> None:
     """Truth is drawn: a copy at 97 %, its own bars measured, gives the device's pitch all the
     same; read by the original's bars it is 3 % off, which `calibrate read` refuses."""
-    copy = find_corners(draw_scan(Scan(x=8.0, y=8.0, stretch=(0.97, 0.97))))
+    copy = find_corners(draw_scan(Scan(x=6.0, y=6.0, stretch=(0.97, 0.97))))
     right = read_device([copy], Bars(BAR_A_MM * 0.97, BAR_B_MM * 0.97, 0.1))
-    assert right.x.value == pytest.approx(8.0, rel=2e-4)
+    assert right.x.value == pytest.approx(6.0, rel=2e-4)
     wrong = read_device([copy], Bars(BAR_A_MM, BAR_B_MM, 0.1))
-    assert wrong.x.value == pytest.approx(8.0 * 0.97, rel=2e-4)
+    assert wrong.x.value == pytest.approx(6.0 * 0.97, rel=2e-4)
 
 
 @pytest.mark.parametrize("span", [0.2, 0.45])
@@ -115,7 +117,7 @@ def test_half_a_sheet_is_read_right() -> None:
 def test_a_crumpled_sheet_is_refused() -> None:
     """Truth is theory: corners that scatter by 0.2 mm are no print on glass."""
     full = scanned(0.01)
-    crumpled = full.seen + np.random.default_rng(1).normal(0, 1.6, full.seen.shape)
+    crumpled = full.seen + np.random.default_rng(1).normal(0, 1.2, full.seen.shape)
     with pytest.raises(SheetRefused, match=r"scatter|off"):
         read_device([SheetCorners(full.drawn, crumpled)], BARS)
 
@@ -129,7 +131,7 @@ def test_nothing_and_a_mirrored_sheet_show_no_corners() -> None:
 
 
 def test_the_sheet_in_a_picture() -> None:
-    """Truth is drawn: x 7.93, y 8.01 px/mm; without measured bars there is no scale."""
+    """Truth is drawn: x 5.93, y 6.01 px/mm; without measured bars there is no scale."""
     picture = draw_scan(Scan(x=X, y=Y, turn=0.3, at=(20, 25), stretch=STRETCH), fine=2)
     found = measure_sheet(picture, BARS)
     assert found.scale is not None
@@ -154,6 +156,7 @@ def test_the_drawn_page_is_the_sheet() -> None:
     assert reading.y.value == pytest.approx(120 / 25.4, rel=2e-4)
     # bar A: its end lines stand at 15 and 195 mm
     line = stored[round(198 * 120 / 25.4)].astype(float)
+    line[: round(14 * 120 / 25.4)] = 255  # bar B
     ends = [np.argmin(line[: len(line) // 2]), len(line) // 2 + np.argmin(line[len(line) // 2 :])]
     assert (ends[1] - ends[0]) * 25.4 / 120 == pytest.approx(BAR_A_MM, abs=0.25)
 
