@@ -90,6 +90,13 @@ def audit(
     sheet: Annotated[
         bool, typer.Option("--sheet", help="Read the scale from the printed sheet in each picture.")
     ] = False,
+    bars: Annotated[
+        str | None,
+        typer.Option(metavar="A,B", help="The sheet's bars as a steel rule measures them, mm."),
+    ] = None,
+    bars_u: Annotated[
+        str | None, typer.Option(metavar="MM", help="Their standard uncertainty, mm.")
+    ] = None,
     device: Annotated[
         str | None,
         typer.Option(metavar="NAME|FILE", help="Certificate of the device that took them."),
@@ -127,6 +134,8 @@ def audit(
         "rule": rule,
         "rule-class": rule_class,
         "sheet": "yes" if sheet else None,
+        "bars": bars,
+        "bars-u": bars_u,
         "device": device,
         "metadata": "yes" if metadata else None,
         "tone": tone,

@@ -6,14 +6,14 @@ import io
 import math
 from collections.abc import Sequence
 from dataclasses import dataclass
-from typing import TYPE_CHECKING
-
-if TYPE_CHECKING:
-    from matplotlib.axes import Axes
+from typing import Any
 
 WIDTH_INCH = 7.0
 """The type area of an A4 page with the margins of the lot page."""
-PANEL_INCH = 1.25
+PANEL_INCH = 1.2
+FOOT_INCH = 0.42
+LEFT_INCH, RIGHT_INCH = 0.68, 6.94
+"""Between them the values are drawn; left of them stand their figures."""
 INK = "#1c2026"
 FAINT = "#80868e"
 LIMIT = "#b3261e"
@@ -65,6 +65,9 @@ class Panel:
 def places_drawing(panels: Sequence[Panel], *, places: int) -> str:
     """Draw one panel a quantity, one under the other.
 
+    Everything goes into few collections on one plain sheet: a page a lot is drawn by the thousand,
+    and ready-made axes with their ticks take four times as long.
+
     Parameters
     ----------
     panels : sequence of Panel
@@ -79,76 +82,181 @@ def places_drawing(panels: Sequence[Panel], *, places: int) -> str:
     """
     # imported here: half a second that only a page pays
     from matplotlib import rc_context
-    from matplotlib.figure import Figure
 
+    height = FOOT_INCH + PANEL_INCH * len(panels)
+    strokes, fields, words = _Strokes(), _Fields(), _Words()
+    marks: list[tuple[float, float]] = []
+    for n, panel in enumerate(panels):
+        base = height - PANEL_INCH * (n + 1)
+        frame = _Frame(base + 0.12, PANEL_INCH - 0.18, *_span(panel), places)
+        _draw_limits(frame, panel, strokes, fields)
+        _draw_axis(frame, panel, strokes, words)
+        marks += _draw_points(frame, panel, strokes)
+    step = math.ceil(places / MOST_TICKS)
+    for number in range(1, places + 1, step):
+        words.add(frame.x(number), FOOT_INCH - 0.04, str(number), ha="center", va="top")
+    words.add(
+        (LEFT_INCH + RIGHT_INCH) / 2,
+        0.02,
+        "place, as numbered in the table",
+        ha="center",
+        va="bottom",
+        color=FAINT,
+    )
     with rc_context({"svg.hashsalt": "imgcover", "svg.fonttype": "path", "font.size": 8}):
-        figure = Figure(figsize=(WIDTH_INCH, 0.35 + PANEL_INCH * len(panels)))
-        axes = figure.subplots(len(panels), 1, sharex=True, squeeze=False)[:, 0]
-        for axis, panel in zip(axes, panels, strict=True):
-            _draw(axis, panel)
-        foot = axes[-1]
-        foot.set_xlim(0.4, places + 0.6)
-        foot.set_xlabel("place, as numbered in the table", color=FAINT)
-        step = math.ceil(places / MOST_TICKS)
-        foot.set_xticks(range(1, places + 1, step))
-        height = figure.get_figheight()
-        figure.subplots_adjust(
-            left=0.1, right=0.985, top=1 - 0.06 / height, bottom=0.38 / height, hspace=0.2
+        return _element(_sheet(height, fields, strokes, marks, words))
+
+
+@dataclass(frozen=True, slots=True)
+class _Frame:
+    """Where a panel lies on the sheet, in inches, and which values it spans."""
+
+    base: float
+    height: float
+    low: float
+    high: float
+    places: int
+
+    def x(self, number: float) -> float:
+        share = (number - 0.4) / (self.places + 0.2)
+        return LEFT_INCH + share * (RIGHT_INCH - LEFT_INCH)
+
+    def y(self, value: float) -> float:
+        inside = min(max(value, self.low), self.high)
+        return self.base + (inside - self.low) / (self.high - self.low) * self.height
+
+
+class _Strokes:
+    """Straight lines, gathered."""
+
+    def __init__(self) -> None:
+        self.ends: list[tuple[tuple[float, float], tuple[float, float]]] = []
+        self.colours: list[str] = []
+        self.widths: list[float] = []
+        self.dashes: list[Any] = []
+
+    def across(self, y: float, colour: str, width: float, *, dashed: bool = False) -> None:
+        self.add((LEFT_INCH, y), (RIGHT_INCH, y), colour, width, dashed=dashed)
+
+    def add(
+        self,
+        start: tuple[float, float],
+        end: tuple[float, float],
+        colour: str,
+        width: float,
+        *,
+        dashed: bool = False,
+    ) -> None:
+        self.ends.append((start, end))
+        self.colours.append(colour)
+        self.widths.append(width)
+        self.dashes.append((0, (6, 3)) if dashed else "solid")
+
+
+class _Fields:
+    """Shaded bands across a panel, gathered."""
+
+    def __init__(self) -> None:
+        self.corners: list[list[tuple[float, float]]] = []
+        self.colours: list[tuple[str, float]] = []
+
+    def add(self, low: float, high: float, colour: str, alpha: float) -> None:
+        self.corners.append(
+            [(LEFT_INCH, low), (RIGHT_INCH, low), (RIGHT_INCH, high), (LEFT_INCH, high)]
         )
-        return _element(figure_svg(figure))
+        self.colours.append((colour, alpha))
 
 
-def figure_svg(figure: object) -> str:
-    """Write a matplotlib figure as SVG text without its date."""
+class _Words:
+    """Words and where they stand."""
+
+    def __init__(self) -> None:
+        self.placed: list[tuple[float, float, str, dict[str, Any]]] = []
+
+    def add(self, x: float, y: float, text: str, **style: Any) -> None:
+        self.placed.append((x, y, text, {"color": INK, **style}))
+
+
+def _draw_limits(frame: _Frame, panel: Panel, strokes: _Strokes, fields: _Fields) -> None:
+    if panel.accept_lower is not None or panel.accept_upper is not None:
+        floor = frame.low if panel.accept_lower is None else panel.accept_lower
+        ceiling = frame.high if panel.accept_upper is None else panel.accept_upper
+        if ceiling > floor:
+            fields.add(frame.y(floor), frame.y(ceiling), INSIDE, 1.0)
+    for limit in (panel.lower, panel.upper):
+        if limit is not None:
+            strokes.across(frame.y(limit), LIMIT, 1.1)
+    if panel.declared is not None:
+        strokes.across(frame.y(panel.declared), INK, 0.7, dashed=True)
+    if panel.mean is not None:
+        reach = EXPANDED * (panel.mean_u or 0.0)
+        fields.add(frame.y(panel.mean - reach), frame.y(panel.mean + reach), FAINT, 0.28)
+        strokes.across(frame.y(panel.mean), INK, 1.2)
+
+
+def _draw_axis(frame: _Frame, panel: Panel, strokes: _Strokes, words: _Words) -> None:
+    from matplotlib.ticker import MaxNLocator
+
+    top = frame.base + frame.height
+    strokes.add((LEFT_INCH, frame.base), (LEFT_INCH, top), FAINT, 0.6)
+    strokes.across(frame.base, FAINT, 0.6)
+    ticks = MaxNLocator(nbins=4, steps=[1, 2, 2.5, 5, 10]).tick_values(frame.low, frame.high)
+    inside = [float(tick) for tick in ticks if frame.low <= tick <= frame.high]
+    digits = max((len(f"{tick:g}".partition(".")[2]) for tick in inside), default=0)
+    for tick in inside:
+        y = frame.y(tick)
+        strokes.add((LEFT_INCH - 0.04, y), (LEFT_INCH, y), FAINT, 0.6)
+        words.add(LEFT_INCH - 0.07, y, f"{tick:.{digits}f}", ha="right", va="center")
+    middle = frame.base + frame.height / 2
+    words.add(0.1, middle, f"{panel.title}, {panel.unit}", ha="center", va="center", rotation=90)
+
+
+def _draw_points(frame: _Frame, panel: Panel, strokes: _Strokes) -> list[tuple[float, float]]:
+    cap = min(0.04, 0.3 * (frame.x(2) - frame.x(1)))
+    marks = []
+    for point in panel.points:
+        x, reach = frame.x(point.number), EXPANDED * point.u
+        ends = [(x, frame.y(point.value - reach)), (x, frame.y(point.value + reach))]
+        strokes.add(ends[0], ends[1], INK, 0.9)
+        for _, y in ends:
+            strokes.add((x - cap, y), (x + cap, y), INK, 0.9)
+        marks.append((x, frame.y(point.value)))
+    return marks
+
+
+def _sheet(
+    height: float,
+    fields: _Fields,
+    strokes: _Strokes,
+    marks: Sequence[tuple[float, float]],
+    words: _Words,
+) -> str:
+    """Put everything on one sheet, whose unit is the inch."""
+    from matplotlib.collections import LineCollection, PolyCollection
     from matplotlib.figure import Figure
 
-    assert isinstance(figure, Figure)
+    figure = Figure(figsize=(WIDTH_INCH, height))
+    axis = figure.add_axes((0.0, 0.0, 1.0, 1.0))
+    axis.set_axis_off()
+    axis.set_xlim(0, WIDTH_INCH)
+    axis.set_ylim(0, height)
+    axis.add_collection(PolyCollection(fields.corners, facecolors=fields.colours, linewidths=0))
+    axis.add_collection(
+        LineCollection(
+            strokes.ends,
+            colors=strokes.colours,
+            linewidths=strokes.widths,
+            linestyles=strokes.dashes,
+        )
+    )
+    if marks:
+        x, y = zip(*marks, strict=True)
+        axis.plot(x, y, "o", ms=4, mec=INK, mfc="white", mew=0.9)
+    for left, base, text, style in words.placed:
+        axis.text(left, base, text, **style)
     written = io.StringIO()
     figure.savefig(written, format="svg", metadata={"Date": None, "Creator": None})
     return written.getvalue()
-
-
-def _draw(axis: Axes, panel: Panel) -> None:
-    _style(axis, panel)
-    low, high = _span(panel)
-    axis.set_ylim(low, high)
-    if panel.accept_lower is not None or panel.accept_upper is not None:
-        floor = low if panel.accept_lower is None else panel.accept_lower
-        ceiling = high if panel.accept_upper is None else panel.accept_upper
-        if ceiling > floor:
-            axis.axhspan(floor, ceiling, color=INSIDE, lw=0, zorder=0)
-    for limit in (panel.lower, panel.upper):
-        if limit is not None:
-            axis.axhline(limit, color=LIMIT, lw=1.1, zorder=1)
-    if panel.declared is not None:
-        axis.axhline(panel.declared, color=INK, lw=0.7, ls=(0, (6, 3)), zorder=1)
-    if panel.mean is not None:
-        reach = EXPANDED * (panel.mean_u or 0.0)
-        axis.axhspan(panel.mean - reach, panel.mean + reach, color=FAINT, alpha=0.28, lw=0)
-        axis.axhline(panel.mean, color=INK, lw=1.2, zorder=2)
-    if panel.points:
-        axis.errorbar(
-            [point.number for point in panel.points],
-            [point.value for point in panel.points],
-            yerr=[EXPANDED * point.u for point in panel.points],
-            fmt="o",
-            ms=4,
-            color=INK,
-            mfc="white",
-            elinewidth=0.9,
-            capsize=2,
-            zorder=3,
-        )
-
-
-def _style(axis: Axes, panel: Panel) -> None:
-    axis.set_ylabel(f"{panel.title}, {panel.unit}", color=INK)
-    axis.tick_params(colors=INK, length=2.5, width=0.6)
-    axis.ticklabel_format(axis="y", useOffset=False)
-    for side, spine in axis.spines.items():
-        spine.set_visible(side in ("left", "bottom"))
-        spine.set_linewidth(0.6)
-        spine.set_color(FAINT)
 
 
 def _span(panel: Panel) -> tuple[float, float]:

@@ -64,6 +64,12 @@ def run(folder: Path, out: Path, *options: str) -> tuple[float, float, float]:
     return time.monotonic() - begun, measured, peak
 
 
+def cpu_s() -> float:
+    """Processor seconds of everything that was started from here and has ended."""
+    used = resource.getrusage(resource.RUSAGE_CHILDREN)
+    return used.ru_utime + used.ru_stime
+
+
 def _memory_mb(pid: int) -> float:
     try:
         status = Path(f"/proc/{pid}/status").read_text()
@@ -79,10 +85,11 @@ def measuring_s(folder: Path, count: int) -> float:
     book = OrderBook(Grounds.of([folder]), defaults={}, versions={})
     listed = list_folder(folder, articles=None).pictures[: count + 1]
     measure_one(book.order(listed[0]))  # libraries are loaded
-    begun = time.perf_counter()
+    begun = time.process_time()
     for each in listed[1:]:
         measure_one(book.order(each))
-    return (time.perf_counter() - begun) / max(1, len(listed) - 1)
+    # one process with one thread: where nothing else runs this is the time itself
+    return (time.process_time() - begun) / max(1, len(listed) - 1)
 
 
 def speed(folder: Path, count: int) -> bool:
@@ -93,12 +100,15 @@ def speed(folder: Path, count: int) -> bool:
     alone = measuring_s(folder / "goods", 100)
     say(f"measuring alone          {1000 * alone:8.1f} ms a picture")
     _, _, peak_tenth = run(folder / "tenth", folder / "out-tenth", "--jobs", "2")
+    before = cpu_s()
     one, _, peak_one = run(folder / "goods", folder / "out-one", "--jobs", "1")
+    busy = (cpu_s() - before) / (count * alone) - 1
     two, measured, peak_two = run(folder / "goods", folder / "out-two", "--jobs", "2")
     say(f"one process, {count}       {one:8.1f} s, parent {peak_one:.0f} MB")
     say(f"two processes, {count}     {two:8.1f} s, parent {peak_two:.0f} MB")
     say(f"until the last picture   {measured:8.1f} s")
     faster, overhead = one / two, (one - count * alone) / (count * alone)
+    say(f"processor beside measuring {100 * busy:6.1f} %")
     flat = peak_two / peak_tenth
     say(f"two over one             {faster:8.2f} ×  (at least {FASTER})")
     say(f"overhead, one process    {100 * overhead:8.1f} %  (at most {100 * OVERHEAD:.0f})")
