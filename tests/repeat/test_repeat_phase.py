@@ -64,7 +64,7 @@ def test_a_frequency_nearby_gives_a_steady_ramp() -> None:
 def test_another_wave_is_smoothed_away(sigma: float) -> None:
     """A wave f beside the asked one keeps exp(−2 (π σ f)²) of its amplitude."""
     apart = 0.3 / sigma
-    values, grid = demodulate(
+    values, _ = demodulate(
         transform(wave(0.2 + apart, 0.1, 0.0), margin=round(5 * sigma)), (0.2, 0.1), sigma=sigma
     )
     middle = abs(values[values.shape[0] // 2, values.shape[1] // 2])

@@ -148,9 +148,7 @@ def main() -> None:
         if each.err is None or abs(each.err) > WRONG:
             what = "refused" if each.err is None else f"WRONG {100 * each.err:+.1f} %"
             codes = " ".join(each.codes)
-            say(
-                f"  {each.family} {each.seed} {each.name} {each.pixels:.1f} px {what} {codes}\n"
-            )
+            say(f"  {each.family} {each.seed} {each.name} {each.pixels:.1f} px {what} {codes}\n")
     counted = [f"{kind} {seed}" for kind, seed, hit in looked if hit]
     say(f"not woven: {len(looked)} pictures of {len(PATTERNS)} kinds, counted {len(counted)}: ")
     say(f"{', '.join(counted)}\n")
