@@ -62,7 +62,11 @@ def plan(
         typer.Option("--output", "-o", metavar="FILE", help="Write there, whole or not at all."),
     ] = None,
 ) -> ExitCode:
-    """Say what a device can tell about an article, and what it takes to prove it."""
+    """Say what a device can tell about an article.
+
+    Pixels a thread, the field and the places that its tolerances take, and how well cover is read
+    of the declared cloth, drawn as the device would show it.
+    """
     from imgcover.cloth.declaration import read_declaration
     from imgcover.plan.planning import plan as planned
     from imgcover.plan.planning import scale_for
