@@ -194,7 +194,7 @@ def _nominal(found: tuple[float, float] | None, said: str | None) -> tuple[float
     if said is None:
         if found is None:
             raise ScaleError("--dpi", "no file states its resolution", "give --dpi N as it was set")
-        return found
+        return round(found[0], 2), round(found[1], 2)  # a PNG keeps dots a metre
     parts = said.split(",")
     try:
         numbers = [float(part) for part in parts]
