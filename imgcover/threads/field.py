@@ -124,7 +124,8 @@ def flattened(light: NDArray[np.float32], period: float) -> NDArray[np.float32]:
     """
     root = np.sqrt(np.maximum(light, 0.0))
     flat = root - _smooth(root, 1.5 * period)
-    spread = np.sqrt(_smooth(flat * flat, 3 * period))
+    # a running mean may leave a hair below zero where there is nothing
+    spread = np.sqrt(np.maximum(_smooth(flat * flat, 3 * period), 0.0))
     return np.asarray(flat / np.maximum(spread, 0.3 * np.median(spread) + 1e-9), np.float32)
 
 
