@@ -27,6 +27,8 @@ KINDS = (
     *("corrugated", "white noise", "blank", "gradient", "screen", "perforated", "halftone"),
     *("checkerboard", "scales"),
 )
+"""Not among them: printed dots on a square lattice, which so small a picture cannot always tell from
+an open screen (half of the seeds are counted)."""
 
 
 def refused(reading: ThreadReading) -> ThreadReading:
@@ -70,8 +72,7 @@ def test_fewer_than_six_threads_are_too_few() -> None:
     """Truth is theory: a frame of 90 pixels at 18 pixels a thread shows five."""
     light = cloth_light(CLOTH, 36.0, 200)
     reading = refused(read_threads(Plain(light[:90, :90])))
-    codes = {each.flag for each in reading.findings}
-    assert codes <= {Flag.TOO_FEW_THREADS, Flag.NO_CROSSING_THREADS}
+    assert [each.flag for each in reading.findings] == [Flag.TOO_FEW_THREADS]
     tiny = refused(read_threads(Plain(light[:17, :17])))
     assert [each.flag for each in tiny.findings] == [Flag.TOO_FEW_THREADS]
 
@@ -92,7 +93,9 @@ def test_waves_at_the_pixels_limit_are_said_to_be_folded() -> None:
     light = 0.5 + 0.2 * np.cos(2 * np.pi * 0.49 * x) + 0.2 * np.cos(2 * np.pi * 0.49 * y)
     light += 0.04 * np.cos(2 * np.pi * 0.12 * x) + 0.04 * np.cos(2 * np.pi * 0.12 * y)
     light += 0.01 * np.random.default_rng(1).standard_normal(light.shape)
-    refused(read_threads(Plain(np.asarray(light, np.float32))))
+    reading = refused(read_threads(Plain(np.asarray(light, np.float32))))
+    (told,) = reading.findings
+    assert told.flag is Flag.TOO_COARSE and "folded over" in told.message
 
 
 def test_one_set_alone_is_not_cloth() -> None:
@@ -103,18 +106,12 @@ def test_one_set_alone_is_not_cloth() -> None:
     refused(read_threads(Plain(np.asarray(light, np.float32))))
 
 
-def test_two_cloths_side_by_side_are_not_averaged() -> None:
+def test_threads_that_cannot_be_followed_are_lost() -> None:
     """Two setts in one frame, half each: no density is that of the field."""
     finer = replace(CLOTH, ends_per_mm=2.6, end_diameter_mm=0.22)
     light = np.hstack([cloth_light(CLOTH, 16.0)[:, :160], cloth_light(finer, 16.0)[:, :160]])
-    reading = read_threads(Plain(np.ascontiguousarray(light)))
-    if reading.ends is None:
-        assert any(each.severity is Severity.REFUSAL for each in reading.findings)
-        return
-    # one of the two may be counted, its tiles alone, with the rest said to be left out
-    density = 16 * np.hypot(*reading.ends.frequency)
-    assert min(abs(density / 2.0 - 1), abs(density / 2.6 - 1)) < 0.02
-    assert has(reading.findings, Flag.TILES_LEFT_OUT)
+    reading = refused(read_threads(Plain(np.ascontiguousarray(light))))
+    assert has(reading.findings, Flag.THREADS_LOST)
 
 
 def test_a_region_is_read_alone_and_its_tiles_lie_in_it() -> None:
