@@ -147,21 +147,22 @@ class Flag(Enum):
     COVER_NOT_BACKLIT = """refusal: optical cover was not measured: the light does not come through
         pores between threads
         → check that the swatch lies on a light table and nothing lights it from the front"""
-    COVER_NOT_RESOLVED = """refusal: optical cover was not measured: the pores are too small for this
-        picture
+    COVER_NOT_RESOLVED = """refusal: optical cover was not measured: the pores are too small for
+        this picture
         → scan at a higher resolution or focus better; --blank helps"""
     COVER_CLIPPED = """refusal: optical cover was not measured: the light through the pores is
         clipped
         → lower the exposure and take the picture again"""
     NEARLY_SHUT = """info: the cloth is nearly shut: an upper bound on its open area is given
         → scan at a higher resolution to see smaller pores"""
-    COVER_WITNESSES_DISAGREE = """warning: the pores' edges and the light through them tell different
-        covers
+    COVER_WITNESSES_DISAGREE = """warning: the pores' edges and the light through them tell
+        different covers
         → look for dirt, stains or lint on the cloth; its u holds both"""
     COVER_BY_LEVELS_ONLY = """warning: the threads are not known, so cover rests on two levels of
         light alone
         → make both ends and picks countable"""
-    COVER_ON_A_CARD = """warning: cover was measured on a card in reflected light; shadows widen its u
+    COVER_ON_A_CARD = """warning: cover was measured on a card in reflected light; shadows widen
+        its u
         → photograph the swatch on a light table for a better figure"""
     COVER_FROM_WINDOWS = """info: cover was measured in windows spread evenly over the field
         → nothing to do: its u holds how much the windows differ"""
