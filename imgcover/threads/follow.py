@@ -7,7 +7,7 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy import special
+from scipy import ndimage, special
 from skimage.restoration import unwrap_phase
 
 from imgcover.repeat.phase import Grid, Transformed, demodulate
@@ -118,7 +118,7 @@ def follow(
     unwrapped = np.stack([_unwrapped(folded * phases[k], solid) / folded for k in (one, two)])
     both = np.einsum("ij,jrc->irc", np.linalg.inv(base), unwrapped)
     both, agreement = _all_lines(both, phases, relative, lines, solid, folded)
-    valid = solid & agreement
+    valid = _largest(solid & agreement)
     return Followed(both[0], both[1], valid, x, y, strength, float(typical.max()), folded)
 
 
@@ -137,6 +137,14 @@ def _centroids(
         out.append((places + sigma * moved, share))
     (x, share_x), (y, share_y) = out
     return x, y, np.outer(share_y, share_x)
+
+
+def _largest(mask: NDArray[np.bool_]) -> NDArray[np.bool_]:
+    """The largest connected part: between parts nothing says how many threads were passed."""
+    labels, count = ndimage.label(mask)
+    if count < 2:
+        return mask
+    return np.asarray(labels == np.bincount(labels[mask]).argmax())
 
 
 def _base_pair(lines: list[Line]) -> tuple[int, int] | None:

@@ -30,6 +30,12 @@ MOST_PEAKS = 40
 STEADY = 0.0015
 """Unevenness as a share of the count; even cloth lies below it."""
 
+PAIRED = 0.3
+"""Share of a thread's own line that its half line reaches where threads lie in pairs."""
+
+SEEN_APART = 6.0
+"""Pixels a thread from which on the two of a pair are seen apart through an ordinary lens."""
+
 TOLERANCE = 0.8
 """Bins a peak may lie from its place: irregular spacing broadens and splits lines."""
 
@@ -108,8 +114,21 @@ def identify(field: Field) -> Identified | None:
         best = _scaled(best, ends.factor, picks.factor)
     else:
         return None
+    ends, picks = (
+        _doubted(ends, picks, *best.pixels),
+        _doubted(picks, ends, *reversed(best.pixels)),
+    )
     followed = _steadiest(flat, best, seen, followed, sigma)
     return Identified(best, evidence, heard[1:], field, flat, followed, sigma, ends, picks, seen)
+
+
+def _doubted(one: Multiple, other: Multiple, pixels: float, pixels_other: float) -> Multiple:
+    """Doubt a set that could be pairs too fine to be seen apart, beside a set that shows pairs."""
+    paired = other.halved > PAIRED and one.halved < PAIRED / 3
+    coarser = pixels > 1.25 * pixels_other
+    if one.rival is None and paired and coarser and pixels < 2 * SEEN_APART:
+        return replace(one, rival=2 * one.factor)
+    return one
 
 
 def taken_as(seen: Identified, ends: Multiple, picks: Multiple) -> Identified | None:

@@ -56,12 +56,15 @@ class Multiple:
         Coherent amplitude of the thread's own line, in standard deviations of the field.
     noise : float
         What that amplitude would be if no thread were there.
+    halved : float
+        Amplitude of the line at half the frequency over the thread's own: of pairs.
     """
 
     factor: Fraction
     rival: Fraction | None
     amplitude: float
     noise: float
+    halved: float
 
 
 def amplitudes(
@@ -133,20 +136,27 @@ def which_multiple(
     own = tried.index(Fraction(1))
     if size.max() < max(5 * noise, SILENT * followed.loudest):
         rival = None if parts == 1 else Fraction(1, parts)
-        return Multiple(Fraction(1), rival, float(size[own]), noise)
+        return Multiple(Fraction(1), rival, float(size[own]), noise, 0.0)
     best = int(weight.argmax())
     factor = tried[best]
+    half = tried.index(factor / 2) if factor / 2 in tried else None
+    halved = 0.0 if half is None else float(size[half] / size[best])
     near = [k for k in range(len(tried)) if k != best and weight[k] * AMBIGUOUS > weight[best]]
     for k in sorted(near, key=lambda k: -weight[k]):
-        low, high = sorted((tried[k], factor))
-        ratio = high / low
-        if ratio.denominator != 1 or size[k] < 5 * noise:
+        if size[k] < 5 * noise:
             continue
-        said = _ridges(field, followed, phase, vector, sigma, low)
+        base = _common(tried[k], factor)
+        said = _ridges(field, followed, phase, vector, sigma, base)
         # the stronger line must be borne out by the threads seen, or neither reading is given
-        if said != (1 if factor == low else int(ratio)):
-            return Multiple(factor, tried[k], float(size[best]), noise)
-    return Multiple(factor, None, float(size[best]), noise)
+        if said != factor / base:
+            return Multiple(factor, tried[k], float(size[best]), noise, halved)
+    return Multiple(factor, None, float(size[best]), noise, halved)
+
+
+def _common(one: Fraction, other: Fraction) -> Fraction:
+    """The largest fraction that both are whole multiples of."""
+    below = math.lcm(one.denominator, other.denominator)
+    return Fraction(math.gcd(int(one * below), int(other * below)), below)
 
 
 def _ridges(

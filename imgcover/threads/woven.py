@@ -23,7 +23,7 @@ OPEN_GRID_LINES, OPEN_GRID_STREAK = 6.0, 0.3
 """A plain open grid has no weave lines to show and even threads: there the two threads' lines must
 tower over the floor, and fainter streaks do."""
 
-REGULAR_LINES, REGULAR_SCORE = 4.0, 7.5
+REGULAR_LINES, REGULAR_SCORE = 4.0, 6.0
 """A lattice that repeats on three threads or more, stepping one by one along both sets, with both
 threads' own lines in it and next to nothing beside it, is that of a twill or satin. In closed
 warp-faced cloth the other set has no streak to show."""
@@ -51,14 +51,16 @@ def crossing(seen: Identified) -> bool:
     if e.against > MOST_AGAINST or _hexagonal(one) or _silent(seen):
         return False
     lines = min(e.ends_line, e.picks_line)
-    regular = one.index > 2 and one.parts == (1, 1) and e.against < 0.05 and e.apart < 0.15
+    apart = 0.5 if one.index > 4 else 0.1
+    regular = one.index > 2 and one.parts == (1, 1) and e.against < 0.03 and e.apart < apart
     loud = min(seen.ends.amplitude, seen.picks.amplitude) / seen.followed.loudest
     straight = abs(one.turn) < STRAIGHT
     if not straight and loud < TURNED_LOUDNESS:
         return False
-    if straight and one.index > 1 and one.parts == (1, 1) and loud > EVEN_LOUDNESS:
-        return e.against < 0.05
-    if regular and straight and lines > REGULAR_LINES and e.score > REGULAR_SCORE:
+    even = one.index > 1 and one.parts == (1, 1) and loud > EVEN_LOUDNESS
+    if straight and even and e.against < 0.05:
+        return True
+    if straight and regular and lines > REGULAR_LINES and e.score > REGULAR_SCORE:
         return True
     narrow = min(e.ends_streak, e.picks_streak)
     if narrow > 2 * LEAST_STREAK:
