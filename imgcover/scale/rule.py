@@ -34,6 +34,9 @@ LARGEST_SCATTER = 0.06
 LARGEST_CHANGE = 0.08
 """Relative change of scale over the frame up to which a tilt is corrected; beyond, refused. Up to
 here the correction was seen right to a hundredth of the change (tests/scale/sweep_rule.py)."""
+LIKELY_ACROSS = 3.0
+"""Times the tilt along the row: what one across it may be. The camera leans any way round, so the
+two are of one size, but not equal."""
 LARGEST_U = 0.001
 """Relative standard uncertainty of fit and tilt beyond which a reading is not given: three times
 it is the 0.3 % that a scale by rule is held to."""
@@ -239,7 +242,7 @@ def _scale_at_middle(
     extent = math.hypot(picture.columns, picture.rows) / finest.factor
     along = 2 * comb.tilt / comb.pitch
     known = abs(fitted.across) > 4 * fitted.u_across
-    likely = max(abs(along), abs(fitted.across) if known else 0.0)
+    likely = max(LIKELY_ACROSS * abs(along), abs(fitted.across) if known else 0.0)
     weight = likely**2 / (likely**2 + fitted.u_across**2) if likely else 0.0
     across = weight * fitted.across if weight else 0.0
     u_across = math.sqrt(weight) * fitted.u_across if weight else 0.0

@@ -7,8 +7,9 @@ contrast and ground); a comb fitted to the places gives the pitch, the strays an
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
+import cv2
 import numpy as np
 from numpy.typing import NDArray
 
@@ -16,6 +17,12 @@ from imgcover.repeat.comb import Comb, fit_comb
 from imgcover.scale.rule_frame import Frame
 from imgcover.scale.rule_lines import Row
 
+SOFTENED = 0.8
+"""Pixels (one standard deviation) by which the picture is softened before lines are placed: a
+sharp edge's place among the pixels moves its apparent place by up to a tenth of a pixel."""
+U_PIXEL = 0.05
+"""Pixels by which lines at one end of a row may be misplaced against those at the other, softened
+as above: it does not average out where the pitch is nearly a whole number of pixels."""
 LIKENESS = 0.6
 """Correlation with the mean line below which a line is taken for dust, a digit or cloth."""
 
@@ -52,6 +59,7 @@ def fit_row(tone: NDArray[np.float32], row: Row, ratio: float) -> FittedRow | No
     FittedRow or None
         None when too few lines agree on one pitch.
     """
+    tone = np.asarray(cv2.GaussianBlur(tone, (0, 0), SOFTENED), dtype=np.float32)
     shift = (ratio - 1) / 2
     frame = Frame(
         row.frame.x * ratio + shift,
@@ -69,6 +77,10 @@ def fit_row(tone: NDArray[np.float32], row: Row, ratio: float) -> FittedRow | No
     if comb is None:
         return None
     across, u_across = _across(tone, frame, row, places, pitch, (low, high))
+    length = abs(float(np.ptp(comb.position(row.numbers))))
+    u_pixel = math.sqrt(2) * U_PIXEL / length
+    comb = replace(comb, u_pitch=math.hypot(comb.u_pitch, u_pixel * comb.pitch))
+    u_across = math.hypot(u_across, u_pixel / (0.5 * (high - low)))
     return FittedRow(frame, row.numbers[good], comb, across, u_across)
 
 

@@ -38,7 +38,7 @@ def sweep(with_rule: int, without: int, first: int) -> None:
         taken += time.perf_counter() - start
         assert case.px_per_mm is not None
         wrong = error(found, case.px_per_mm)
-        kind = "tilted" if "tilted" in case.what else "+".join(case.divisions)
+        kind = next((k for k in ("tilted", "clear") if k in case.what), "+".join(case.divisions))
         table[kind].append(wrong)
         if wrong is None:
             say(f"refused {seed:4d}  {case.what}: {found.findings[0].message}")
