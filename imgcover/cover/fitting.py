@@ -27,10 +27,12 @@ DEPTH, DEPTH_U = 2.8, 1.2
 """Yarns let through 6 % in the middle, within two standard uncertainties 0.5 % to 70 %."""
 ALIKE_U = 0.25
 """Ends and picks of one cloth are seldom more unlike than this."""
-EXCESS = 2.5
+EXCESS = 1.5
 """What the fit takes for noise is mostly uneven yarn, blurred: it errs alike over about as many
 pixels as the blur covers, and in every pore. What the picture says of the shared unknowns counts
 so many times less again (tests/cover/sweep_cover.py)."""
+FINEST = 0.001
+"""Share of the light that the fit's idea of a yarn is true to: an error that all pores share."""
 GLARE_U = 0.02
 """Glare, a share of the light, is seldom more: a dark room and a clean glass give less."""
 FIELD_U = 0.5
@@ -103,6 +105,12 @@ class Fitted:
     def height(self) -> Floats:
         """Open height of each pore, px."""
         return self.edges[:, 3] - self.edges[:, 2]
+
+    def u_open_share(self, lattice: Lattice) -> float:
+        """Standard uncertainty of the open share from what all pores share."""
+        across, down = cell_sides(lattice)
+        by_shared = self.open_by_shared / (across * down)
+        return math.sqrt(max(0.0, float(by_shared @ self.covariance @ by_shared)))
 
 
 class Fit:
@@ -203,9 +211,10 @@ class Fit:
         cross = self._meets.gather(by_terms(gram[:, edge, LOCAL + FAR :], self._terms))
         prior = np.zeros((n, LOCAL, LOCAL))
         self._expect_edges(prior, toward_own, edges, usual, loose)
-        _expect_shared(shared, toward_shared, optics, usual, loose)
+        shared_square = _common(optics, usual, n)
+        _expect_shared(shared, toward_shared, optics, shared_square, loose)
         if self._known_light_u is not None:
-            stiff = usual / self._known_light_u**2
+            stiff = shared_square / self._known_light_u**2
             shared[:TERMS, :TERMS] += stiff * np.eye(TERMS)
             toward_shared[:TERMS] -= stiff * optics.light
         return Normal(
@@ -285,7 +294,9 @@ class Fit:
             edges=edges,
             misfit=np.sqrt(normal.square),
             usual=float(np.sqrt(normal.usual)),
-            covariance=np.asarray(np.linalg.inv(matrix) * (_alike(optics) * normal.usual)),
+            covariance=np.asarray(
+                np.linalg.inv(matrix) * _common(optics, normal.usual, len(edges))
+            ),
             open_by_shared=-np.einsum("na,nak->k", by_edge, carried[:, :4]) / len(edges),
             light=normal.light,
         )
@@ -308,7 +319,6 @@ def _expect_shared(
         ),
         (TERMS + SHARED.index("glare"), GLARE_U * bare, -optics.glare),
     )
-    usual = _alike(optics) * usual
     for k, u, off in expected:
         matrix[k, k] += usual / u**2
         toward[k] += usual / u**2 * off
@@ -318,9 +328,10 @@ def _expect_shared(
     toward[TERMS + 1 : TERMS + 3] += alike * apart * np.array([-1, 1])
 
 
-def _alike(optics: Optics) -> float:
-    """How many times the misfit of a pixel is that of its neighbours over again."""
-    return EXCESS * (1 + 4 * math.pi * optics.blur_px**2)
+def _common(optics: Optics, usual: float, pores: int) -> float:
+    """Mean square misfit that counts for what is shared: it does not average out over pixels."""
+    alike = EXCESS * (1 + 4 * math.pi * optics.blur_px**2)
+    return alike * usual + pores * (FINEST * math.exp(float(optics.light[0]))) ** 2
 
 
 def _moved(optics: Optics, change: Floats) -> Optics:

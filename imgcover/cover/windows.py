@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import cv2
 import numpy as np
@@ -19,6 +19,8 @@ PIXELS_FITTED, PORES_FITTED = 60_000, 900
 """So many pixels, and pores, are fitted at most: enough to tell light, blur and yarn apart."""
 PART_SIDE, PART_CELLS, FEWEST_PARTS = 48, 6, 6
 """Sides of a fitted part, px and threads, and how many at least: the light is fitted as well."""
+SMOOTH_PX = 6.0
+"""Standard deviation of the smoothing of a blank exposure: well below any lamp's shadow."""
 WINDOW_SIDE = 512
 """Side of one window of a large picture, px: tens of threads at any resolution that counts."""
 
@@ -95,6 +97,31 @@ def spread(
     columns = np.linspace(left, right - width, across).astype(int)
     places = [(int(r), int(c), height, width) for r in rows for c in columns]
     return _read(source, field, places)
+
+
+def exposed(windows: list[Window], *, blank: Lit | None, dark: Lit | None) -> list[Window]:
+    """Take the dark exposure off, and give light as a share of the blank one.
+
+    Parameters
+    ----------
+    windows : list of Window
+    blank, dark : Lit or None
+        The same light without cloth, and the same exposure without light.
+    """
+    if blank is None and dark is None:
+        return windows
+    shares = []
+    for window in windows:
+        rows, columns = window.light.shape
+        cut = (slice(window.row, window.row + rows), slice(window.column, window.column + columns))
+        without = np.float32(0) if dark is None else dark.light(cut)
+        light = window.light - without
+        if blank is not None:
+            # Bare light is smooth: smoothing takes its noise, and leaves the cloth's own.
+            bare = cv2.GaussianBlur(blank.light(cut) - without, (0, 0), SMOOTH_PX)
+            light = light / np.maximum(bare, np.float32(1e-4))
+        shares.append(replace(window, light=np.asarray(light, np.float32)))
+    return shares
 
 
 def parts(windows: list[Window], lattice: Lattice) -> list[Window]:
@@ -223,4 +250,14 @@ def _box(side: float) -> NDArray[np.float32]:
     return (box / side).astype(np.float32)
 
 
-__all__ = ["PIXELS_READ", "Sheet", "Window", "cell_sides", "parts", "spread", "whole_periods"]
+__all__ = [
+    "PART_CELLS",
+    "PIXELS_READ",
+    "Sheet",
+    "Window",
+    "cell_sides",
+    "exposed",
+    "parts",
+    "spread",
+    "whole_periods",
+]

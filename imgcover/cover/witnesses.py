@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import math
+
 import cv2
 import numpy as np
 from numpy.typing import NDArray
@@ -89,4 +91,12 @@ def weighted(maps: list[Floats], weights: list[Floats]) -> float:
     return total / sum(float(np.sum(w, dtype=np.float64)) for w in weights)
 
 
-__all__ = ["edge_bias", "open_share", "own_pixels", "weighted"]
+def between_windows(maps: list[Floats], weights: list[Floats]) -> float:
+    """Standard uncertainty of the weighted mean from how much the windows differ; 0 for one."""
+    if len(maps) < 2:
+        return 0.0
+    means = [weighted([m], [w]) for m, w in zip(maps, weights, strict=True)]
+    return float(np.std(means, ddof=1)) / math.sqrt(len(means))
+
+
+__all__ = ["between_windows", "edge_bias", "open_share", "own_pixels", "weighted"]

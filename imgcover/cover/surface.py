@@ -1,4 +1,4 @@
-"""The two levels of a backlit cloth: the light through a pore and the light through the yarn."""
+"""The bare light behind the cloth, as a smooth surface over the picture."""
 
 from __future__ import annotations
 
@@ -103,28 +103,4 @@ def _fit(
     return Surface(rows, columns, coefficients), spread
 
 
-def two_levels(transmitted: NDArray[np.float32]) -> tuple[float, float]:
-    """Open and yarn level by splitting the values where the classes differ most, then medians.
-
-    Parameters
-    ----------
-    transmitted : ndarray, float32
-        Light over the light field.
-
-    Returns
-    -------
-    open_level, yarn_level : float
-    """
-    low, high = (float(q) for q in np.quantile(transmitted, (0.02, 0.995)))
-    for _ in range(20):
-        middle = (low + high) / 2
-        above, below = transmitted[transmitted > middle], transmitted[transmitted <= middle]
-        if above.size == 0 or below.size == 0:
-            break
-        # Medians of the outer part of each class: the blurred edge belongs to neither.
-        high = float(np.median(above[above >= np.quantile(above, 0.6)]))
-        low = float(np.median(below[below <= np.quantile(below, 0.8)]))
-    return high, low
-
-
-__all__ = ["Surface", "open_pore_light", "two_levels"]
+__all__ = ["Surface", "open_pore_light"]

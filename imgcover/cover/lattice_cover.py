@@ -1,0 +1,237 @@
+"""Cover of a cloth whose threads are known: every opening fitted, two witnesses of the area."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from imgcover.cover.bound import most_open
+from imgcover.cover.cells import Cells, cells_of
+from imgcover.cover.fitting import Fit, Fitted, light_terms
+from imgcover.cover.fold import mean_cell
+from imgcover.cover.places import Places
+from imgcover.cover.pores import describe_pores
+from imgcover.cover.reading import CoverReading, Lattice, Pitch
+from imgcover.cover.shown import shown
+from imgcover.cover.surface import Surface
+from imgcover.cover.windows import PART_CELLS, Window, cell_sides, whole_periods
+from imgcover.cover.witnesses import between_windows, edge_bias, open_share, weighted
+from imgcover.findings import Finding, Flag, found
+from imgcover.quantity import Measured
+
+EXPLAINED = 0.97
+"""Share of a patch's variance that light through openings explains: 0.99 and more on drawn
+backlit cloth, at most 0.94 on the same cloth in reflected light."""
+FLOOR = 0.0015
+"""What drawn cloths of known cover are off by where nothing else speaks (sweep_cover.py)."""
+BLURRED = 0.016
+"""Cover of pores without clear edges is uncertain by this over the square of how many blurs fit
+into a pore (sweep_cover.py): 0.4 points for two, 1.6 for one."""
+PIXEL_BLUR = 0.29
+"""Standard deviation of a pixel's own aperture: 1 / √12 px."""
+FEWEST_BLURS = 1.5
+"""Pores smaller than so many blurs can leave a fit astray on any backlit cloth."""
+LEAST_SURE = 0.010
+"""A cover less sure than this is refused: pores so small leave light and blur to be guessed."""
+MOST_BIAS = 0.25
+"""Where blur makes the half-level edge miss more of the open area, the edge is no witness."""
+APART = 0.015
+"""Witnesses further apart than this disagree: five times what they differ by on drawn cloth."""
+MOST_CLIPPED = 0.5
+"""Share of clipped pixels in the patches beyond which light would be guessed from edges alone."""
+NEARLY_SHUT = 0.97
+"""From this cover on a bound on the open area is given too."""
+BLANK_U = 0.003
+"""Relative standard uncertainty of a blank exposure: lamps drift between two pictures."""
+
+
+@dataclass(frozen=True, slots=True)
+class _Witnessed:
+    """Cover by both witnesses; `threshold` is None where the edge is none.
+
+    `blurs` says how many standard deviations of the blur fit into a pore's smaller side.
+    """
+
+    threshold: float | None
+    two_level: float
+    blurs: float
+    u_fit: float
+    u_windows: float
+
+    @property
+    def cover(self) -> float:
+        """Mean of the witnesses there are."""
+        return self.two_level if self.threshold is None else (self.threshold + self.two_level) / 2
+
+    @property
+    def u(self) -> float:
+        """One standard uncertainty: the fit's, the field's, and the witnesses' difference."""
+        apart = self.cover - self.two_level
+        if self.threshold is None:
+            apart = BLURRED / self.blurs**2
+        return math.hypot(self.u_fit, self.u_windows, apart, FLOOR)
+
+
+def by_openings(
+    windows: list[Window],
+    places: Places,
+    lattice: Lattice,
+    pitch: Pitch | None,
+    *,
+    size: tuple[int, int],
+    light_known: bool,
+) -> CoverReading:
+    """Measure the cover with the openings of the thread lattice.
+
+    Parameters
+    ----------
+    windows : list of Window
+    places : Places
+        Pores to fit, from parts of the windows.
+    lattice : Lattice
+    pitch : Pitch or None
+    size : tuple of int
+        Rows and columns of the picture.
+    light_known : bool
+        Whether light is given as a share of a blank exposure.
+    """
+    rows, columns = size
+    fit = Fit(
+        places,
+        lattice,
+        rows=rows,
+        columns=columns,
+        known_light_u=BLANK_U if light_known else None,
+    )
+    fitted = fit.solve()
+    surface = Surface(rows, columns, tuple(float(c) for c in fitted.optics.light))
+    bare = np.exp(light_terms(places.row, places.column, rows, columns) @ fitted.optics.light)
+    cells = cells_of(places, fitted)
+    middle = (1 + cells.yarn_level) / 2
+    shares = [
+        (window.light - np.float32(fitted.optics.glare)) / surface.over(window)
+        for window in windows
+    ]
+    maps = [open_share(share, middle) for share in shares]
+    weights = [whole_periods(window.inside, lattice) for window in windows]
+    source = "blank" if light_known else "open pores"
+    u_light = math.sqrt(max(0.0, float(fitted.covariance[0, 0])))
+    reading = shown(windows, shares, maps, surface, source=source, u_light=u_light)
+    blurs = _blurs(cells, fitted)
+    refused = _refusal(places, fitted, blurs)
+    if refused is not None:
+        return replace(reading, findings=(refused,))
+    bias = edge_bias(places, fitted, bare, middle)
+    edge = 1 - weighted(maps, weights) / (1 + bias) if abs(bias) < MOST_BIAS else None
+    witnessed = _Witnessed(
+        threshold=edge,
+        two_level=(1 - weighted(shares, weights)) / (1 - cells.yarn_level),
+        blurs=blurs,
+        u_fit=fitted.u_open_share(lattice),
+        u_windows=between_windows(shares, weights) / (1 - cells.yarn_level),
+    )
+    if witnessed.u > LEAST_SURE:
+        return _not_resolved(reading, windows, witnessed, light_known)
+    reading = replace(
+        reading,
+        yarn_transmittance=Measured(cells.yarn_level, _u_yarn(fitted), "1"),
+        pores=describe_pores(cells, lattice, pitch),
+        open_level=1.0,
+        yarn_level=cells.yarn_level,
+        threshold_level=middle,
+        blur_px=fitted.optics.blur_px,
+        mean_cell=mean_cell(places, fitted, bare, lattice),
+    )
+    return _answered(reading, witnessed, cells, lattice, len(windows))
+
+
+def _answered(
+    reading: CoverReading, witnessed: _Witnessed, cells: Cells, lattice: Lattice, windows: int
+) -> CoverReading:
+    """Put the figures into the reading, and say what is to be said of them."""
+    cover, u = witnessed.cover, witnessed.u
+    warp, weft = _systems(cells, lattice, cover, u)
+    findings: list[Finding] = []
+    if witnessed.threshold is not None and abs(witnessed.threshold - witnessed.two_level) > APART:
+        findings.append(found(Flag.COVER_WITNESSES_DISAGREE))
+    if windows > 1:
+        findings.append(found(Flag.COVER_FROM_WINDOWS))
+    bound = None
+    if cover > NEARLY_SHUT:
+        bound = Measured(1 - cover, u, "1")
+        findings.append(found(Flag.NEARLY_SHUT))
+    edge = witnessed.threshold
+    return replace(
+        reading,
+        optical=Measured(cover, u, "1"),
+        threshold=None if edge is None else Measured(edge, u, "1"),
+        two_level=Measured(witnessed.two_level, u, "1"),
+        upper_bound_open=bound,
+        warp=warp,
+        weft=weft,
+        findings=tuple(findings),
+    )
+
+
+def _blurs(cells: Cells, fitted: Fitted) -> float:
+    smaller = min(float(np.median(cells.open_width)), float(np.median(cells.open_height)))
+    return max(smaller, 0.1) / math.hypot(fitted.optics.blur_px, PIXEL_BLUR)
+
+
+def _refusal(places: Places, fitted: Fitted, blurs: float) -> Finding | None:
+    """Say why the fit cannot be a backlit cloth, where it cannot."""
+    spread = float(np.median(places.patch.var(axis=(1, 2))))
+    explained = 1 - float(np.median(fitted.misfit**2)) / max(spread, 1e-12)
+    if explained < EXPLAINED:
+        small = blurs < FEWEST_BLURS
+        return found(Flag.COVER_NOT_RESOLVED if small else Flag.COVER_NOT_BACKLIT)
+    if float(places.clipped.mean()) > MOST_CLIPPED:
+        return found(Flag.COVER_CLIPPED)
+    return None
+
+
+def _not_resolved(
+    reading: CoverReading, windows: list[Window], witnessed: _Witnessed, light_known: bool
+) -> CoverReading:
+    """Refuse the cover, and bound the open area."""
+    bound = most_open(windows, light_known=light_known)
+    message = (
+        "optical cover was not measured: the pores are too small for this picture, its "
+        f"uncertainty would be {100 * witnessed.u:.1f} points; at most {100 * bound.value:.0f} % "
+        "of the field is open"
+    )
+    return replace(
+        reading, upper_bound_open=bound, findings=(found(Flag.COVER_NOT_RESOLVED, message),)
+    )
+
+
+def _systems(cells: Cells, lattice: Lattice, cover: float, u: float) -> tuple[Measured, Measured]:
+    """Each system's own share of the width, its threads' widths measured in parts of the field.
+
+    The widths of all threads are brought to agree with the cover of the whole field.
+    """
+    systems = []
+    for pitch, widths in zip(
+        cell_sides(lattice), (cells.end_widths, cells.pick_widths), strict=True
+    ):
+        # The cells of one thread in one part share its width: they count as one.
+        u_widths = float(widths.std()) / math.sqrt(widths.size / PART_CELLS)
+        systems.append((1 - float(widths.mean()) / pitch, u_widths / pitch))
+    (gap_x, u_x), (gap_y, u_y) = systems
+    wider = math.sqrt(max(0.0, 1 - cover) / max(gap_x * gap_y, 1e-9))
+    return (
+        Measured(1 - gap_x * wider, math.hypot(u_x, u), "1"),
+        Measured(1 - gap_y * wider, math.hypot(u_y, u), "1"),
+    )
+
+
+def _u_yarn(fitted: Fitted) -> float:
+    """Standard uncertainty of the yarn's level: glare looks like light through the yarn."""
+    bare = math.exp(float(fitted.optics.light[0]))
+    u_glare = math.sqrt(max(0.0, float(fitted.covariance[-1, -1])))
+    return math.hypot(u_glare / bare, FLOOR)
+
+
+__all__ = ["by_openings"]
