@@ -8,8 +8,9 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import NDArray
 
+from imgcover.cover.before import BLUR, DEPTH, ROUNDNESS, Before
 from imgcover.cover.normal import Meets, Normal, by_terms, multiply
-from imgcover.cover.openings import FAR, LOCAL, SHARED, TERMS, Optics, expect
+from imgcover.cover.openings import FAR, LOCAL, TERMS, Optics, expect
 from imgcover.cover.places import Places
 from imgcover.cover.reading import Lattice
 from imgcover.cover.shadow import Yarn
@@ -17,34 +18,6 @@ from imgcover.cover.windows import cell_sides
 
 Floats = NDArray[np.float64]
 
-ROUNDNESS, ROUNDNESS_U = 0.33, 0.12
-"""Cross-section expected where the picture cannot tell: a round yarn (0.5) and a flat ribbon (0.1)
-are both within two standard uncertainties."""
-BLUR, BLUR_U = 0.8, 0.8
-"""Blur expected where the picture cannot tell, px, and the standard uncertainty of its logarithm:
-a weak hint, from sharp to badly out of focus."""
-DEPTH, DEPTH_U = 2.8, 1.2
-"""Yarns let through 6 % in the middle, within two standard uncertainties 0.5 % to 70 %."""
-ALIKE_U = 0.25
-"""Ends and picks of one cloth are seldom more unlike than this."""
-EXCESS = 1.5
-"""What the fit takes for noise is mostly uneven yarn, blurred: it errs alike over about as many
-pixels as the blur covers, and in every pore. What the picture says of the shared unknowns counts
-so many times less again (tests/cover/sweep_cover.py)."""
-FINEST = 0.001
-"""Share of the light that the fit's idea of a yarn is true to: an error that all pores share."""
-GLARE_U = 0.02
-"""Glare, a share of the light, is seldom more: a dark room and a clean glass give less."""
-FIELD_U = 0.5
-"""Logarithm by which the light may change over the picture: a tilt of 2 : 1 is within it."""
-GAP_U = 0.10
-"""A gap differs from those next to it along the threads by about this share of the pitch."""
-PLACE_U = 0.3
-"""A gap's middle may lie this share of the pitch from where the phase of the repeat puts it."""
-LEAN_U = 0.05
-"""An edge leans by about this much against the lattice: yarns wave in step with the weave."""
-DENSE_U = 0.15
-"""Yarns are denser and less dense from place to place by about so much of the usual."""
 MOST_LEAN = 0.4
 """Neither leans nor densities can be followed further than this."""
 FLATTEST, ROUNDEST = 0.05, 0.65
@@ -140,13 +113,14 @@ class Fit:
         self._terms = light_terms(places.row, places.column, rows, columns)
         self._pitch = cell_sides(lattice)
         self._meets = Meets(places)
-        self._known_light_u = known_light_u
+        self._light_known = known_light_u is not None
         self._leans = (-lattice.ends[1] / lattice.ends[0], -lattice.picks[0] / lattice.picks[1])
+        self._before = Before(places, self._pitch, self._leans, known_light_u)
 
     def solve(self) -> Fitted:
         """Start from as many lights as it takes to explain the picture fairly."""
         tried: list[Fitted] = []
-        for brighter in STARTS if self._known_light_u is None else STARTS[:1]:
+        for brighter in STARTS[:1] if self._light_known else STARTS:
             tried.append(self._from(*self._start(brighter)))
             if tried[-1].usual < FAIR * float(np.exp(tried[-1].optics.light[0])):
                 break
@@ -183,7 +157,7 @@ class Fit:
             edges[:, 4 + k : 6 + k] = lean
         edges[:, 8:] = 0
         light = np.zeros(TERMS)
-        bare = high * brighter if self._known_light_u is None else 1.0
+        bare = 1.0 if self._light_known else high * brighter
         light[0] = np.log(bare)
         depth = 0.7 * float(np.log(bare / low)) if bare > low else DEPTH
         ends = Yarn(float(across - width) / 2, depth, ROUNDNESS)
@@ -191,7 +165,6 @@ class Fit:
         return edges, Optics(light, BLUR, ends, picks, 0.1 * low)
 
     def _normal(self, edges: Floats, optics: Optics, loose: float = 1.0) -> Normal:
-        n = len(edges)
         expected = expect(self._places, edges, optics, self._terms)
         off = (self._places.patch - expected.light) * self._places.sound
         # A clipped pixel only tells that there was at least so much light.
@@ -209,53 +182,20 @@ class Fit:
         toward_shared = by_terms(toward[:, None, LOCAL + FAR :], self._terms)[:, 0].sum(axis=0)
         toward_own = self._meets.gather(toward[:, edge, None])[..., 0]
         cross = self._meets.gather(by_terms(gram[:, edge, LOCAL + FAR :], self._terms))
-        prior = np.zeros((n, LOCAL, LOCAL))
-        self._expect_edges(prior, toward_own, edges, usual, loose)
-        shared_square = _common(optics, usual, n)
-        _expect_shared(shared, toward_shared, optics, shared_square, loose)
-        if self._known_light_u is not None:
-            stiff = shared_square / self._known_light_u**2
-            shared[:TERMS, :TERMS] += stiff * np.eye(TERMS)
-            toward_shared[:TERMS] -= stiff * optics.light
+        prior, toward_prior = self._before.edges(edges, usual, loose)
+        prior_shared, toward_prior_shared = self._before.shared(optics, usual, loose)
         return Normal(
             gram[:, edge, edge],
             prior,
             cross,
-            shared,
-            toward_own,
-            toward_shared,
+            shared + prior_shared,
+            toward_own + toward_prior,
+            toward_shared + toward_prior_shared,
             self._meets,
             square,
             usual,
             expected.light,
         )
-
-    def _expect_edges(
-        self, own: Floats, toward: Floats, edges: Floats, usual: float, loose: float
-    ) -> None:
-        """Add what is known of edges before looking: like their neighbours, along the threads."""
-        places = self._places
-        for k, along, place in ((0, places.above, places.x), (2, places.beside, places.y)):
-            first, second = k, k + 1
-            pitch = self._pitch[k // 2]
-            gap = edges[:, second] - edges[:, first]
-            alike = usual / (loose * GAP_U * pitch) ** 2
-            held = usual / (loose * PLACE_U * pitch) ** 2
-            wider = alike * (gap[along].mean(axis=1) - gap)
-            over = held * (place - (edges[:, first] + edges[:, second]) / 2)
-            for edge, sign in ((first, -1), (second, 1)):
-                own[:, edge, edge] += alike + held
-                toward[:, edge] += sign * wider + over
-            own[:, first, second] -= alike
-            own[:, second, first] -= alike
-            straight = usual / (loose * LEAN_U) ** 2
-            for lean in (4 + k, 5 + k):
-                own[:, lean, lean] += straight
-                toward[:, lean] += straight * (self._leans[k // 2] - edges[:, lean])
-            even = usual / (loose * DENSE_U) ** 2
-            for dense in (8 + k, 9 + k):
-                own[:, dense, dense] += even
-                toward[:, dense] -= even * edges[:, dense]
 
     def _step(
         self, edges: Floats, optics: Optics, loose: float = 1.0
@@ -295,43 +235,11 @@ class Fit:
             misfit=np.sqrt(normal.square),
             usual=float(np.sqrt(normal.usual)),
             covariance=np.asarray(
-                np.linalg.inv(matrix) * _common(optics, normal.usual, len(edges))
+                np.linalg.inv(matrix) * self._before.common(optics, normal.usual)
             ),
             open_by_shared=-np.einsum("na,nak->k", by_edge, carried[:, :4]) / len(edges),
             light=normal.light,
         )
-
-
-def _expect_shared(
-    matrix: Floats, toward: Floats, optics: Optics, usual: float, loose: float
-) -> None:
-    """Add what is known of light, blur and yarns before looking."""
-    bare = float(np.exp(optics.light[0]))
-    expected = (
-        *((k, FIELD_U, -optics.light[k]) for k in range(1, TERMS)),
-        (TERMS, BLUR_U * optics.blur_px, -optics.blur_px * np.log(optics.blur_px / BLUR)),
-        (TERMS + 1, DEPTH_U / optics.ends.depth, DEPTH / optics.ends.depth - 1),
-        (TERMS + 2, DEPTH_U / optics.picks.depth, DEPTH / optics.picks.depth - 1),
-        (
-            TERMS + SHARED.index("roundness"),
-            loose * ROUNDNESS_U,
-            ROUNDNESS - optics.ends.roundness,
-        ),
-        (TERMS + SHARED.index("glare"), GLARE_U * bare, -optics.glare),
-    )
-    for k, u, off in expected:
-        matrix[k, k] += usual / u**2
-        toward[k] += usual / u**2 * off
-    alike = usual / ALIKE_U**2
-    apart = math.log(optics.ends.depth / optics.picks.depth)
-    matrix[TERMS + 1 : TERMS + 3, TERMS + 1 : TERMS + 3] += alike * np.array([[1, -1], [-1, 1]])
-    toward[TERMS + 1 : TERMS + 3] += alike * apart * np.array([-1, 1])
-
-
-def _common(optics: Optics, usual: float, pores: int) -> float:
-    """Mean square misfit that counts for what is shared: it does not average out over pixels."""
-    alike = EXCESS * (1 + 4 * math.pi * optics.blur_px**2)
-    return alike * usual + pores * (FINEST * math.exp(float(optics.light[0]))) ** 2
 
 
 def _moved(optics: Optics, change: Floats) -> Optics:
