@@ -18,7 +18,7 @@ from imgcover.threads.follow import Followed
 from imgcover.threads.identify import Identified, identify, taken_as
 from imgcover.threads.profile import amplitudes
 from imgcover.threads.reading import Fork, ThreadReading, ThreadSet, Tile, Track
-from imgcover.threads.regions import Pieces, bow_of, divide, local_density, without_strays
+from imgcover.threads.regions import UNCLEAR, Pieces, bow_of, divide, local_density, without_strays
 from imgcover.threads.tie import settled
 from imgcover.threads.woven import crossing
 from imgcover.weave import Weave
@@ -35,7 +35,7 @@ FEW_PIXELS = 5.0
 FEWEST_THREADS = 6.0
 """Threads across the field: with fewer, one thread more or less at the edge is the uncertainty."""
 
-LARGEST_SCATTER = 0.06
+LARGEST_SCATTER = 0.045
 """Relative scatter of the density between tiles of eight threads. Uneven cloth reaches 0.03; where
 stripes turn the contrast over and a thread was lost it is 0.1."""
 
@@ -46,6 +46,10 @@ many differ the threads were not followed."""
 CLEAR_SCORE, COARSE_PIXELS = 8.0, 18.0
 """A score most drawn cloths reach, with enough threads in a window: the smaller picture is then not
 asked."""
+
+MOST_UNCLEAR = 0.2
+"""Share of all tiles that may hold threads and yet not be followed. More, and stripes or checks
+break the field into parts between which threads are lost."""
 
 FINEST_WHEN_SMALL = 6.0
 """Pixels a thread left in a picture made smaller: finer threads are read at full size, and what
@@ -73,7 +77,7 @@ DIAGONAL = (
     " of twice as many threads on the diagonals"
 )
 
-LARGEST_U = 0.01
+LARGEST_U = 0.0075
 """A count looser than this has lost its threads somewhere, and decides nothing."""
 
 
@@ -181,7 +185,8 @@ def _read(seen: Identified, region: Region, warp: Direction) -> ThreadReading:
     pieces = divide(followed, period, seen.origin.light.shape)
     clear = len(pieces.blocks)
     pieces = without_strays(followed, pieces, one.ends, one.picks)
-    if len(pieces.blocks) < LEAST_AGREEING * clear:
+    unclear = sum(tile.reason in UNCLEAR for tile in pieces.tiles)
+    if len(pieces.blocks) < LEAST_AGREEING * clear or unclear > MOST_UNCLEAR * len(pieces.tiles):
         return _refused(found(Flag.THREADS_LOST))
     tiles = tuple(_in_picture(tile, seen) for tile in pieces.tiles)
     if not pieces.blocks:

@@ -25,6 +25,9 @@ FOLLOWED_SHARE = 0.6
 FEWEST_PLACES = 6
 """Places a plane is fitted to; three would fit any."""
 
+UNCLEAR = ("threads not clear", "unlike the rest")
+"""Why a tile with threads in it is left out."""
+
 STRAY = 0.12
 """Relative distance from the median density at which a tile is left out: tiles of cloth with 6 %
 uneven spacing scatter by 0.03."""
@@ -67,7 +70,7 @@ def divide(followed: Followed, period: float, shape: tuple[int, int]) -> Pieces:
             share = float(followed.valid[high, wide].mean())
             strength = float(np.median(followed.strength[high, wide]))
             used = share >= FOLLOWED_SHARE
-            reason = "" if used else "no threads here" if strength < 0.3 else "threads not clear"
+            reason = "" if used else "no threads here" if strength < 0.3 else UNCLEAR[0]
             tiles.append(Tile(left, top, right - left, bottom - top, used, reason))
             if used:
                 valid[high, wide] = followed.valid[high, wide]
@@ -140,7 +143,7 @@ def without_strays(
             valid[high, wide] = False
     left = iter(far)
     tiles = tuple(
-        replace(tile, used=False, reason="unlike the rest") if tile.used and next(left) else tile
+        replace(tile, used=False, reason=UNCLEAR[1]) if tile.used and next(left) else tile
         for tile in pieces.tiles
     )
     return Pieces(
@@ -206,4 +209,12 @@ def bow_of(
     return Measured(float(fit[0]) * scale, u * scale, "1")
 
 
-__all__ = ["LocalDensity", "Pieces", "bow_of", "divide", "local_density", "without_strays"]
+__all__ = [
+    "UNCLEAR",
+    "LocalDensity",
+    "Pieces",
+    "bow_of",
+    "divide",
+    "local_density",
+    "without_strays",
+]
