@@ -47,7 +47,7 @@ CLEAR_SCORE, COARSE_PIXELS = 8.0, 18.0
 """A score most drawn cloths reach, with enough threads in a window: the smaller picture is then not
 asked."""
 
-MOST_UNCLEAR = 0.2
+MOST_UNCLEAR = 0.3
 """Share of all tiles that may hold threads and yet not be followed. More, and stripes or checks
 break the field into parts between which threads are lost."""
 
