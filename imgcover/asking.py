@@ -35,8 +35,6 @@ from imgcover.weave import weave
 
 SWAPPED_FROM = 5
 """From this orientation on, stored columns became shown rows (TIFF 6.0, tag 274)."""
-UNHEARD = ("blank", "dark", "backing")
-"""Options that `read_cover` takes and does not use yet: refused, not passed over in silence."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -170,9 +168,6 @@ def measure_cover(
     picture: Picture, threads: ThreadReading, scale: Scale | None, options: Options
 ) -> CoverReading:
     """Ask the cover room for the cover of what was found to be cloth."""
-    for name in UNHEARD:
-        if getattr(options, name) is not None:
-            raise OptionError(f"--{name}", "the cover room cannot use it yet", "leave it out")
     if options.light is None:
         return CoverReading(findings=(found(Flag.LIGHT_NOT_STATED),))
     if not any(tile.used for tile in threads.tiles):
