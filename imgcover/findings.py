@@ -158,8 +158,11 @@ class Flag(Enum):
     COVER_WITNESSES_DISAGREE = """warning: the pores' edges and the light through them tell
         different covers
         → look for dirt, stains or lint on the cloth; its u holds both"""
-    COVER_PICTURE_ODD = """warning: blur in a part of the field, sharpening or clipped light widen the
-        uncertainty of the cover
+    COVER_UNEVEN = """refusal: optical cover was not measured: the pores cannot be explained by one
+        blur and one light
+        → take the picture again, flat, in focus and without sharpening, or give --region"""
+    COVER_PICTURE_ODD = """warning: blur in a part of the field, sharpening or clipped light widen
+        the uncertainty of the cover
         → take the picture again, flat, in focus and without sharpening"""
     COVER_BY_LEVELS_ONLY = """warning: the threads are not known, so cover rests on two levels of
         light alone
