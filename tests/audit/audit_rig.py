@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 import os
+import signal
 import subprocess
 import sys
 from pathlib import Path
@@ -71,6 +72,12 @@ def command(folder: Path, out: Path, *options: str) -> list[str]:
     """What a user types."""
     audit = ["audit", str(folder), "--out", str(out)]
     return [sys.executable, "-m", "imgcover", *audit, *options]
+
+
+def hearing_ctrl_c() -> None:
+    """Let a child hear Ctrl-C also where the tests were started in the background, which ignores it
+    and hands that on."""
+    signal.signal(signal.SIGINT, signal.SIG_DFL)
 
 
 def audit(

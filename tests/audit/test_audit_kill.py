@@ -14,7 +14,7 @@ from contextlib import closing
 from pathlib import Path
 
 import pytest
-from audit_rig import ROOT, command, lay, records
+from audit_rig import ROOT, command, hearing_ctrl_c, lay, records
 
 from imgcover.ledger.store import Ledger
 from imgcover.ledger.verify import verify
@@ -76,6 +76,7 @@ def test_ctrl_c_leaves_what_is_finished_and_the_next_run_goes_on(tmp_path):
         stdout=subprocess.PIPE,
         text=True,
         env={**os.environ, "PYTHONPATH": str(ROOT)},
+        preexec_fn=hearing_ctrl_c,
     ) as process:
         ledger = tmp_path / "out" / "ledger.sqlite"
         until = time.monotonic() + 120

@@ -6,7 +6,7 @@ import subprocess
 import threading
 import time
 
-from audit_rig import ROOT, command, lay, records
+from audit_rig import ROOT, command, hearing_ctrl_c, lay, records
 
 
 def test_pictures_are_measured_as_they_come_and_half_written_ones_waited_for(tmp_path):
@@ -20,6 +20,7 @@ def test_pictures_are_measured_as_they_come_and_half_written_ones_waited_for(tmp
         stdout=subprocess.DEVNULL,
         text=True,
         env={**os.environ, "PYTHONPATH": str(ROOT)},
+        preexec_fn=hearing_ctrl_c,
     ) as process:
         said: list[str] = []
         listener = threading.Thread(target=lambda: said.extend(process.stderr))
