@@ -249,7 +249,9 @@ def _scale_at_middle(
     change = math.hypot(along, across) * extent
     if change > LARGEST_CHANGE:
         return None
-    pitch = comb.pitch_at(number) * (1 + across * t)
+    # at right angles to the lines: where the frame cuts their feet off, the row seems to run aslant
+    square = abs(math.sin(frame.upright - frame.along))
+    pitch = comb.pitch_at(number) * (1 + across * t) * square
     u_along = 2 * comb.u_tilt * abs(number - comb.middle) if comb.tilt else 0.0
     relative = math.sqrt(
         (comb.u_pitch / comb.pitch) ** 2

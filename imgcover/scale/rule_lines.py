@@ -26,8 +26,9 @@ class Row:
 
     `numbers` and `positions` (px along the frame) of each line; `reach` how far each goes from
     the common foot at t = 0 up to its first clear gap, px, and `beyond` how far if gaps may be
-    dust; `strength` its contrast over the usual; `pitch` in px; `light`
-    whether the lines are lighter than their ground; `zone` the height up to which all lines go.
+    dust; `tip` its contrast just before its end over that at its foot; `strength` its contrast
+    over the usual; `pitch` in px; `light` whether the lines are lighter than their ground; `zone`
+    the height up to which all lines go.
     """
 
     frame: Frame
@@ -36,6 +37,7 @@ class Row:
     positions: NDArray[np.float64]
     reach: NDArray[np.float64]
     beyond: NDArray[np.float64]
+    tip: NDArray[np.float64]
     strength: NDArray[np.float64]
     light: bool
     zone: float
@@ -59,7 +61,7 @@ def measure_lines(
         if usual is None:
             return None
         strength, foot, top = usual
-        reach, beyond = _reach(
+        reach, beyond, tip = _reach(
             contrast, strength, t, foot=foot, top=top, clear=max(1.2, CLEAR_GAP * pitch)
         )
         lean = _lean(positions, contrast, strength, t, foot, top)
@@ -77,6 +79,7 @@ def measure_lines(
         positions=positions,
         reach=reach - foot,
         beyond=beyond - foot,
+        tip=tip,
         strength=strength / np.maximum(local, 1e-6),
         light=light,
         zone=top - foot,
@@ -130,22 +133,26 @@ def _reach(
     foot: float,
     top: float,
     clear: float,
-) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+) -> tuple[NDArray[np.float64], NDArray[np.float64], NDArray[np.float64]]:
     """Return where each line ends: where the sum of contrast over half is largest.
 
-    First with lines ended by their first clear gap, then with gaps bridged.
+    First with lines ended by their first clear gap, then with gaps bridged; last how strong each
+    is just before its end: a line that ends is, one that fades away is not.
     """
     # its own contrast, for wear goes line by line; but noise must not become a line
     usual = np.maximum(strength, 0.3 * median_filter(strength, 9, mode="nearest"))[:, None]
     usual = np.maximum(usual, 0.2 * np.median(strength))
     start = int(np.searchsorted(t, (foot + top) / 2))
-    above = np.cumsum(np.clip(contrast[:, start:] / usual, -0.5, 1.5) - 0.5, axis=1)
+    relative = np.clip(contrast[:, start:] / usual, -0.5, 1.5)
+    above = np.cumsum(relative - 0.5, axis=1)
     # a digit over a line's end must not lengthen it, dust on a line not shorten it: which of the
     # two a gap is, the pattern of all lines decides
     fallen = np.maximum.accumulate(above, axis=1) - above > clear
     ended = np.maximum.accumulate(fallen, axis=1)
     first = np.argmax(np.where(ended, -np.inf, above), axis=1)
-    return t[start] + first + 0.5, t[start] + np.argmax(above, axis=1) + 0.5
+    before = first[:, None] - np.arange(1, 4)
+    tip = np.take_along_axis(relative, np.maximum(before, 0), axis=1).mean(axis=1)
+    return t[start] + first + 0.5, t[start] + np.argmax(above, axis=1) + 0.5, tip
 
 
 def _lean(

@@ -12,6 +12,7 @@ from dataclasses import dataclass
 from enum import Enum
 
 import numpy as np
+from numpy.typing import NDArray
 from scipy.special import gammaln
 
 from imgcover.scale.rule_hierarchy import (
@@ -39,6 +40,11 @@ MARGIN = 10.0
 """What a pattern of another unit must cost more to be out of the question."""
 MOST_LONGER = 0.25
 """Of the lines that keep their level's length: how many may be longer."""
+UNMISTAKABLE = ((1, 5, 10), (1, 2, 10, 20))
+"""Patterns whose period could be neither halved nor doubled into another scale's."""
+SHARP_TIP = 0.72
+"""Contrast just before a longest line's end, over that at its foot: a line that fades away is
+half as strong there by definition, one that ends nearly as strong as at its foot."""
 MOST_LONGEST = 0.12
 """The same of the longest lines: longer ones among them are a level more, seen under wear."""
 LEAST_KEPT = 0.5
@@ -170,6 +176,14 @@ def _recurs(pattern: Pattern, row: Row) -> Recurrence:
     ends = misfit(row, np.full(len(reach), top)) <= bound
     if not _orderly(pattern, row, bound):
         return Recurrence.DISPROVED
+    if pattern.steps in UNMISTAKABLE:
+        # that they are longer than the level below is enough, however far each still reaches
+        ends |= reach > between + bound
+    else:
+        # half or twice the period would be as good a scale: a worn line must not decide
+        if not _in_both_turns(pattern, row, ends):
+            return Recurrence.DISPROVED
+        ends &= row.tip >= SHARP_TIP
     longest = dict(zip(row.numbers.tolist(), ends.tolist(), strict=True))
     length = dict(zip(row.numbers.tolist(), reach.tolist(), strict=True))
     tried = 0
@@ -184,6 +198,20 @@ def _recurs(pattern: Pattern, row: Row) -> Recurrence:
     return Recurrence.DISPROVED if tried else Recurrence.NOT_IN_FRAME
 
 
+def _in_both_turns(pattern: Pattern, row: Row, ends: NDArray[np.bool_]) -> bool:
+    """Whether half of the longest lines keep their length in each turn of twice the period.
+
+    In a scale of twice the period every second of them would be longer; wear may shorten one of
+    those to the same length, but hardly half.
+    """
+    period = pattern.steps[-1]
+    for turn in (0, period):
+        mine = (row.numbers - pattern.phase - turn) % (2 * period) == 0
+        if (mine & ends).sum() < LEAST_KEPT * mine.sum():
+            return False
+    return True
+
+
 def _orderly(pattern: Pattern, row: Row, bound: float) -> bool:
     """Whether every level keeps its length.
 
@@ -194,6 +222,8 @@ def _orderly(pattern: Pattern, row: Row, bound: float) -> bool:
     longer = (row.reach / row.pitch) > np.array(pattern.lengths)[level]
     for index in range(len(pattern.steps)):
         mine = level == index
+        if pattern.steps in UNMISTAKABLE and index + 1 == len(pattern.steps):
+            continue
         kept = int((mine & (off <= bound)).sum())
         most = MOST_LONGER if index + 1 < len(pattern.steps) else MOST_LONGEST
         if (mine & longer & (off > bound)).sum() > most * kept:

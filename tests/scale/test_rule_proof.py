@@ -36,6 +36,7 @@ def row(reach: NDArray[np.float64]) -> Row:
         ends,
         ends,
         np.ones(len(reach)),
+        np.ones(len(reach)),
         False,
         float(ends.min()),
     )
