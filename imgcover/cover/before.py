@@ -19,15 +19,16 @@ are both within two standard uncertainties."""
 BLUR, BLUR_U = 0.8, 0.8
 """Blur expected where the picture cannot tell, px, and the standard uncertainty of its logarithm:
 a weak hint, from sharp to badly out of focus."""
-DEPTH, DEPTH_U = 2.8, 1.2
-"""Yarns let through 6 % in the middle, within two standard uncertainties 0.5 % to 70 %."""
+DEPTH, DEPTH_U = 2.8, 0.6
+"""Yarns let through 6 % in the middle; the uncertainty is that of the logarithm of the depth: from
+40 % to nothing at all within two."""
 ALIKE_U = 0.25
 """Ends and picks of one cloth are seldom more unlike than this."""
 EXCESS = 1.5
 """What the fit takes for noise is mostly uneven yarn, blurred: it errs alike over about as many
 pixels as the blur covers, and in every pore. What the picture says of the shared unknowns counts
 so many times less again (tests/cover/sweep_cover.py)."""
-FINEST = 0.001
+FINEST = 0.0015
 """Share of the light that the fit's idea of a yarn is true to: an error that all pores share."""
 GLARE_U = 0.02
 """Glare, a share of the light, is seldom more: a dark room and a clean glass give less."""
@@ -121,8 +122,8 @@ class Before:
         expected = [
             *((k, field_u, -optics.light[k]) for k in range(1, TERMS)),
             (TERMS, BLUR_U * optics.blur_px, -optics.blur_px * math.log(optics.blur_px / BLUR)),
-            (TERMS + 1, DEPTH_U / end, DEPTH / end - 1),
-            (TERMS + 2, DEPTH_U / pick, DEPTH / pick - 1),
+            (TERMS + 1, DEPTH_U, math.log(DEPTH / end)),
+            (TERMS + 2, DEPTH_U, math.log(DEPTH / pick)),
             (TERMS + 3, loose * ROUNDNESS_U, ROUNDNESS - optics.ends.roundness),
             (TERMS + 4, GLARE_U * math.exp(float(optics.light[0])), -optics.glare),
         ]

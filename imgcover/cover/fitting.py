@@ -22,6 +22,8 @@ MOST_LEAN = 0.4
 """Neither leans nor densities can be followed further than this."""
 FLATTEST, ROUNDEST = 0.05, 0.65
 """Limits of the roundness: a ribbon with steep edges, and a yarn that thins towards its rim."""
+SHARPEST = 0.05
+"""The least blur, px: below it the pixel's own aperture is all that is seen."""
 OUTLYING = 6.0
 """Pores that fit this many times worse than the usual one (mean square) count less."""
 STARTS = (1.0, 1.5)
@@ -252,7 +254,7 @@ def _moved(optics: Optics, change: Floats) -> Optics:
     ]
     return Optics(
         light=optics.light + change[:TERMS],
-        blur_px=max(0.15, optics.blur_px + blur),
+        blur_px=max(SHARPEST, optics.blur_px + blur),
         ends=yarns[0],
         picks=yarns[1],
         glare=max(0.0, optics.glare + glare),

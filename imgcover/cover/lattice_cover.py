@@ -6,6 +6,7 @@ import math
 from dataclasses import dataclass, replace
 
 import numpy as np
+from numpy.typing import NDArray
 
 from imgcover.cover.bound import most_open
 from imgcover.cover.cells import Cells, cells_of
@@ -26,9 +27,9 @@ EXPLAINED = 0.97
 backlit cloth, at most 0.94 on the same cloth in reflected light."""
 FLOOR = 0.0015
 """What drawn cloths of known cover are off by where nothing else speaks (sweep_cover.py)."""
-BLURRED = 0.016
-"""Cover of pores without clear edges is uncertain by this over the square of how many blurs fit
-into a pore (sweep_cover.py): 0.4 points for two, 1.6 for one."""
+BLURRED = 0.03
+"""Cover of pores without clear edges is uncertain by this over the cube of how many blurs fit into
+a pore (sweep_cover.py): 0.4 points for two, 0.9 for one and a half."""
 PIXEL_BLUR = 0.29
 """Standard deviation of a pixel's own aperture: 1 / √12 px."""
 FEWEST_BLURS = 1.5
@@ -39,8 +40,12 @@ MOST_BIAS = 0.25
 """Where blur makes the half-level edge miss more of the open area, the edge is no witness."""
 APART = 0.015
 """Witnesses further apart than this disagree: five times what they differ by on drawn cloth."""
-MOST_CLIPPED = 0.5
-"""Share of clipped pixels in the patches beyond which light would be guessed from edges alone."""
+GUESSED, MOST_GUESSED = 0.2, 0.05
+"""Light above what the file can hold is guessed from the edges: cover is uncertain by the first of
+that share of all light, and refused beyond the second (pictures exposed 1.2 times too long)."""
+ODD = 0.005
+"""Misfit common to all pores, a share of the light, from which the picture is not as it should be:
+sharpened pictures and fields blurred in part show 0.004 to 0.02, others at most 0.002."""
 NEARLY_SHUT = 0.97
 """From this cover on a bound on the open area is given too."""
 BLANK_U = 0.003
@@ -59,6 +64,8 @@ class _Witnessed:
     blurs: float
     u_fit: float
     u_windows: float
+    u_misfit: float
+    u_guessed: float
 
     @property
     def cover(self) -> float:
@@ -70,8 +77,8 @@ class _Witnessed:
         """One standard uncertainty: the fit's, the field's, and the witnesses' difference."""
         apart = self.cover - self.two_level
         if self.threshold is None:
-            apart = BLURRED / self.blurs**2
-        return math.hypot(self.u_fit, self.u_windows, apart, FLOOR)
+            apart = BLURRED / self.blurs**3
+        return math.hypot(self.u_fit, self.u_windows, self.u_misfit, self.u_guessed, apart, FLOOR)
 
 
 def by_openings(
@@ -120,7 +127,8 @@ def by_openings(
     u_light = math.sqrt(max(0.0, float(fitted.covariance[0, 0])))
     reading = shown(windows, shares, maps, surface, source=source, u_light=u_light)
     blurs = _blurs(cells, fitted)
-    refused = _refusal(places, fitted, blurs)
+    guessed = _guessed(places, fitted, bare)
+    refused = _refusal(places, fitted, blurs, guessed)
     if refused is not None:
         return replace(reading, findings=(refused,))
     bias = edge_bias(places, fitted, bare, middle)
@@ -131,6 +139,8 @@ def by_openings(
         blurs=blurs,
         u_fit=fitted.u_open_share(lattice),
         u_windows=between_windows(shares, weights) / (1 - cells.yarn_level),
+        u_misfit=_common_misfit(places, fitted, bare),
+        u_guessed=GUESSED * guessed,
     )
     if witnessed.u > LEAST_SURE:
         return _not_resolved(reading, windows, witnessed, light_known)
@@ -156,6 +166,8 @@ def _answered(
     findings: list[Finding] = []
     if witnessed.threshold is not None and abs(witnessed.threshold - witnessed.two_level) > APART:
         findings.append(found(Flag.COVER_WITNESSES_DISAGREE))
+    if max(witnessed.u_misfit, witnessed.u_guessed) > ODD:
+        findings.append(found(Flag.COVER_PICTURE_ODD))
     if windows > 1:
         findings.append(found(Flag.COVER_FROM_WINDOWS))
     bound = None
@@ -175,19 +187,37 @@ def _answered(
     )
 
 
+def _common_misfit(places: Places, fitted: Fitted, bare: NDArray[np.float64]) -> float:
+    """What all pores are misfitted by alike, beyond what noise leaves, as a share of the light.
+
+    A field blurred in part, or a sharpened picture, cannot be explained by one blur: the cover was
+    found to be off by about this share.
+    """
+    off = (places.patch - fitted.light) * places.sound / bare[:, None, None]
+    alike = float(np.mean(off.mean(axis=0, dtype=np.float64) ** 2))
+    noise = float(np.mean(off**2, dtype=np.float64)) / len(off)
+    return math.sqrt(max(0.0, alike - noise))
+
+
+def _guessed(places: Places, fitted: Fitted, bare: NDArray[np.float64]) -> float:
+    """Light that the fit expects above what the file could hold, as a share of all light."""
+    above = np.maximum(fitted.light - places.patch, 0) * places.clipped / bare[:, None, None]
+    return float(np.mean(above, dtype=np.float64))
+
+
 def _blurs(cells: Cells, fitted: Fitted) -> float:
     smaller = min(float(np.median(cells.open_width)), float(np.median(cells.open_height)))
     return max(smaller, 0.1) / math.hypot(fitted.optics.blur_px, PIXEL_BLUR)
 
 
-def _refusal(places: Places, fitted: Fitted, blurs: float) -> Finding | None:
+def _refusal(places: Places, fitted: Fitted, blurs: float, guessed: float) -> Finding | None:
     """Say why the fit cannot be a backlit cloth, where it cannot."""
     spread = float(np.median(places.patch.var(axis=(1, 2))))
     explained = 1 - float(np.median(fitted.misfit**2)) / max(spread, 1e-12)
     if explained < EXPLAINED:
         small = blurs < FEWEST_BLURS
         return found(Flag.COVER_NOT_RESOLVED if small else Flag.COVER_NOT_BACKLIT)
-    if float(places.clipped.mean()) > MOST_CLIPPED:
+    if guessed > MOST_GUESSED:
         return found(Flag.COVER_CLIPPED)
     return None
 
@@ -197,6 +227,10 @@ def _not_resolved(
 ) -> CoverReading:
     """Refuse the cover, and bound the open area."""
     bound = most_open(windows, light_known=light_known)
+    worst = max(witnessed.u_misfit, witnessed.u_guessed)
+    if worst > witnessed.u / 2:
+        why = Flag.COVER_UNEVEN if worst == witnessed.u_misfit else Flag.COVER_CLIPPED
+        return replace(reading, upper_bound_open=bound, findings=(found(why),))
     message = (
         "optical cover was not measured: the pores are too small for this picture, its "
         f"uncertainty would be {100 * witnessed.u:.1f} points; at most {100 * bound.value:.0f} % "
