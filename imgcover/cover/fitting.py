@@ -249,7 +249,7 @@ def _moved(optics: Optics, change: Floats) -> Optics:
     blur, ends, picks, rounder, glare = (float(each) for each in change[TERMS:])
     roundness = min(max(optics.ends.roundness + rounder, FLATTEST), ROUNDEST)
     yarns = [
-        replace(yarn, depth=min(max(yarn.depth * math.exp(deeper), 0.2), 9.0), roundness=roundness)
+        replace(yarn, depth=min(max(yarn.depth * (1 + deeper), 0.2), 9.0), roundness=roundness)
         for yarn, deeper in ((optics.ends, ends), (optics.picks, picks))
     ]
     return Optics(

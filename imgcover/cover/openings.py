@@ -14,7 +14,7 @@ Floats = NDArray[np.float32]
 
 LOCAL = 12
 """Of each pore: left, right, upper, lower edge (px from the patch's middle), then the lean of each
-(px a px along it), then how much denser than usual the thread beyond each is (logarithm)."""
+(px a px along it), then how much denser than usual the thread beyond each is (relative)."""
 FAR = 4
 """Edges of the four pores next to it that bound the threads between: blur carries their light."""
 TERMS = 6
@@ -208,18 +208,17 @@ def _profile(
         return offset.astype(np.float32), half[..., None].astype(np.float32)
 
     offset, half = threads(edges)
-    far = np.zeros_like(denser[:, :1])
-    dense = np.concatenate([far, denser, far], axis=1)[..., None]
-    near = shadow.change(offset[:, 1:3], half[:, 1:3], dense[:, 1:3])
-    beyond = shadow.dark(offset[:, ::3], half[:, ::3], dense[:, ::3])
-    here = near[..., 0].sum(axis=1) + beyond.sum(axis=1)
+    near = shadow.change(offset[:, 1:3], half[:, 1:3])
+    here = near[..., 0].sum(axis=1) + shadow.dark(offset[:, ::3], half[:, ::3]).sum(axis=1)
     lean = np.float32(reach) * leans
-    less, more = (shadow.dark(*threads(edges + side * lean), dense).sum(axis=1) for side in (-1, 1))
+    less, more = (shadow.dark(*threads(edges + side * lean)).sum(axis=1) for side in (-1, 1))
     # A thread's edge that moves by one moves its middle, and half its width, by a half.
     first, second = -(near[..., 4] + near[..., 5]) / 2, (near[..., 5] - near[..., 4]) / 2
     by_blur, by_roundness = near[..., 1].sum(axis=1), near[..., 3].sum(axis=1)
-    rows = [1 - here, -second[:, 0], -first[:, 1], -first[:, 0], -second[:, 1]]
-    rows += [-by_blur, -near[:, 0, :, 2], -near[:, 1, :, 2], -by_roundness]
+    dense = near[..., 2] * np.float32(yarn.depth)
+    light = 1 - here - np.einsum("nk,nkx->nx", denser, dense)
+    rows = [light, -second[:, 0], -first[:, 1], -first[:, 0], -second[:, 1]]
+    rows += [-by_blur, -dense[:, 0], -dense[:, 1], -by_roundness]
     return _Profile(
         rows=np.stack(rows, axis=1).astype(np.float32),
         lean=(less - more) / np.float32(2 * reach),

@@ -13,8 +13,6 @@ ROWS = 12
 """Yarn widths tabulated; at a given distance from the edge the shadow hardly depends on it."""
 FINER = 2
 """Parts of a step when the sharp shadow is laid down: its rim is steep."""
-SPREAD = 0.5
-"""Logarithm from one tabulated depth to the next: yarns are denser from place to place by less."""
 NUDGE = 1e-3
 """Step of the numerical derivative by the roundness: far above rounding, far below its own size."""
 BLURS = 4.5
@@ -47,67 +45,46 @@ class Shadow:
 
     Parameters
     ----------
-    dark_table : ndarray, shape (widths × places, 3), float32
-        The shadow at three depths, by the distance from the yarn's edge: from one width to the
-        next the profile then moves along with the edge.
-    table : ndarray, shape (widths × places, 9), float32
-        The same, then its derivatives by blur and by roundness, each at three depths.
+    table : ndarray, shape (widths × places, 4), float32
+        The shadow and its derivatives by blur, depth and roundness, by the distance from the
+        yarn's edge: from one width to the next the profile then moves along with the edge.
     places : int
-        Columns of the tables.
+        Columns of the table.
     half_step : float
         Step of the half width from row to row, px.
     """
 
-    dark_table: NDArray[np.float32]
     table: NDArray[np.float32]
     places: int
     half_step: float
 
-    def dark(
-        self,
-        offset: NDArray[np.float32],
-        half: NDArray[np.float32],
-        denser: NDArray[np.float32],
-    ) -> NDArray[np.float32]:
+    def dark(self, offset: NDArray[np.float32], half: NDArray[np.float32]) -> NDArray[np.float32]:
         """Shadow at a distance from the yarn's middle.
 
         Parameters
         ----------
-        offset, half, denser : ndarray, shapes that broadcast
-            Distance and half width, px; logarithm of the depth over the usual one.
+        offset, half : ndarray, shapes that broadcast
+            Distance and half width, px.
         """
         at, a, b = self._find(offset, half)
-        a, b = a[..., None], b[..., None]
-        table = self.dark_table
-        low = table[at] + (table[at + 1] - table[at]) * a
+        only = np.ascontiguousarray(self.table[:, 0])
+        low = only[at] + (only[at + 1] - only[at]) * a
         at = at + self.places
-        high = table[at] + (table[at + 1] - table[at]) * a
-        three = low + (high - low) * b
-        return np.asarray(np.sum(three * _weights(denser)[0], axis=-1), np.float32)
+        high = only[at] + (only[at + 1] - only[at]) * a
+        return np.asarray(low + (high - low) * b, np.float32)
 
-    def change(
-        self,
-        offset: NDArray[np.float32],
-        half: NDArray[np.float32],
-        denser: NDArray[np.float32],
-    ) -> NDArray[np.float32]:
-        """Shadow, and its derivatives by blur, density, roundness, offset and half: (..., 6)."""
+    def change(self, offset: NDArray[np.float32], half: NDArray[np.float32]) -> NDArray[np.float32]:
+        """Shadow and its derivatives by blur, depth, roundness, offset, half width: (..., 6)."""
         at, a, b = self._find(offset, half)
         a, b = a[..., None], b[..., None]
         here, next_ = self.table[at], self.table[at + 1]
         wider, both = self.table[at + self.places], self.table[at + self.places + 1]
         low, high = here + (next_ - here) * a, wider + (both - wider) * a
-        value, by_density = _weights(denser)
-        nine = low + (high - low) * b
-        dark, by_blur, by_roundness = (
-            np.sum(nine[..., k : k + 3] * value, axis=-1) for k in (0, 3, 6)
-        )
-        slope = (next_ - here)[..., :3] * (1 - b) + (both - wider)[..., :3] * b
-        slope = np.sum(slope * value, axis=-1) / np.float32(STEP_PX)
-        rise = np.sum((high - low)[..., :3] * value, axis=-1) / np.float32(self.half_step)
-        by_denser = np.sum(nine[..., :3] * by_density, axis=-1)
-        parts = (dark, by_blur, by_denser, by_roundness, slope * np.sign(offset), rise - slope)
-        return np.stack(parts, axis=-1)
+        slope = (next_ - here)[..., :1] * (1 - b) + (both - wider)[..., :1] * b
+        slope = slope / np.float32(STEP_PX)
+        by_half = (high - low)[..., :1] / np.float32(self.half_step) - slope
+        by_offset = slope * np.sign(offset)[..., None]
+        return np.concatenate([low + (high - low) * b, by_offset, by_half], axis=-1)
 
     def _find(
         self, offset: NDArray[np.float32], half: NDArray[np.float32]
@@ -120,14 +97,6 @@ class Shadow:
         along = np.minimum(along, np.float32(self.places - 1.01))
         place, row = along.astype(np.int32), over.astype(np.int32)
         return row * self.places + place, along - place, over - row
-
-
-def _weights(denser: NDArray[np.float32]) -> tuple[NDArray[np.float32], NDArray[np.float32]]:
-    """Weights of the three depths in a parabola through them, and the weights of its slope."""
-    x = np.clip(denser, -1, 1) / np.float32(SPREAD)
-    value = np.stack([x * (x - 1) / 2, 1 - x * x, x * (x + 1) / 2], axis=-1)
-    slope = np.stack([x - 0.5, -2 * x, x + 0.5], axis=-1) / np.float32(SPREAD)
-    return value.astype(np.float32), slope.astype(np.float32)
 
 
 def cast(yarn: Yarn, *, blur_px: float, widest_px: float) -> Shadow:
@@ -147,32 +116,32 @@ def cast(yarn: Yarn, *, blur_px: float, widest_px: float) -> Shadow:
     part = STEP_PX / FINER
     frequency = np.fft.rfftfreq(2 * FINER * (places - 1), part)
     passes = np.sinc(frequency) * np.exp(-2 * (np.pi * frequency * blur_px) ** 2)
-    by_blur = -4 * np.pi**2 * blur_px * frequency**2
     # Row by row, the place whose distance from that row's edge is the column's.
     column = FINER * np.abs(np.arange(places) - (ROWS - 1 - np.arange(ROWS))[:, None] * steps)
 
     def spectrum(sharp: NDArray[np.float64]) -> NDArray[np.complex128]:
         # Even about the yarn's middle: the mirrored half stands at the end of the period.
-        whole = np.concatenate([sharp, sharp[:, -2:0:-1]], axis=1)
-        return np.fft.rfft(whole, axis=1) * passes
+        return np.fft.rfft(np.concatenate([sharp, sharp[:, -2:0:-1]], axis=1), axis=1)
 
     def tabulated(transform: NDArray[np.complex128]) -> NDArray[np.float64]:
         return np.take_along_axis(np.fft.irfft(transform, axis=1), column, axis=1)
 
     inside, thick = _body(half, places, yarn.roundness)
     _, rounder = _body(half, places, yarn.roundness + NUDGE)
-    wider = (half / yarn.half_px)[:, None]
-    layers: list[list[NDArray[np.float64]]] = [[], [], []]
-    for denser in (-SPREAD, 0.0, SPREAD):
-        depth = yarn.depth * np.exp(denser) * wider
-        passed = inside * np.exp(-depth * thick)
-        here = spectrum(inside - passed)
-        layers[0].append(tabulated(here))
-        layers[1].append(tabulated(here * by_blur))
-        layers[2].append(tabulated(spectrum(passed * depth * (rounder - thick) / NUDGE)))
-    table = np.stack([each for three in layers for each in three], axis=-1)
-    table = table.reshape(-1, 9).astype(np.float32)
-    return Shadow(np.ascontiguousarray(table[:, :3]), table, places, float(half[1]))
+    dense = (half / yarn.half_px)[:, None] * thick
+    passed = inside * np.exp(-yarn.depth * dense)
+    here = spectrum(inside - passed) * passes
+    by_roundness = (
+        passed * (yarn.depth / NUDGE) * (half / yarn.half_px)[:, None] * (rounder - thick)
+    )
+    layers = (
+        here,
+        here * (-4 * np.pi**2 * blur_px * frequency**2),
+        spectrum(passed * dense) * passes,
+        spectrum(by_roundness) * passes,
+    )
+    table = np.stack([tabulated(layer) for layer in layers], axis=-1)
+    return Shadow(table.reshape(-1, 4).astype(np.float32), places, float(half[1]))
 
 
 def _body(

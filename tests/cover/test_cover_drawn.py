@@ -75,7 +75,7 @@ def test_transpose_and_half_turn_do_not_matter():
 
 
 def test_light_must_be_stated_and_come_from_behind():
-    """Truth is the contract: without --light, and in reflected light, cover is null and says why."""
+    """Truth is the contract: light unsaid or from the front, cover is null and says why."""
     light, _, lattice = drawn("plain")
     unsaid = read_cover(light, light=None, lattice=lattice)
     front = read_cover(light, light="reflected", lattice=lattice)
