@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from imgcover.repeat.comb import fit_comb, fit_line
@@ -84,6 +84,7 @@ def test_marks_without_order_give_nothing() -> None:
     assert fit_comb(np.arange(40), generator.uniform(0, 400, 40)) is None
 
 
+@settings(deadline=None)  # how long an example takes says how busy the machine is
 @given(scale=st.floats(0.01, 100), shift=st.floats(-1e3, 1e3))
 def test_unit_and_origin_do_not_matter(scale: float, shift: float) -> None:
     """Truth is symmetry: pitch and u scale with the unit, and the origin does not touch them."""
