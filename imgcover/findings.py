@@ -226,9 +226,8 @@ class Flag(Enum):
         once
         → take a picture of each place"""
 
-    def __init__(self, *told: str) -> None:
-        text = told[0] if len(told) == 1 else "{}: {} → {}".format(*told)
-        weight, _, said = " ".join(text.split()).partition(": ")
+    def __init__(self, told: str) -> None:
+        weight, _, said = " ".join(told.split()).partition(": ")
         self.severity = Severity(weight)
         """How much a finding with this code weighs."""
         self.message, _, self.remedy = said.partition(" → ")

@@ -16,9 +16,7 @@ class Transformed:
     Parameters
     ----------
     values : ndarray, shape (padded rows, padded columns), complex64
-        Transform of the field times its mask, zero frequency first.
-    weights : ndarray, shape (padded rows, padded columns // 2 + 1), complex64
-        Transform of the mask.
+        Transform of the field, zero frequency first.
     shape : tuple of int
         (rows, columns) of the field before padding.
     """

@@ -50,8 +50,6 @@ class Identified:
         Wave vectors in cycles per field pixel.
     evidence : Evidence
         The spectral witnesses.
-    rivals : list of tuple
-        Other candidates with their evidence, best first.
     origin : Field
         The field that was read.
     field : Transformed
@@ -68,7 +66,6 @@ class Identified:
 
     candidate: Candidate
     evidence: Evidence
-    rivals: list[tuple[Candidate, Evidence]]
     origin: Field
     field: Transformed
     followed: Followed
@@ -119,7 +116,7 @@ def identify(field: Field) -> Identified | None:
         _doubted(picks, ends, *reversed(best.pixels)),
     )
     followed = _steadiest(flat, best, seen, followed, sigma)
-    return Identified(best, evidence, heard[1:], field, flat, followed, sigma, ends, picks, seen)
+    return Identified(best, evidence, field, flat, followed, sigma, ends, picks, seen)
 
 
 def _doubted(one: Multiple, other: Multiple, pixels: float, pixels_other: float) -> Multiple:

@@ -18,6 +18,10 @@ LARGEST_INDEX = 6
 """Highest multiple of a basis vector a peak is looked for at; beyond it lines drown in noise."""
 
 
+NARROWEST = 0.05
+"""Sine of the angle between two peaks (3 degrees) below which they are multiples of one wave."""
+
+
 @dataclass(frozen=True, slots=True)
 class Lattice:
     """A reciprocal lattice and how much of the spectrum it accounts for.
@@ -100,10 +104,8 @@ def fit_lattices(peaks: list[Peak], *, tolerance: float, most: int) -> list[Latt
 
 def _reduced(first: NDArray[np.float64], second: NDArray[np.float64]) -> NDArray[np.float64] | None:
     """Lagrange's reduction: the two shortest vectors, as columns; None where they are parallel."""
-    if (
-        abs(first[0] * second[1] - first[1] * second[0])
-        < 0.1 * np.dot(first, first) ** 0.5 * (np.dot(second, second) ** 0.5) * 0.5
-    ):
+    area = abs(first[0] * second[1] - first[1] * second[0])
+    if area < NARROWEST * math.hypot(*first) * math.hypot(*second):
         return None
     while True:
         if np.dot(first, first) > np.dot(second, second):
