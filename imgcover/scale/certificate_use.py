@@ -60,7 +60,7 @@ def scale_from_certificate(
         x, y = y, x
     nominal = certificate.resolution_dpi[::-1] if swapped else certificate.resolution_dpi
     if not certificate.made <= on <= certificate.valid_until:
-        findings.append(_expired(certificate, on))
+        findings.append(_expired(certificate))
     if dpi is None:
         findings.append(found(Flag.CERTIFICATE_RESOLUTION_UNCHECKED))
     else:
@@ -83,10 +83,11 @@ def _carried(pitch: Measured, ratio: float) -> Measured:
     return Measured(pitch.value * ratio, pitch.value * ratio * u, "px/mm")
 
 
-def _expired(certificate: Certificate, on: date) -> Finding:
+def _expired(certificate: Certificate) -> Finding:
+    # the day of measuring is left out: a record must not change from one day to the next
     message = (
-        f"the certificate of {certificate.name} is valid from {certificate.made} to "
-        f"{certificate.valid_until}, not on {on}"
+        f"the certificate of {certificate.name} was used out of its time: it is valid from "
+        f"{certificate.made} to {certificate.valid_until}"
     )
     return found(Flag.CERTIFICATE_EXPIRED, message)
 

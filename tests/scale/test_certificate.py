@@ -135,6 +135,18 @@ def test_out_of_its_dates_it_is_said(day: date) -> None:
         assert not scale_from_certificate(held, dpi=DPI, swapped=False, on=inside).findings
 
 
+def test_an_expired_certificates_word_does_not_age() -> None:
+    """Truth is theory: equal input gives equal records, so no finding may hold today's date."""
+    days = (date(2025, 6, 1), date(2028, 2, 3), date(2028, 2, 4))
+    told = {
+        each.message
+        for day in days
+        for each in scale_from_certificate(certificate(), dpi=DPI, swapped=False, on=day).findings
+    }
+    assert len(told) == 1
+    assert str(ENDS) in told.pop()
+
+
 def test_another_resolution_is_carried_over_and_said() -> None:
     """Truth is theory: half the dots, half the pitch, with the u of another carriage step."""
     scale = scale_from_certificate(certificate(), dpi=(300.0, 300.0), swapped=False, on=TODAY)
