@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import astuple, dataclass, replace
 from datetime import UTC, datetime
 from functools import lru_cache
 from pathlib import Path
@@ -65,7 +65,12 @@ def find_scale(picture: Picture, options: Options) -> FoundScale:
     """
     rule, sheet = RuleScale(None, (), ()), SheetScale(None, (), ())
     if options.rule is not None:
-        rule = measure_rules(picture, unit=options.rule, rule_class=RuleClass(options.rule_class))
+        rule = measure_rules(
+            picture,
+            unit=options.rule,
+            rule_class=RuleClass(options.rule_class),
+            within=astuple(_asked(picture, options)),
+        )
     if options.sheet:
         sheet = measure_sheet(picture, options.bars)
     chosen = choose_scale(
@@ -131,7 +136,7 @@ def count_threads(
     declared_weave : str or None
         Handed on as what may break a tie; densities and counts never are.
     """
-    region = options.region or Region(0, 0, picture.columns, picture.rows)
+    region = _asked(picture, options)
     if not _lies_in(region, picture):
         message = (
             f"the region {region.x},{region.y},{region.width},{region.height} does not lie inside "
@@ -141,7 +146,7 @@ def count_threads(
     clear = clear_part(
         found_scale.areas,
         (picture.rows, picture.columns),
-        within=(region.x, region.y, region.width, region.height),
+        within=astuple(region),
     )
     return read_threads(
         picture,
@@ -216,6 +221,10 @@ def _exposure(path: Path, tone: Tone | None, changed_ns: int, size: int) -> Pict
         return read_picture(path, name=path.name, tone=tone)
     except PictureError as fault:
         raise OptionError(path.name, fault.fault, fault.remedy) from fault
+
+
+def _asked(picture: Picture, options: Options) -> Region:
+    return options.region or Region(0, 0, picture.columns, picture.rows)
 
 
 def _lies_in(region: Region, picture: Picture) -> bool:

@@ -67,4 +67,4 @@ def _largest(free: NDArray[np.bool_]) -> Rectangle:
     return best
 
 
-__all__ = ["clear_part"]
+__all__ = ["Rectangle", "clear_part"]

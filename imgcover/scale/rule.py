@@ -20,12 +20,13 @@ from imgcover.quantity import Measured
 from imgcover.scale.rule_area import rule_corners
 from imgcover.scale.rule_band import follow_row
 from imgcover.scale.rule_class import RuleClass, rule_u
-from imgcover.scale.rule_fit import FittedRow, fit_row
+from imgcover.scale.rule_fit import fit_row
 from imgcover.scale.rule_hierarchy import Graduation
 from imgcover.scale.rule_levels import Level, Pictured, levels_of
 from imgcover.scale.rule_lines import Row
 from imgcover.scale.rule_proof import Proof, prove
 from imgcover.scale.rule_seeds import Seed, even_out, find_seeds
+from imgcover.scale.rule_view import View, view_of
 
 MOST_SEEDS = 24
 """Spots followed on each level: on drawn pictures a rule's row is among the first eight."""
@@ -34,14 +35,9 @@ LARGEST_SCATTER = 0.06
 LARGEST_CHANGE = 0.08
 """Relative change of scale over the frame up to which a tilt is corrected; beyond, refused. Up to
 here the correction was seen right to a hundredth of the change (tests/scale/sweep_rule.py)."""
-LIKELY_ACROSS = 3.0
-"""Times the tilt along the row: what one across it may be. The camera leans any way round, so the
-two are of one size, but not equal."""
 LARGEST_U = 0.001
 """Relative standard uncertainty of fit and tilt beyond which a reading is not given: three times
 it is the 0.3 % that a scale by rule is held to."""
-U_CORRECTION = 0.02
-"""Of the change over the frame: standard uncertainty of its correction."""
 
 Unit = Literal["auto", "mm", "inch"]
 
@@ -68,6 +64,8 @@ class RuleReading:
         Relative change of scale over the frame that was corrected.
     corners : ndarray, shape (4, 2)
         The rule's body in picture pixels, x and y; it may reach outside the frame.
+    view : View
+        How its pitch goes on over the picture, `factor` picture pixels to one of the view's.
     """
 
     px_per_mm: Measured
@@ -80,6 +78,15 @@ class RuleReading:
     length_mm: float
     tilt: float
     corners: NDArray[np.float64]
+    view: View
+    factor: int
+
+    def at(self, place: NDArray[np.float64]) -> RuleReading:
+        """Return the scale at another place of the picture, x and y in its pixels."""
+        pitch, u_fit = self.view.pitch_at((place - (self.factor - 1) / 2) / self.factor)
+        value = pitch * self.factor / self.graduations[0].step_mm
+        u = value * math.hypot(u_fit, self.u_class)
+        return replace(self, px_per_mm=Measured(value, u, "px/mm"), u_fit=u_fit)
 
     def read_as(self, graduation: Graduation) -> RuleReading:
         """Return the same lines read as another graduation."""
@@ -191,10 +198,11 @@ def _read(
     comb, graduation = fitted.comb, proof.graduations[0]
     if comb.scatter > LARGEST_SCATTER * comb.pitch:
         return "its lines stray from equal distances: it is bent, or not flat on the cloth"
-    scale = _scale_at_middle(picture, finest, fitted)
-    if scale is None:
+    view = view_of(fitted, finest.tone.shape)
+    if view.change > LARGEST_CHANGE:
         return "it lies too much aslant to the camera"
-    pitch, u_relative, tilt = scale
+    middle = np.array([picture.columns - 1, picture.rows - 1]) / 2
+    pitch, u_relative = view.pitch_at(finest.from_picture(middle))
     if u_relative > LARGEST_U:
         return "its lines leave the scale too uncertain: they are few, or lie aslant to the camera"
     px_per_mm = pitch * finest.factor / graduation.step_mm
@@ -219,47 +227,11 @@ def _read(
         lines=int(comb.kept.sum()),
         dropped=len(row.numbers) - int(comb.kept.sum()),
         length_mm=length,
-        tilt=tilt,
+        tilt=view.change,
         corners=finest.to_picture(corners),
+        view=view,
+        factor=finest.factor,
     )
-
-
-def _scale_at_middle(
-    picture: Pictured, finest: Level, fitted: FittedRow
-) -> tuple[float, float, float] | None:
-    """Carry the pitch from the row to the picture's middle; None where that is too far aslant.
-
-    Along the row the comb's own tilt is used. Up the lines the change of pitch between foot and
-    tip is weighed against what the tilt along the row makes likely: a picture taken upright has
-    neither, and none is then invented from noise.
-    """
-    comb, frame = fitted.comb, fitted.frame
-    middle = finest.from_picture(np.array([picture.columns / 2, picture.rows / 2]))
-    offset = middle - np.array([frame.x, frame.y])
-    s = offset[0] * math.cos(frame.along) + offset[1] * math.sin(frame.along)
-    t = offset[0] * math.cos(frame.upright) + offset[1] * math.sin(frame.upright)
-    number = comb.middle + (s - comb.origin) / comb.pitch
-    extent = math.hypot(picture.columns, picture.rows) / finest.factor
-    along = 2 * comb.tilt / comb.pitch
-    known = abs(fitted.across) > 4 * fitted.u_across
-    likely = max(LIKELY_ACROSS * abs(along), abs(fitted.across) if known else 0.0)
-    weight = likely**2 / (likely**2 + fitted.u_across**2) if likely else 0.0
-    across = weight * fitted.across if weight else 0.0
-    u_across = math.sqrt(weight) * fitted.u_across if weight else 0.0
-    change = math.hypot(along, across) * extent
-    if change > LARGEST_CHANGE:
-        return None
-    # at right angles to the lines: where the frame cuts their feet off, the row seems to run aslant
-    square = abs(math.sin(frame.upright - frame.along))
-    pitch = comb.pitch_at(number) * (1 + across * t) * square
-    u_along = 2 * comb.u_tilt * abs(number - comb.middle) if comb.tilt else 0.0
-    relative = math.sqrt(
-        (comb.u_pitch / comb.pitch) ** 2
-        + u_along**2
-        + (u_across * t) ** 2
-        + (U_CORRECTION * change) ** 2
-    )
-    return pitch, relative, change
 
 
 def _agree(readings: list[RuleReading], refused: list[str]) -> RuleSearch:

@@ -14,6 +14,7 @@ from numpy.typing import NDArray
 
 from imgcover.findings import Finding, Flag, found
 from imgcover.quantity import Measured
+from imgcover.scale.clear import Rectangle, clear_part
 from imgcover.scale.rule import RuleReading, Unit, find_rules
 from imgcover.scale.rule_class import RuleClass
 from imgcover.scale.rule_levels import Pictured
@@ -40,7 +41,11 @@ class RuleScale:
 
 
 def measure_rules(
-    picture: Pictured, *, unit: Unit = "auto", rule_class: RuleClass = RuleClass.II
+    picture: Pictured,
+    *,
+    unit: Unit = "auto",
+    rule_class: RuleClass = RuleClass.II,
+    within: Rectangle | None = None,
 ) -> RuleScale:
     """Find the rules in a picture and make a scale of them.
 
@@ -52,16 +57,28 @@ def measure_rules(
         What the user says of the rule (`--rule`).
     rule_class : RuleClass
         What the user says of its accuracy (`--rule-class`).
+    within : tuple of int, optional
+        (x, y, width, height), px: the part that may be cloth; the whole picture by default.
 
     Returns
     -------
     RuleScale
-        `scale` is None where no rule was found or none can be trusted; a finding says why.
+        `scale` is None where no rule was found or none can be trusted; a finding says why. It is
+        the scale at the middle of what the rules leave of the cloth: a picture taken aslant has
+        another one elsewhere.
     """
     search = find_rules(picture, unit=unit, rule_class=rule_class)
     if not search.readings:
         return RuleScale(None, search.areas, search.findings)
-    scale = scale_of(search.readings)
+    whole = (0, 0, picture.columns, picture.rows)
+    left, top, width, height = clear_part(
+        search.areas, (picture.rows, picture.columns), within=within or whole
+    )
+    middle = np.array([left + (width - 1) / 2, top + (height - 1) / 2])
+    readings = search.readings
+    if width and height:
+        readings = tuple(each.at(middle) for each in readings)
+    scale = scale_of(readings)
     return RuleScale(scale, search.areas, search.findings + scale.findings)
 
 
