@@ -7,10 +7,10 @@ from dataclasses import dataclass
 import cv2
 import numpy as np
 from numpy.typing import NDArray
-from scipy.ndimage import map_coordinates
 
 from imgcover.cover.reading import Lattice
 from imgcover.cover.windows import Window, cell_sides
+from imgcover.repeat.between import between
 
 ALONE = 0.3
 """Share of the pitch that is still seen on a side where the next pore is not known."""
@@ -234,7 +234,7 @@ def _look(
     """Turns at a place; beyond the window they run on with the lattice."""
     column = np.clip(x / step, 0, turns.shape[1] - 1)
     row = np.clip(y / step, 0, turns.shape[0] - 1)
-    inside = map_coordinates(turns, [row, column], order=1, mode="nearest")
+    inside = between(turns, row, column)
     beyond = frequency[0] * (x - column * step) + frequency[1] * (y - row * step)
     return np.asarray(inside + beyond, np.float64)
 

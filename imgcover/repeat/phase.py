@@ -4,8 +4,8 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+import cv2
 import numpy as np
-import scipy.fft
 from numpy.typing import NDArray
 
 
@@ -60,11 +60,12 @@ def transform(field: NDArray[np.float32], *, margin: int) -> Transformed:
         Pixels of zeros added: more than the reach of the smoothing to come.
     """
     rows, columns = field.shape
-    padded = (
-        scipy.fft.next_fast_len(rows + margin, real=True),
-        scipy.fft.next_fast_len(columns + margin, real=True),
+    padded = np.zeros(
+        (cv2.getOptimalDFTSize(rows + margin), cv2.getOptimalDFTSize(columns + margin)), np.float32
     )
-    return Transformed(scipy.fft.fft2(field, s=padded), (rows, columns))
+    padded[:rows, :columns] = field
+    parts = cv2.dft(padded, flags=cv2.DFT_COMPLEX_OUTPUT)
+    return Transformed(np.asarray(parts).view(np.complex64)[..., 0], (rows, columns))
 
 
 def demodulate(
@@ -106,7 +107,7 @@ def demodulate(
     weight_rows = np.exp(-2 * (np.pi * sigma * (at_rows / rows - frequency[1])) ** 2)
     weight_columns = np.exp(-2 * (np.pi * sigma * (at_columns / columns - frequency[0])) ** 2)
     piece = piece * np.outer(weight_rows, weight_columns).astype(np.float32)
-    small = scipy.fft.ifft2(scipy.fft.ifftshift(piece))
+    small = np.fft.ifft2(np.fft.ifftshift(piece))
     scale = small.size / (rows * columns)
     step = (rows / small.shape[0], columns / small.shape[1])
     grid = Grid(

@@ -6,9 +6,7 @@ from dataclasses import dataclass
 
 import cv2
 import numpy as np
-import scipy.fft
 from numpy.typing import NDArray
-from scipy import ndimage
 
 HIGHEST_FREQUENCY = 0.46
 """Cycles per pixel. Nearer to one half, a wave and its own mirror image melt into one peak."""
@@ -96,32 +94,23 @@ def spectrum(tiles: list[NDArray[np.float32]]) -> Spectrum:
     rows, columns = tiles[0].shape
     size = 1 << (max(rows, columns) - 1).bit_length()
     taper = np.outer(_hann(rows), _hann(columns))
-    power = np.zeros((size, size // 2 + 1), np.float32)
+    power = np.zeros((size, size), np.float32)
+    padded = np.zeros((size, size), np.float32)
     for tile in tiles:
         root = np.sqrt(np.maximum(tile, 0.0))
         flat = (root - float((root * taper).sum() / taper.sum())) * taper
         energy = float((flat * flat).sum())
         if energy > 0:
-            half = scipy.fft.rfft2(flat, s=(size, size))
-            power += (np.abs(half) ** 2).astype(np.float32) / np.float32(energy)
-    mean = np.asarray(power / len(tiles), np.float32)
-    log_power = np.log(_whole(mean) + 1e-12).astype(np.float32)
+            padded[:rows, :columns] = flat
+            parts = cv2.dft(padded, flags=cv2.DFT_COMPLEX_OUTPUT)
+            power += (parts[..., 0] ** 2 + parts[..., 1] ** 2) / np.float32(energy)
+    mean = np.asarray(np.fft.fftshift(power) / len(tiles), np.float32)
+    log_power = np.log(mean + 1e-12).astype(np.float32)
     return Spectrum(log_power, _floor(log_power), size, (rows, columns), len(tiles))
 
 
 def _hann(length: int) -> NDArray[np.float32]:
     return np.hanning(length + 2)[1:-1].astype(np.float32)
-
-
-def _whole(half: NDArray[np.float32]) -> NDArray[np.float32]:
-    """Both half planes of a real field's power, zero frequency in the middle."""
-    size = half.shape[0]
-    full = np.empty((size, size), np.float32)
-    full[:, : size // 2 + 1] = half
-    mirrored = half[:, 1 : size // 2][:, ::-1]
-    full[0, size // 2 + 1 :] = mirrored[0]
-    full[1:, size // 2 + 1 :] = mirrored[1:][::-1]
-    return np.fft.fftshift(full)
 
 
 def _floor(log_power: NDArray[np.float32]) -> NDArray[np.float32]:
@@ -162,7 +151,7 @@ def peaks(of: Spectrum, *, excess: float, most: int) -> list[Peak]:
     log_power = of.log_power
     middle = of.size // 2
     reach = 2 * of.size // max(of.window) + 1
-    top = ndimage.maximum_filter(log_power, size=2 * reach + 1)
+    top = cv2.dilate(log_power, np.ones((2 * reach + 1, 2 * reach + 1), np.uint8))
     rows, columns = np.nonzero((log_power >= top) & (log_power - of.log_floor > excess))
     found = []
     for row, column in zip(rows.tolist(), columns.tolist(), strict=True):

@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
+import math
 import warnings
 from dataclasses import dataclass
 
+import cv2
 import numpy as np
 from numpy.typing import NDArray
-from scipy import ndimage, special
 from skimage.restoration import unwrap_phase
 
 from imgcover.repeat.phase import Grid, Transformed, demodulate
@@ -132,17 +133,22 @@ def _centroids(
         (grid.rows()[: size[0]], shape[0]),
     ):
         low, high = (-0.5 - places) / sigma, (length - 0.5 - places) / sigma
-        share = special.ndtr(high) - special.ndtr(low)
+        share = _below(high) - _below(low)
         moved = (np.exp(-(low**2) / 2) - np.exp(-(high**2) / 2)) / np.sqrt(2 * np.pi) / share
         out.append((places + sigma * moved, share))
     (x, share_x), (y, share_y) = out
     return x, y, np.outer(share_y, share_x)
 
 
+def _below(at: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Share of a standard Gaussian that lies below each place."""
+    return np.array([math.erfc(-each / math.sqrt(2)) / 2 for each in at.tolist()])
+
+
 def _largest(mask: NDArray[np.bool_]) -> NDArray[np.bool_]:
     """The largest connected part: between parts nothing says how many threads were passed."""
-    labels, count = ndimage.label(mask)
-    if count < 2:
+    count, labels = cv2.connectedComponents(mask.astype(np.uint8), connectivity=4)
+    if count < 3:  # the first is what lies outside the mask
         return mask
     return np.asarray(labels == np.bincount(labels[mask]).argmax())
 

@@ -13,8 +13,8 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy import ndimage
 
+from imgcover.repeat.between import between
 from imgcover.repeat.spectrum import Peak, Spectrum
 from imgcover.threads.candidates import Candidate
 from imgcover.threads.lattice import index as index_on
@@ -196,7 +196,7 @@ def streak(of: Spectrum, vector: tuple[float, float]) -> float:
     middle = of.size // 2
     columns = middle - offsets[:, None] * unit[1] + along * unit[0]
     rows = middle + offsets[:, None] * unit[0] + along * unit[1]
-    power = ndimage.map_coordinates(of.log_power, [rows, columns], order=1)
+    power = between(of.log_power, rows, columns)
     beside = np.delete(power, [5, 6, 7], axis=0).mean(axis=0)
     return float(max(np.median(power[k] - beside) for k in (5, 6, 7)))
 
