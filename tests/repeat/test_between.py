@@ -1,4 +1,4 @@
-"""Truth is arithmetic: a plane is read exactly anywhere, and a grid's own places give its values."""
+"""Truth is arithmetic: a plane is read exactly, and a grid's own places give its values."""
 
 import numpy as np
 from scipy.ndimage import map_coordinates
