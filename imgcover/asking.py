@@ -6,6 +6,7 @@ from dataclasses import astuple, dataclass, replace
 from datetime import UTC, datetime
 from functools import lru_cache
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 import numpy as np
 from numpy.typing import NDArray
@@ -17,21 +18,25 @@ from imgcover.findings import Finding, Flag, found, has
 from imgcover.picture.picture import Picture
 from imgcover.picture.reader import read_picture
 from imgcover.request import Options
-from imgcover.scale.certificate import Certificate, find_certificate, read_certificate
-from imgcover.scale.certificate_use import scale_from_certificate
 from imgcover.scale.choice import choose_scale
 from imgcover.scale.clear import clear_part
 from imgcover.scale.pitch import scale_from
 from imgcover.scale.rule_class import RuleClass
-from imgcover.scale.rule_scale import RuleScale, measure_rules
 from imgcover.scale.scale import Scale
-from imgcover.scale.sheet_scale import SheetScale, measure_sheet
 from imgcover.threads.density import Density, density_of
 from imgcover.threads.field import Region
 from imgcover.threads.reader import read_threads
 from imgcover.threads.reading import ThreadReading
 from imgcover.tone import Tone
 from imgcover.weave import weave
+
+if TYPE_CHECKING:
+    from imgcover.scale.certificate import Certificate
+    from imgcover.scale.rule_scale import RuleScale
+    from imgcover.scale.sheet_scale import SheetScale
+
+# what finds rules, sheets and certificates is loaded when it is asked for: few pictures have any,
+# and loading it takes as long as counting a small picture
 
 SWAPPED_FROM = 5
 """From this orientation on, stored columns became shown rows (TIFF 6.0, tag 274)."""
@@ -63,23 +68,36 @@ def find_scale(picture: Picture, options: Options) -> FoundScale:
     CertificateError
         When the device's certificate cannot be read.
     """
-    rule, sheet = RuleScale(None, (), ()), SheetScale(None, (), ())
-    if options.rule is not None:
-        rule = measure_rules(
-            picture,
-            unit=options.rule,
-            rule_class=RuleClass(options.rule_class),
-            within=astuple(_asked(picture, options)),
-        )
-    if options.sheet:
-        sheet = measure_sheet(picture, options.bars)
+    seen = [each for each in (_rule(picture, options), _sheet(picture, options)) if each]
     chosen = choose_scale(
-        [_certified(picture, options), rule.scale, sheet.scale, _stated(picture, options)],
+        [_certified(picture, options), *(each.scale for each in seen), _stated(picture, options)],
         dpi=picture.dpi,
         use_metadata=options.metadata,
     )
-    findings = tuple(dict.fromkeys((*rule.findings, *sheet.findings, *chosen.findings)))
-    return FoundScale(chosen.scale, findings, (*rule.areas, *sheet.areas))
+    said = (finding for each in (*seen, chosen) for finding in each.findings)
+    areas = tuple(area for each in seen for area in each.areas)
+    return FoundScale(chosen.scale, tuple(dict.fromkeys(said)), areas)
+
+
+def _rule(picture: Picture, options: Options) -> RuleScale | None:
+    if options.rule is None:
+        return None
+    from imgcover.scale.rule_scale import measure_rules
+
+    return measure_rules(
+        picture,
+        unit=options.rule,
+        rule_class=RuleClass(options.rule_class),
+        within=astuple(_asked(picture, options)),
+    )
+
+
+def _sheet(picture: Picture, options: Options) -> SheetScale | None:
+    if not options.sheet:
+        return None
+    from imgcover.scale.sheet_scale import measure_sheet
+
+    return measure_sheet(picture, options.bars)
 
 
 def certificate(device: str | None) -> Certificate | None:
@@ -92,6 +110,8 @@ def certificate(device: str | None) -> Certificate | None:
     """
     if device is None:
         return None
+    from imgcover.scale.certificate import find_certificate, read_certificate
+
     path = find_certificate(device)
     return read_certificate(path, name=path.name)
 
@@ -100,6 +120,8 @@ def _certified(picture: Picture, options: Options) -> Scale | None:
     held = certificate(options.device)
     if held is None:
         return None
+    from imgcover.scale.certificate_use import scale_from_certificate
+
     unsure = has(picture.findings, Flag.ORIENTATION_UNKNOWN) or has(
         picture.findings, Flag.EXIF_UNREADABLE
     )

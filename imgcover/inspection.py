@@ -11,6 +11,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass, replace
 from datetime import UTC, datetime
+from typing import TYPE_CHECKING
 
 from imgcover.asking import (
     certificate,
@@ -21,7 +22,6 @@ from imgcover.asking import (
     measure_cover,
     noticed,
 )
-from imgcover.cloth.prediction import Prediction, predict
 from imgcover.errors import PictureError
 from imgcover.findings import Finding, Flag, Severity, found
 from imgcover.ledger.canonical import Record
@@ -31,7 +31,9 @@ from imgcover.picture.reader import read_picture
 from imgcover.request import Request
 from imgcover.verdict.observed import Observed
 from imgcover.verdict.observing import observe
-from imgcover.verdict.swatch import judge
+
+if TYPE_CHECKING:
+    from imgcover.cloth.prediction import Prediction
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -127,6 +129,10 @@ def _judged(answers: Answers, request: Request) -> Inspection:
         place=request.sample.place or "",
     )
     if declaration is not None:
+        # loaded only where there is something to judge against
+        from imgcover.cloth.prediction import predict
+        from imgcover.verdict.swatch import judge
+
         prediction = predict(declaration)
         verdict = judge(declaration, prediction, observed, risk=options.risk)
         findings = (*answers.findings, *_warnings(prediction), *verdict.findings)

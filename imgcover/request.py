@@ -9,9 +9,8 @@ import math
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 from pathlib import Path
-from typing import Any, Literal, get_args
+from typing import TYPE_CHECKING, Any, Literal, get_args
 
-from imgcover.cloth.declaration import Declaration
 from imgcover.errors import OptionError
 from imgcover.ledger.record import Sample
 from imgcover.quantity import Measured
@@ -21,6 +20,9 @@ from imgcover.scale.rule_class import RuleClass
 from imgcover.scale.sheet import Bars
 from imgcover.threads.field import Region
 from imgcover.tone import Tone
+
+if TYPE_CHECKING:
+    from imgcover.cloth.declaration import Declaration
 
 Light = Literal["backlit", "reflected"]
 Warp = Literal["vertical", "horizontal"]

@@ -8,25 +8,28 @@ from collections.abc import Callable, Iterator, Mapping, Sequence
 from contextlib import ExitStack
 from dataclasses import dataclass
 from pathlib import Path
-from typing import Any, Literal
+from typing import TYPE_CHECKING, Any, Literal
 
-from imgcover.audit.lots import Member, sum_lot
 from imgcover.cli.exits import ExitCode, gravest
 from imgcover.cli.output import opened, tell
-from imgcover.cloth.declaration import Declaration, read_declaration
 from imgcover.errors import OptionError
 from imgcover.inspection import Inspection, inspect
 from imgcover.ledger.canonical import Record, canonical, digest
 from imgcover.ledger.chain import Entry
 from imgcover.ledger.record import Sample
-from imgcover.ledger.store import Ledger
 from imgcover.report.data import json_array, json_lines
 from imgcover.report.layout import Units, units_of
-from imgcover.report.overlay import overlay, write_overlay
 from imgcover.report.reference import reasons_against, reference_toml
 from imgcover.report.rows import csv_lines
 from imgcover.report.text import lot_text, record_text
 from imgcover.request import Request, read_options
+
+if TYPE_CHECKING:
+    from imgcover.audit.lots import Member
+    from imgcover.cloth.declaration import Declaration
+    from imgcover.ledger.store import Ledger
+
+# declarations, lots, ledger and overlays are loaded when they are asked for: half of all loading
 
 Form = Literal["text", "json", "jsonl", "csv"]
 STDIN = "-"
@@ -64,14 +67,14 @@ class Asked:
 def measured(asked: Asked) -> ExitCode:
     """Measure every picture, tell it as asked, and say how it ended."""
     _check(asked)
-    declaration = None if asked.article is None else read_declaration(asked.article)
+    declaration = _declared(asked.article)
     units = asked.units or units_of(declaration)
     requests = _requests(asked, declaration)
     with ExitStack() as stack:
         write = stack.enter_context(
             opened(asked.output, encoding=None if asked.form == "text" else "utf-8")
         )
-        ledger = None if asked.ledger is None else stack.enter_context(Ledger.open(asked.ledger))
+        ledger = _ledger(asked.ledger, stack)
         run = _Run(asked, declaration, units, ledger)
         for piece in _told(run.records(requests), asked.form, units):
             write(piece)
@@ -103,13 +106,14 @@ class _Run:
             self._codes.append(code_of(record))
             self._remember(record)
             if self._asked.lot is not None:
-                pixels = record["picture"]["pixels_sha256"]
-                self._members.append(Member(request.name, pixels, inspection.observed))
+                self._members.append(_member(request.name, inspection))
             if self._asked.overlay is not None:
                 self._draw(inspection, self._asked.overlay)
             self._last = record
             yield record
         if self._asked.lot is not None:
+            from imgcover.audit.lots import sum_lot
+
             summed = sum_lot(
                 self._members,
                 lot=self._asked.lot,
@@ -147,6 +151,8 @@ class _Run:
         answers = inspection.answers
         if answers.picture is None or answers.threads is None:
             return
+        from imgcover.report.overlay import overlay, write_overlay
+
         pixels = overlay(
             inspection.record,
             picture=answers.picture,
@@ -189,6 +195,28 @@ def _is_counted(record: Mapping[str, Any]) -> bool:
     """Whether ends or picks were measured, where nothing was declared."""
     section = record["threads"] if "picture" in record else record["means"]
     return section is not None and any(section.get(key) for key in ("ends", "picks"))
+
+
+def _declared(article: Path | None) -> Declaration | None:
+    if article is None:
+        return None
+    from imgcover.cloth.declaration import read_declaration
+
+    return read_declaration(article)
+
+
+def _ledger(path: Path | None, stack: ExitStack) -> Ledger | None:
+    if path is None:
+        return None
+    from imgcover.ledger.store import Ledger
+
+    return stack.enter_context(Ledger.open(path))
+
+
+def _member(name: str, inspection: Inspection) -> Member:
+    from imgcover.audit.lots import Member
+
+    return Member(name, inspection.record["picture"]["pixels_sha256"], inspection.observed)
 
 
 def _check(asked: Asked) -> None:

@@ -10,8 +10,8 @@ from __future__ import annotations
 
 import re
 from dataclasses import asdict, dataclass
+from typing import TYPE_CHECKING
 
-from imgcover.cloth.prediction import Prediction
 from imgcover.cover.reading import CoverReading, Pores
 from imgcover.findings import Finding
 from imgcover.ledger.canonical import Record, number
@@ -22,7 +22,10 @@ from imgcover.quantity import Measured
 from imgcover.scale.scale import Scale
 from imgcover.threads.density import Density
 from imgcover.threads.reading import ThreadReading, ThreadSet
-from imgcover.verdict.verdict import Verdict
+
+if TYPE_CHECKING:
+    from imgcover.cloth.prediction import Prediction
+    from imgcover.verdict.verdict import Verdict
 
 SCHEMA = "imgcover/record/1"
 CONDITIONED = frozenset({"yes", "y", "true", "1", "x", "conditioned"})

@@ -3,12 +3,14 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Mapping
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
-from imgcover.cloth.prediction import Prediction
 from imgcover.findings import Finding
 from imgcover.ledger.canonical import Record, number
 from imgcover.quantity import Measured
+
+if TYPE_CHECKING:
+    from imgcover.cloth.prediction import Prediction
 
 
 def quantity(measured: Measured | None) -> dict[str, Any] | None:

@@ -5,11 +5,13 @@ from __future__ import annotations
 import textwrap
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
-from typing import Any, Literal
+from typing import TYPE_CHECKING, Any, Literal
 
-from imgcover.cloth.declaration import Declaration
 from imgcover.quantity import rounded
 from imgcover.report.plain import columns, shortened
+
+if TYPE_CHECKING:
+    from imgcover.cloth.declaration import Declaration
 
 WIDTH = 80
 """Columns of the narrowest terminal and of a printed page."""

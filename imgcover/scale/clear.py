@@ -7,8 +7,6 @@ from collections.abc import Sequence
 import numpy as np
 from numpy.typing import NDArray
 
-from imgcover.scale.rule_area import area_mask
-
 CELLS = 256
 """The shorter side is looked at in this many cells: a rule's edge is then told to half a percent
 of the picture, and its area comes with a margin anyway."""
@@ -37,6 +35,9 @@ def clear_part(
     """
     if not areas:
         return within
+    # here, and not above: only where a rule or sheet lies in the picture
+    from imgcover.scale.rule_area import area_mask
+
     factor = max(1, min(shape) // CELLS)
     cells = (-(-shape[0] // factor), -(-shape[1] // factor))
     taken = area_mask(areas, cells, factor=factor)

@@ -11,8 +11,6 @@ from dataclasses import dataclass
 from enum import StrEnum
 from statistics import NormalDist
 
-from scipy.special import stdtr, stdtrit
-
 COVERAGE = 2.0
 """The default guard band is the expanded uncertainty U = 2 u (ISO 14253-1, JCGM 106 8.3.2)."""
 DEFAULT_RISK = NormalDist().cdf(-COVERAGE)
@@ -159,12 +157,17 @@ def _below(score: float, freedom: float) -> float:
     """Lower tail of Student's t, or of the normal distribution where freedom is infinite."""
     if math.isinf(freedom):
         return NormalDist().cdf(score)
+    # here, and not above: a third of a second to load, and only lots have few places
+    from scipy.special import stdtr
+
     return float(stdtr(freedom, score))
 
 
 def _quantile(risk: float, freedom: float) -> float:
     if math.isinf(freedom):
         return NormalDist().inv_cdf(1.0 - risk)
+    from scipy.special import stdtrit
+
     return -float(stdtrit(freedom, risk))
 
 

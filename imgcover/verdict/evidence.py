@@ -7,7 +7,6 @@ from dataclasses import dataclass
 from statistics import NormalDist
 
 import numpy as np
-from scipy.special import chdtrc
 
 from imgcover.quantity import Measured
 from imgcover.verdict.departure import SEEN, Departure, Floats, expected
@@ -120,6 +119,9 @@ def _rest_fits(sheet: Sheet, evidence: Evidence, risk: float) -> bool:
     residual = np.linalg.solve(lower, evidence.values - mean)
     steps = np.linalg.solve(lower, effect[free].T)
     residual = residual - steps @ np.linalg.lstsq(steps, residual, rcond=None)[0]
+    # here, and not above: a third of a second to load
+    from scipy.special import chdtrc
+
     return float(chdtrc(left, float(residual @ residual))) > risk
 
 

@@ -18,7 +18,6 @@ from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 
 import numpy as np
-from scipy.special import chdtrc
 
 from imgcover.verdict.cause import Cause, fixed
 from imgcover.verdict.departure import Departure, Floats, expected, joined
@@ -171,6 +170,9 @@ def _log_penalty(residual: Floats, covariance: Floats) -> float:
     """How much less a cause is trusted for what it leaves unexplained; 0 where that is chance."""
     if not len(residual):
         return 0.0
+    # here, and not above: a third of a second to load
+    from scipy.special import chdtrc
+
     squared = float(residual @ np.linalg.solve(covariance, residual))
     tail = max(float(chdtrc(len(residual), squared)), sys.float_info.min)
     return min(0.0, math.log(tail / POOR_FIT))
