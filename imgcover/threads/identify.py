@@ -149,10 +149,12 @@ def taken_as(seen: Identified, ends: Multiple, picks: Multiple) -> Identified | 
 
 
 def _lattices(found: list[Peak], tolerance: float) -> list[Lattice]:
+    cuts = [
+        [each for each in found if math.hypot(each.fx, each.fy) > cut][:24] for cut in LOWEST_CUTS
+    ]
     out: list[Lattice] = []
-    for cut in LOWEST_CUTS:
-        kept = [each for each in found if math.hypot(each.fx, each.fy) > cut][:24]
-        if len(kept) >= 2:
+    for kept, before in zip(cuts, [[], *cuts], strict=False):
+        if len(kept) >= 2 and kept != before:  # often no peak lies between two cuts
             out += fit_lattices(kept, tolerance=tolerance, most=4)
     return out
 

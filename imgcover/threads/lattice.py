@@ -119,7 +119,8 @@ def _reduced(first: NDArray[np.float64], second: NDArray[np.float64]) -> NDArray
 
 def _area(basis: NDArray[np.float64]) -> float:
     (ax, bx), (ay, by) = basis.tolist()
-    return abs(ax * by - ay * bx)
+    area: float = abs(ax * by - ay * bx)
+    return area
 
 
 def _refined(

@@ -121,10 +121,10 @@ def densities(
     places = np.bincount(at, minlength=len(pieces.blocks))
 
     def summed(each: NDArray[np.float64]) -> NDArray[np.float64]:
-        return np.bincount(at, each, minlength=len(pieces.blocks))
+        return np.asarray(np.bincount(at, each, minlength=len(pieces.blocks)), np.float64)
 
     def from_middle(each: NDArray[np.float64]) -> NDArray[np.float64]:
-        return each - (summed(each) / np.maximum(places, 1))[at]
+        return np.asarray(each - (summed(each) / np.maximum(places, 1))[at], np.float64)
 
     x, y = from_middle(followed.x[column]), from_middle(followed.y[row])
     turns = phase[row, column]
