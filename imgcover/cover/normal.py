@@ -12,7 +12,7 @@ from imgcover.cover.places import Places
 
 Floats = NDArray[np.float64]
 
-CONJUGATES, CLOSE = 25, 1e-4
+CONJUGATES, CLOSE = 40, 1e-6
 """Conjugate gradient steps at most, and the remaining error (squared) at which they may stop."""
 
 
