@@ -25,7 +25,7 @@ from imgcover.errors import OptionError, PictureError
 from imgcover.findings import Finding, Flag, found, has
 from imgcover.picture.picture import Picture
 from imgcover.picture.reader import read_picture
-from imgcover.request import Options
+from imgcover.request import Enclosed, Options
 from imgcover.scale.choice import choose_scale
 from imgcover.scale.clear import clear_part
 from imgcover.scale.pitch import scale_from
@@ -124,7 +124,7 @@ def _sheet(picture: Picture, options: Options) -> SheetScale | None:
     return measure_sheet(picture, options.bars)
 
 
-def certificate(device: str | None) -> Certificate | None:
+def certificate(device: str | Enclosed | None) -> Certificate | None:
     """Read the certificate that names the device, or is the file.
 
     Raises
@@ -136,6 +136,8 @@ def certificate(device: str | None) -> Certificate | None:
         return None
     from imgcover.scale.certificate import find_certificate, read_certificate
 
+    if isinstance(device, Enclosed):
+        return read_certificate(device.content, name=device.name)
     path = find_certificate(device)
     return read_certificate(path, name=path.name)
 
@@ -245,7 +247,7 @@ def measure_cover(
     return reading if warp_across else _exchanged(reading)
 
 
-def exposure(path: Path | None, tone: Tone | None) -> Picture | None:
+def exposure(path: Path | Enclosed | None, tone: Tone | None) -> Picture | None:
     """Read a blank or dark exposure, once for all pictures that share it.
 
     Raises
@@ -255,6 +257,8 @@ def exposure(path: Path | None, tone: Tone | None) -> Picture | None:
     """
     if path is None:
         return None
+    if isinstance(path, Enclosed):
+        return _exposure(path, tone, 0, 0)
     try:
         state = path.stat()
     except OSError as fault:
@@ -265,10 +269,11 @@ def exposure(path: Path | None, tone: Tone | None) -> Picture | None:
 
 
 @lru_cache(maxsize=4)
-def _exposure(path: Path, tone: Tone | None, changed_ns: int, size: int) -> Picture:
+def _exposure(path: Path | Enclosed, tone: Tone | None, changed_ns: int, size: int) -> Picture:
     """The file's time and size are part of the key: a watched folder may replace it."""
+    source = path.content if isinstance(path, Enclosed) else path
     try:
-        return read_picture(path, name=path.name, tone=tone)
+        return read_picture(source, name=path.name, tone=tone)
     except PictureError as fault:
         raise OptionError(path.name, fault.fault, fault.remedy) from fault
 
