@@ -145,7 +145,9 @@ def by_openings(
     guessed = _guessed(places, fitted, bare)
     refused = _refusal(places, fitted, blurs, guessed)
     if refused is not None:
-        return replace(reading, findings=(refused,))
+        small = refused.flag is Flag.COVER_NOT_RESOLVED
+        bound = most_open(windows, light_known=light_known) if small else None
+        return replace(reading, upper_bound_open=bound, findings=(refused,))
     bias = edge_bias(places, fitted, bare, middle)
     edge = 1 - weighted(maps, weights) / (1 + bias) if abs(bias) < MOST_BIAS else None
     witnessed = _Witnessed(

@@ -18,8 +18,13 @@ FINER = 4
 """Sub-pixels a pixel for the half-level edge: the edge is then placed to a few hundredths px."""
 ROUNDS = 4
 """Levels and edge depend on each other; after three rounds neither moves by 0.0001."""
+SHARP = 0.4
+"""Width told of edges that nothing but the pixel blurs, px."""
 CLEAR = 2.0
 """Standard deviations of the blur from the edge at which a level is free of the other."""
+ASIDE = (0.25, 0.75)
+"""Levels beside the half level: where yarns are bright and dark by themselves, as in reflected
+light, the edge moves between them by more than blur alone would move it."""
 FEWEST_CLEAR = 200
 """Pixels clear of any edge that a level must rest on: fewer are all rim."""
 
@@ -38,6 +43,11 @@ class Levels:
         Covered share by the half-level edge, and by the light.
     scatter : float
         Relative standard deviation of the open level between its pixels.
+    unlike : float
+        How much more the covered share changes with the level of the edge than blur explains.
+    rim : float
+        Share of the field within one standard deviation of the blur of the edges, beyond what
+        the pixel itself blurs: how much a rim that thins out would look the same.
     maps : list of ndarray
         Open share of each pixel, window by window.
     """
@@ -48,6 +58,8 @@ class Levels:
     threshold: float
     two_level: float
     scatter: float
+    unlike: float
+    rim: float
     maps: list[Floats]
 
 
@@ -69,20 +81,23 @@ def two_levels(windows: list[Window], shares: list[Floats], weights: list[Floats
     """
     values = np.concatenate([s[w > 0] for s, w in zip(shares, weights, strict=True)])
     low, high = (float(q) for q in np.quantile(values, (0.02, 0.995)))
-    blur, scatter = 0.4, 0.0
+    blur, length, scatter = SHARP, 0.0, 0.0
     for _ in range(ROUNDS):
         middle = (low + high) / 2
         found = _clear_levels(windows, shares, middle, CLEAR * blur)
         if found is None or found[0] <= found[1]:
             return None
         high, low, scatter = found
-        blur = _blur(shares, high, low)
+        blur, length = _blur(shares, high, low)
     middle = (low + high) / 2
-    fine = [_finer(share) > middle for share in shares]
+    finer = [_finer(share) for share in shares]
+    fine = [each > middle for each in finer]
     maps = [_coarser(each) for each in fine]
     seen = weighted(maps, weights)
     # What blur does to the shapes that were seen, it did to the true ones.
-    again = [_coarser(_blurred(each, blur) > 0.5) for each in fine]
+    blurred = [_blurred(each, blur) for each in fine]
+    again = [_coarser(each > 0.5) for each in blurred]
+    by_level = _moves([(each - low) / (high - low) for each in finer], weights)
     return Levels(
         open_level=high,
         yarn_level=low,
@@ -90,6 +105,8 @@ def two_levels(windows: list[Window], shares: list[Floats], weights: list[Floats
         threshold=1 - (2 * seen - weighted(again, weights)),
         two_level=(high - weighted(shares, weights)) / (high - low),
         scatter=scatter,
+        rim=length * math.sqrt(max(0.0, blur**2 - SHARP**2)),
+        unlike=abs(by_level - _moves(blurred, weights)),
         maps=maps,
     )
 
@@ -111,20 +128,30 @@ def _clear_levels(
     return high, float(np.mean(below_all)), float(np.std(above_all)) / high
 
 
+def _moves(finer: list[Floats], weights: list[Floats]) -> float:
+    """How far the share beyond the edge moves while its level goes over the middle of the rise."""
+    below, above = ([_coarser(each > level) for each in finer] for level in ASIDE)
+    return weighted(below, weights) - weighted(above, weights)
+
+
 def _clearance(mask: NDArray[np.bool_]) -> Floats:
     """Distance to the nearest edge, px; beyond the rim of the window there may be one."""
     ringed = np.pad(mask.astype(np.uint8), 1)
     return np.asarray(cv2.distanceTransform(ringed, cv2.DIST_L2, 5)[1:-1, 1:-1], np.float32)
 
 
-def _blur(shares: list[Floats], high: float, low: float) -> float:
-    """Width of the edges: across one, the integral of Φ(1 − Φ) is σ / √π."""
+def _blur(shares: list[Floats], high: float, low: float) -> tuple[float, float]:
+    """Width of the edges, px, and their length, px a pixel.
+
+    Across an edge the integral of Φ(1 − Φ) is σ / √π.
+    """
     between, length = 0.0, 0.0
     for share in shares:
         place = np.clip((share - low) / (high - low), 0, 1)
         between += float(np.sum(place * (1 - place), dtype=np.float64))
         length += _perimeter(place > 0.5)
-    return math.sqrt(math.pi) * between / max(length, 1.0)
+    pixels = sum(share.size for share in shares)
+    return math.sqrt(math.pi) * between / max(length, 1.0), length / pixels
 
 
 def _perimeter(above: NDArray[np.bool_]) -> float:

@@ -21,8 +21,24 @@ BLOCK = 48
 """Side of a light block, px: a few threads of most cloths."""
 EVEN = 0.08
 """Relative scatter of the open level beyond which it is no common level of light."""
+RIM, THIN = 0.15, 0.5
+"""Yarns thin out towards their rim, and two levels cannot tell that from blur and light: cover is
+too small by up to twice these shares of the edges' breadth and of the light that yarns let
+through (drawn cloths of the sweep, seed 40417, without their lattice: 2 u holds all 40)."""
+LEAST_SURE = 0.02
+"""A cover less sure than this is refused."""
 SURE = 0.0015
 """What sharp two-level figures of known area are off by."""
+UNLIKE = 0.04
+"""Cover that depends this much on the level of the edge is refused: there are no two levels."""
+NO_TWO_LEVELS = (
+    "optical cover was not measured: yarns and gaps are not two levels of light, and where one "
+    "ends and the other begins depends on where the line is drawn"
+)
+THREADS_UNKNOWN = (
+    "optical cover was not measured: without the threads known it rests on two levels of light, "
+    "and its uncertainty would be {:.1f} points"
+)
 CARD_U = 0.02
 """Shadows on the card and light from it through the yarn move the edge of a gap by this much."""
 
@@ -66,26 +82,40 @@ def by_levels(
         return replace(reading, upper_bound_open=bound, findings=(found(Flag.COVER_NOT_RESOLVED),))
     if backing is None and levels.scatter > EVEN:
         return replace(reading, findings=(found(Flag.COVER_NOT_BACKLIT),))
-    return _answered(reading, levels, shares, weights, lattice, backing)
+    if levels.unlike > UNLIKE:
+        why = Flag.COVER_NOT_RESOLVED if backing is None else Flag.COVER_NEEDS_BACKLIGHT
+        return replace(reading, findings=(found(why, NO_TWO_LEVELS),))
+    u = _u(levels, shares, weights, backing)
+    if backing is None and u > LEAST_SURE:
+        bound = most_open(windows, light_known=light_known)
+        message = THREADS_UNKNOWN.format(100 * u)
+        return replace(
+            reading, upper_bound_open=bound, findings=(found(Flag.COVER_NOT_RESOLVED, message),)
+        )
+    return _answered(reading, levels, u, lattice, backing)
+
+
+def _u(levels: Levels, shares: list[Floats], weights: list[Floats], backing: str | None) -> float:
+    """One standard uncertainty of the cover."""
+    contrast = levels.open_level - levels.yarn_level
+    parts = [
+        SURE,
+        (levels.threshold - levels.two_level) / 2,
+        between_windows(shares, weights) / contrast,
+        RIM * levels.rim,
+    ]
+    if backing is None:
+        parts.append(THIN * levels.yarn_level / levels.open_level * levels.two_level)
+    else:
+        parts += [CARD_U, levels.unlike / 2]
+    return math.hypot(*parts)
 
 
 def _answered(
-    reading: CoverReading,
-    levels: Levels,
-    shares: list[Floats],
-    weights: list[Floats],
-    lattice: Lattice | None,
-    backing: str | None,
+    reading: CoverReading, levels: Levels, u: float, lattice: Lattice | None, backing: str | None
 ) -> CoverReading:
     # Both levels are seen here, and light needs no edge: the edge only bears witness.
     cover = levels.two_level
-    contrast = levels.open_level - levels.yarn_level
-    u = math.hypot(
-        (levels.threshold - levels.two_level) / 2,
-        between_windows(shares, weights) / contrast,
-        SURE,
-        0.0 if backing is None else CARD_U,
-    )
     findings: list[Finding] = []
     if backing is not None:
         findings.append(found(Flag.COVER_ON_A_CARD))
