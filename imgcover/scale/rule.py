@@ -3,7 +3,8 @@
 The search goes from coarse to fine copies of the picture: spots of parallel lines (`rule_seeds`)
 are followed along their row (`rule_band`), the pattern of long and short lines tells rule from
 cloth and millimetre from inch (`rule_hierarchy`, `rule_proof`), and every line is placed on the
-finest copy (`rule_fit`). Nothing is known about the cloth, and nothing of it is used.
+finest copy (`rule_fit`). Where that finds none, it is done again with the cloth pressed down
+(`rule_quiet`). Nothing is known about the cloth, and nothing of it is used.
 """
 
 from __future__ import annotations
@@ -23,8 +24,9 @@ from imgcover.scale.rule_class import RuleClass, rule_u
 from imgcover.scale.rule_fit import fit_row
 from imgcover.scale.rule_hierarchy import Graduation
 from imgcover.scale.rule_levels import Level, Pictured, levels_of
-from imgcover.scale.rule_lines import Row
-from imgcover.scale.rule_proof import Proof, prove
+from imgcover.scale.rule_lines import Row, goes_on, measure_lines
+from imgcover.scale.rule_proof import UNMISTAKABLE, Proof, prove
+from imgcover.scale.rule_quiet import quieten
 from imgcover.scale.rule_seeds import Seed, even_out, find_seeds
 from imgcover.scale.rule_view import View, view_of
 
@@ -131,8 +133,15 @@ def find_rules(
     levels = levels_of(picture)
     found_rows: list[tuple[RuleReading, Proof]] = []
     refused: list[str] = []
-    for level in reversed(levels):
-        for row, proof in _rows_on(level, unit):
+    doubted = False
+    for quiet, level in ((quiet, level) for quiet in (False, True) for level in reversed(levels)):
+        if quiet and doubted:
+            break
+        for row, proof in _rows_on(level, unit, quiet=quiet):
+            if not proof.graduations:
+                # what the picture as it is disproves must not be proven in one made for searching
+                doubted = True
+                continue
             reading = _read(picture, levels[0], level, row, proof, rule_class)
             if isinstance(reading, str):
                 refused.append(reading)
@@ -143,27 +152,41 @@ def find_rules(
     return _agree([reading for reading, _ in found_rows], refused)
 
 
-def _rows_on(level: Level, unit: Unit) -> list[tuple[Row, Proof]]:
-    """Follow and judge the seeds of one level; of rows that overlap keep a proven one."""
+def _rows_on(level: Level, unit: Unit, *, quiet: bool) -> list[tuple[Row, Proof]]:
+    """Follow and judge the seeds of one level; of rows that overlap keep a proven one.
+
+    With `quiet` the rows are looked for with the cloth pressed down.
+    """
+    tone = quieten(level.tone) if quiet else level.tone
     kept: list[tuple[Row, Proof]] = []
-    for seed in find_seeds(even_out_tone(level), most=MOST_SEEDS):
+    for seed in find_seeds(even_out(tone * tone), most=MOST_SEEDS):
         if any(proof.proven and _inside(row, seed) for row, proof in kept):
             continue
-        covers = any(_inside(row, seed) for row, _ in kept)
-        for row in follow_row(level.tone, seed):
+        covers = any(proof.graduations and _inside(row, seed) for row, proof in kept)
+        for row in follow_row(tone, seed):
             proof = prove(row, unit)
-            if proof is not None and proof.proven:
+            if quiet and proof is not None and proof.pattern.steps not in UNMISTAKABLE:
+                # pressing down touches the ends of lines, and with them half or twice the period
+                row, proof = _as_it_is(level, row, unit)
+            if proof is None:
+                continue
+            if proof.graduations and goes_on(tone, row):
+                proof = Proof((), proof.pattern)
+            if proof.proven:
                 # half-millimetre lines hide the foot of the millimetres that a seed beyond found
                 kept = [each for each in kept if each[1].proven or not _inside(each[0], seed)]
-            if proof is not None and (proof.proven or not covers):
+            if proof.proven or not covers:
                 kept.append((row, proof))
+            if proof.graduations:
                 break
     return kept
 
 
-def even_out_tone(level: Level) -> NDArray[np.float32]:
-    """Return the level's picture evened for the search."""
-    return even_out(level.tone * level.tone)
+def _as_it_is(level: Level, row: Row, unit: Unit) -> tuple[Row, Proof | None]:
+    """Measure and judge a row's lines anew in the picture as it is."""
+    zone = (0.0, row.zone)
+    again = measure_lines(level.tone, row.frame, row.numbers, row.positions, row.light, zone=zone)
+    return (row, None) if again is None else (again, prove(again, unit))
 
 
 def _inside(row: Row, seed: Seed) -> bool:

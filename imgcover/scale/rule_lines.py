@@ -16,6 +16,12 @@ from imgcover.scale.rule_frame import Frame, run_around
 
 LONGEST_LINE = 30
 """Pitches: an inch line on a 1/64 inch rule reaches 25."""
+BEYOND_FOOT = 8.0
+"""Pitches: longer than the shortest lines of any scale that stands foot to foot with another."""
+BESIDE = (0.22, 0.3)
+"""Pitches from a line's middle where its own ink, blurred, hardly reaches and a digit's does."""
+BEFORE_END = 0.5
+"""Pitches before its end over which a line is looked at for ink beside it."""
 CLEAR_GAP = 0.14
 """Pitches of full gap, halved: a line's ink may be broken by less, digits stand off by more."""
 
@@ -26,8 +32,9 @@ class Row:
 
     `numbers` and `positions` (px along the frame) of each line; `reach` how far each goes from
     the common foot at t = 0 up to its first clear gap, px, and `beyond` how far if gaps may be
-    dust; `tip` its contrast just before its end over that at its foot; `strength` its contrast
-    over the usual; `pitch` in px; `light` whether the lines are lighter than their ground; `zone`
+    dust; `tip` its contrast just before its end over that at its foot; `wide` the same of what
+    stands close beside it on both sides, less what does at its foot; `strength` its contrast over
+    the usual; `pitch` in px; `light` whether the lines are lighter than their ground; `zone`
     the height up to which all lines go.
     """
 
@@ -38,6 +45,7 @@ class Row:
     reach: NDArray[np.float64]
     beyond: NDArray[np.float64]
     tip: NDArray[np.float64]
+    wide: NDArray[np.float64]
     strength: NDArray[np.float64]
     light: bool
     zone: float
@@ -71,6 +79,7 @@ def measure_lines(
         )
         frame = replace(frame, along=turned)
         zone = (foot, top)
+    wide = _wide(tone, frame, positions, t, pitch, strength, reach, (foot, top))
     local = median_filter(strength, 15, mode="nearest")
     return Row(
         frame=frame.moved(0.0, foot),
@@ -80,10 +89,24 @@ def measure_lines(
         reach=reach - foot,
         beyond=beyond - foot,
         tip=tip,
+        wide=wide,
         strength=strength / np.maximum(local, 1e-6),
         light=light,
         zone=top - foot,
     )
+
+
+def goes_on(tone: NDArray[np.float32], row: Row) -> bool:
+    """Whether the lines go on beyond their foot: squared paper's do, whatever reaches over it.
+
+    A second scale may stand foot to foot with the first, but its shortest lines end.
+    """
+    heights = np.arange(-BEYOND_FOOT * row.pitch, -0.25 * row.pitch)
+    contrast = _contrast(tone, row.frame, row.positions, heights, row.pitch)
+    middle = np.median(contrast, axis=0) * (1.0 if row.light else -1.0)
+    at_foot = np.arange(0.0, row.zone + 0.5)
+    usual = np.median(_contrast(tone, row.frame, row.positions, at_foot, row.pitch))
+    return bool((middle > abs(usual) / 3).mean() > 0.5)
 
 
 def _contrast(
@@ -155,6 +178,34 @@ def _reach(
     return t[start] + first + 0.5, t[start] + np.argmax(above, axis=1) + 0.5, tip
 
 
+def _wide(
+    tone: NDArray[np.float32],
+    frame: Frame,
+    positions: NDArray[np.float64],
+    t: NDArray[np.float64],
+    pitch: float,
+    strength: NDArray[np.float64],
+    reach: NDArray[np.float64],
+    zone: tuple[float, float],
+) -> NDArray[np.float64]:
+    """Return how much ink stands on both sides of each line's end: a digit's does, a line's not."""
+    gap = [frame.sample(tone, positions + d * pitch, t) for d in (-0.5, 0.5)]
+    ground = ((gap[0] + gap[1]) / 2).T
+    before = (t > (reach - max(BEFORE_END * pitch, 4.0))[:, None]) & (t < reach[:, None])
+    at_foot = np.broadcast_to((t >= zone[0]) & (t <= zone[1]), before.shape)
+    sides = []
+    for side in (-1, 1):
+        beside = [frame.sample(tone, positions + side * d * pitch, t) for d in BESIDE]
+        ink = np.abs((beside[0] + beside[1]).T / 2 - ground)
+        end, foot = (
+            (ink * where).sum(axis=1) / np.maximum(where.sum(axis=1), 1)
+            for where in (before, at_foot)
+        )
+        sides.append(end - np.median(foot))
+    usual = np.maximum(strength, 0.3 * np.median(strength))
+    return np.asarray(np.minimum(*sides) / usual, dtype=np.float64)
+
+
 def _lean(
     positions: NDArray[np.float64],
     contrast: NDArray[np.float64],
@@ -173,4 +224,4 @@ def _lean(
     return float(np.median(slope / length)) if len(slope) else 0.0
 
 
-__all__ = ["LONGEST_LINE", "Row", "measure_lines"]
+__all__ = ["LONGEST_LINE", "Row", "goes_on", "measure_lines"]

@@ -29,6 +29,11 @@ LEAST_EXPLAINED = 0.75
 """Share of a row's lines that must end where the pattern wants them."""
 LARGEST_COST = 1.35
 """Mean distance of the lines from the pattern, in scatters (0.8 pixel or an eighth of a pitch)."""
+RAGGED_COST = 2.0
+"""The same where the evidence is `BEYOND_CHANCE` and the period could be no other's: print leaves
+ends ragged by a quarter of a millimetre, which is half a pitch of a half-millimetre scale."""
+BEYOND_CHANCE = 15.0
+"""Powers of ten; of 10⁴ trials a picture, ten more than any number of pictures would need."""
 LEAST_EVIDENCE = 5.0
 """Powers of ten by which the found order of lengths is rarer than chance would have it. All spots,
 phases and patterns together are some 10⁴ trials."""
@@ -45,6 +50,10 @@ UNMISTAKABLE = ((1, 5, 10), (1, 2, 10, 20))
 SHARP_TIP = 0.72
 """Contrast just before a longest line's end, over that at its foot: a line that fades away is
 half as strong there by definition, one that ends nearly as strong as at its foot."""
+WIDE_TIP = 0.3
+"""Ink on both sides of a longest line's end, over its own: it runs into a digit there, and every
+second digit (1, 3, 5) may have ink where its line ends, so that a scale seems to have half as many
+longest lines."""
 MOST_LONGEST = 0.12
 """The same of the longest lines: longer ones among them are a level more, seen under wear."""
 LEAST_KEPT = 0.5
@@ -53,11 +62,16 @@ MM_SHORTEST = 1.75
 """Pitches. Tenths of an inch this tall would be 4.4 mm lines at 2.5 mm distance; no rule at hand
 has them, and millimetre lines are hardly ever shorter."""
 MM_LONGEST = 2.6
-HALF_MM_SHORTEST = 2.4
-"""Pitches. Twentieths of an inch this tall would be 3 mm tall; half-millimetre lines are 1.2
+HALF_MM_SHORTEST = 3.2
+"""Pitches. Twentieths of an inch this tall would be 4 mm tall; half-millimetre lines are 1.7
 at least."""
-INCH_SHORTEST_MM = (0.7, 9.0)
-"""Outside, a reading as a fraction of an inch would have lines that no rule has."""
+INCH_SHORTEST_MM = 0.7
+"""Below, a reading as a fraction of an inch would have lines that no rule has."""
+SHORTEST_MM = 9.0
+"""No rule's shortest lines are taller; squared paper's are, whose longer lines pass its edge."""
+FIVES_ONLY = (1, 5)
+"""Two-millimetre and decimal inch scales have this pattern as well, in any proportions: it is left
+to the user."""
 TENTH_TALLEST = 2.8
 """Pitches: lines 7 mm tall for tenths of an inch are millimetre lines misnamed."""
 
@@ -73,7 +87,7 @@ OTHERWISE = {
 
 @dataclass(frozen=True, slots=True)
 class Proof:
-    """What a row can be: one graduation when proven, several when open."""
+    """What a row can be: one graduation when proven, several when open, none when disproved."""
 
     graduations: tuple[Graduation, ...]
     pattern: Pattern
@@ -97,7 +111,8 @@ def prove(row: Row, unit: str) -> Proof | None:
     Returns
     -------
     Proof or None
-        None where the row is no rule's, or not of the stated unit.
+        None where the row is no rule's; without graduations where it looks like a rule's but its
+        own lines speak against it, or it is not of the stated unit.
     """
     patterns = match_patterns(row)
     if not patterns or not _fits(patterns[0], row):
@@ -109,7 +124,7 @@ def prove(row: Row, unit: str) -> Proof | None:
     ]
     possible = [(each, seen) for each, seen in rivals if seen is not Recurrence.DISPROVED]
     if not possible:
-        return None
+        return Proof((), patterns[0])
     readings: list[Graduation] = []
     for pattern, seen in possible:
         if seen is Recurrence.SEEN:
@@ -117,7 +132,7 @@ def prove(row: Row, unit: str) -> Proof | None:
     first, seen = possible[0]
     if seen is Recurrence.NOT_IN_FRAME:
         readings += [each for each in _unseen(first, unit) if each not in readings]
-    return Proof(tuple(readings), first) if readings else None
+    return Proof(tuple(readings), first)
 
 
 def _unseen(pattern: Pattern, unit: str) -> tuple[Graduation, ...]:
@@ -130,11 +145,13 @@ def _unseen(pattern: Pattern, unit: str) -> tuple[Graduation, ...]:
 
 def _fits(pattern: Pattern, row: Row) -> bool:
     scatter = usual_scatter(row)
+    powers = evidence(pattern, row)
+    sure = powers >= BEYOND_CHANCE and pattern.steps in UNMISTAKABLE
     return (
         pattern.explained >= LEAST_EXPLAINED
-        and pattern.cost / len(row.numbers) <= LARGEST_COST
+        and pattern.cost / len(row.numbers) <= (RAGGED_COST if sure else LARGEST_COST)
         and pattern.lengths[-1] - pattern.lengths[0] >= LEAST_RISE * scatter
-        and evidence(pattern, row) >= LEAST_EVIDENCE + (len(pattern.steps) == 2) * TWO_LENGTHS
+        and powers >= LEAST_EVIDENCE + (len(pattern.steps) == 2) * TWO_LENGTHS
     )
 
 
@@ -176,6 +193,8 @@ def _recurs(pattern: Pattern, row: Row) -> Recurrence:
     ends = misfit(row, np.full(len(reach), top)) <= bound
     if not _orderly(pattern, row, bound):
         return Recurrence.DISPROVED
+    if _fifths_longer(pattern, row, bound):
+        return Recurrence.DISPROVED
     if pattern.steps in UNMISTAKABLE:
         # that they are longer than the level below is enough, however far each still reaches
         ends |= reach > between + bound
@@ -183,7 +202,7 @@ def _recurs(pattern: Pattern, row: Row) -> Recurrence:
         # half or twice the period would be as good a scale: a worn line must not decide
         if not _in_both_turns(pattern, row, ends):
             return Recurrence.DISPROVED
-        ends &= row.tip >= SHARP_TIP
+        ends &= (row.tip >= SHARP_TIP) & (row.wide <= WIDE_TIP)
     longest = dict(zip(row.numbers.tolist(), ends.tolist(), strict=True))
     length = dict(zip(row.numbers.tolist(), reach.tolist(), strict=True))
     tried = 0
@@ -196,6 +215,26 @@ def _recurs(pattern: Pattern, row: Row) -> Recurrence:
         if all(chain) and middle < top - 2 * scatter:
             return Recurrence.SEEN
     return Recurrence.DISPROVED if tried else Recurrence.NOT_IN_FRAME
+
+
+def _fifths_longer(pattern: Pattern, row: Row, bound: float) -> bool:
+    """Whether every fifth of the longest lines is longer still: 1/50 inch looks like this.
+
+    Lines that run into digits seem longer too; then only they may have digits.
+    """
+    steps = (row.numbers - pattern.phase) / pattern.steps[-1]
+    longest, digit = steps % 1 == 0, row.wide > WIDE_TIP
+    reach = row.reach / row.pitch
+    for turn in range(5):
+        fifth = longest & (steps % 5 == turn)
+        rest = reach[longest & ~fifth]
+        if fifth.sum() < 2 or len(rest) < 4:
+            continue
+        if digit[fifth].any() and digit[longest & ~fifth].any():
+            continue
+        if (reach[fifth] > np.quantile(rest, 0.75) + bound).mean() > 0.6:
+            return True
+    return False
 
 
 def _in_both_turns(pattern: Pattern, row: Row, ends: NDArray[np.bool_]) -> bool:
@@ -236,23 +275,22 @@ def _orderly(pattern: Pattern, row: Row, bound: float) -> bool:
 
 def _readings(pattern: Pattern, unit: str) -> list[Graduation]:
     """List what a standing pattern can be, by its lines' proportions and the stated unit."""
+    return [each for each in pattern.graduations if _can_be(each, pattern, unit)]
+
+
+def _can_be(graduation: Graduation, pattern: Pattern, unit: str) -> bool:
     shortest, longest = pattern.lengths[0], pattern.lengths[-1]
-    possible = []
-    for graduation in pattern.graduations:
-        if unit == ("inch" if graduation.metric else "mm"):
-            continue
-        if graduation is Graduation.TENTH_INCH:
-            tall = shortest >= MM_SHORTEST and longest >= MM_LONGEST
-            if shortest > TENTH_TALLEST or (unit == "auto" and tall):
-                continue
-        elif not graduation.metric:
-            height = shortest * graduation.step_mm
-            if not INCH_SHORTEST_MM[0] <= height <= INCH_SHORTEST_MM[1]:
-                continue
-        elif graduation is Graduation.HALF_MM and unit == "auto" and shortest < HALF_MM_SHORTEST:
-            continue
-        possible.append(graduation)
-    return possible
+    height = shortest * graduation.step_mm
+    if unit == "auto" and pattern.steps == FIVES_ONLY:
+        return True
+    if unit == ("inch" if graduation.metric else "mm") or height > SHORTEST_MM:
+        return False
+    if graduation is Graduation.HALF_MM:
+        return unit != "auto" or shortest >= HALF_MM_SHORTEST
+    if graduation is Graduation.TENTH_INCH:
+        tall = shortest >= MM_SHORTEST and longest >= MM_LONGEST
+        return shortest <= TENTH_TALLEST and not (unit == "auto" and tall)
+    return graduation.metric or height >= INCH_SHORTEST_MM
 
 
-__all__ = ["Proof", "prove"]
+__all__ = ["UNMISTAKABLE", "Proof", "prove"]

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 from numpy.typing import NDArray
@@ -35,10 +37,11 @@ def row(reach: NDArray[np.float64]) -> Row:
         numbers * PITCH,
         ends,
         ends,
-        np.ones(len(reach)),
-        np.ones(len(reach)),
-        False,
-        float(ends.min()),
+        tip=np.ones(len(reach)),
+        wide=np.zeros(len(reach)),
+        strength=np.ones(len(reach)),
+        light=False,
+        zone=float(ends.min()),
     )
 
 
@@ -81,8 +84,9 @@ def test_ten_lines_prove_nothing() -> None:
 
 def test_the_stated_unit_does_not_make_a_rule() -> None:
     """Truth is theory: an inch scale is not a millimetre scale because someone says so."""
-    assert prove(row(heights(Division.SIXTEENTH, 140)), "mm") is None
-    assert prove(row(heights(Division.MM, 60)), "inch") is None
+    for division, count, unit in ((Division.SIXTEENTH, 140, "mm"), (Division.MM, 60, "inch")):
+        proof = prove(row(heights(division, count)), unit)
+        assert proof is None or not proof.graduations
 
 
 def test_every_second_ten_longer_is_not_millimetres() -> None:
@@ -91,6 +95,38 @@ def test_every_second_ten_longer_is_not_millimetres() -> None:
     level = levels(np.arange(90), (1, 10, 20))
     proof = prove(row(np.array([3.5, 5.5, 7.5])[level]), "auto")
     assert proof is None or not proof.proven
+
+
+def test_decimal_inches_are_not_millimetres() -> None:
+    """Truth is theory: fiftieths of an inch lengthen every fifth, tenth and fiftieth line; a
+    millimetre scale has no longer lines five centimetres apart. One such line may be an accident,
+    and where only every tenth is longer the two are alike."""
+    level = levels(np.arange(170), (1, 5, 10, 50))
+    lengths = np.array([3.0, 4.2, 5.8, 8.0])[level]
+    proof = prove(row(lengths), "auto")
+    assert proof is None or not proof.graduations
+    alike = prove(row(np.array([3.0, 4.2, 5.8, 5.8])[level]), "auto")
+    assert alike is not None and alike.proven
+
+
+def test_every_fifth_alone_is_left_open() -> None:
+    """Truth is theory: two-millimetre scales lengthen every fifth line and no other."""
+    proof = prove(row(np.where(np.arange(80) % 5 == 0, 5.5, 4.0)), "auto")
+    assert proof is not None and set(proof.graduations) == {
+        Graduation.MM,
+        Graduation.TENTH_INCH,
+    }
+
+
+def test_lines_that_run_into_digits_do_not_double_a_scale() -> None:
+    """Truth is theory: on a 1/16 inch scale the 1, 3 and 5 may have ink where their line ends and
+    the 2 and 4 none; read as 1/32 inch it would be wrong by two."""
+    level = levels(np.arange(90), (1, 2, 4, 8, 16))
+    ends = np.array([1.5, 2.1, 2.9, 3.9, 5.5])[level]
+    digit = np.arange(90) % 32 == 0
+    held = row(np.where(digit, 7.5, ends))
+    proof = prove(replace(held, wide=np.where(digit, 1.5, 0.0)), "auto")
+    assert proof is None or Graduation.THIRTYSECOND_INCH not in proof.graduations
 
 
 @pytest.mark.parametrize("seed", range(8))
