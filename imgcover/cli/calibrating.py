@@ -33,6 +33,9 @@ ENDING = {
     Holding.OPEN: ExitCode.UNDECIDED,
 }
 MM_PER_INCH = 25.4
+USUAL = 0.007
+"""Relative difference from the nominal resolution that is worth a word: flatbeds' halves and units
+differ by 0.6 %, and copiers shrink by about as much."""
 
 
 def write_sheet(output: Path) -> ExitCode:
@@ -88,6 +91,12 @@ def read_scans(
                 "of the very sheet that was scanned"
             )
             return ExitCode.UNDECIDED
+        if abs(off) > USUAL:
+            tell(
+                f"{axis} is {100 * off:+.1f} % off the stated {claimed:g} dpi, more than most "
+                "flatbeds are: see that the bars are those of the very sheet that was scanned, and "
+                "that it is no copy"
+            )
     today = datetime.now(UTC).date()
     text = write_certificate(
         reading,

@@ -195,7 +195,7 @@ def read_certificate(source: Path | bytes, *, name: str) -> Certificate:
     )
 
 
-FURTHEST = 0.02
+FURTHEST = 0.015
 """Relative difference of pitch from nominal resolution beyond which the sheet, not the device, is
 suspected: flatbeds stay within one per cent."""
 _ANEW = "make it anew with: imgcover calibrate read"
