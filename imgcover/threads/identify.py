@@ -10,7 +10,7 @@ from imgcover.repeat.phase import Transformed, transform
 from imgcover.repeat.spectrum import Peak, Spectrum, peaks, spectrum
 from imgcover.threads.candidates import Candidate, candidates
 from imgcover.threads.counting import count
-from imgcover.threads.field import Field, flattened, windows_of
+from imgcover.threads.field import Field, flattened, outlines, windows_of
 from imgcover.threads.follow import Followed, follow
 from imgcover.threads.lattice import Lattice, fit_lattices
 from imgcover.threads.lines import lines_of, refined
@@ -29,6 +29,12 @@ MOST_PEAKS = 40
 
 STEADY = 0.0015
 """Unevenness as a share of the count; even cloth lies below it."""
+
+STEADIER = 0.7
+"""Outlines are noisier than the light, so they must be this much steadier to be followed instead."""
+
+SEEN_BY_BOTH = 0.5
+"""Share of what the light shows that must be left: a steadier count of a corner is no gain."""
 
 PAIRED = 0.3
 """Share of a thread's own line that its half line reaches where threads lie in pairs."""
@@ -115,7 +121,7 @@ def identify(field: Field) -> Identified | None:
         _doubted(ends, picks, *best.pixels),
         _doubted(picks, ends, *reversed(best.pixels)),
     )
-    followed = _steadiest(flat, best, seen, followed, sigma)
+    followed = _steadiest(field, best, followed, sigma)
     return Identified(best, evidence, field, flat, followed, sigma, ends, picks, seen)
 
 
@@ -143,6 +149,7 @@ def taken_as(seen: Identified, ends: Multiple, picks: Multiple) -> Identified | 
     if tracked is None:
         return None
     flat, followed, sigma = tracked
+    followed = _steadiest(seen.origin, one, followed, sigma)
     return replace(
         seen, candidate=one, field=flat, followed=followed, sigma=sigma, ends=ends, picks=picks
     )
@@ -169,24 +176,48 @@ def _track(
     return None if followed is None else (flat, followed, sigma)
 
 
-def _steadiest(
-    flat: Transformed, one: Candidate, seen: Spectrum, plain: Followed, sigma: float
-) -> Followed:
-    """Follow twice the phase instead, where the phase is unsteady and twice it is steadier."""
+def _steadiest(field: Field, one: Candidate, plain: Followed, sigma: float) -> Followed:
+    """Follow the threads' outlines instead, where their light is unsteady and those are steadier.
+
+    Each set is taken from where it is steadier: stripes along one set leave the other alone.
+    """
     unsteady = _unsteadiness(plain, one)
-    if unsteady < STEADY:
+    if max(unsteady) < STEADY:
         return plain
-    twice = follow(flat, one.ends, one.picks, lines=lines_of(one, seen), sigma=sigma, folded=2)
-    return plain if twice is None or _unsteadiness(twice, one) > 0.7 * unsteady else twice
-
-
-def _unsteadiness(followed: Followed, one: Candidate) -> float:
-    """How unevenly the worse set seems to lie, relative to its density."""
-    counts = (
-        count(followed.ends, followed, one.ends),
-        count(followed.picks, followed, one.picks),
+    period = max(one.pixels)
+    drawn = outlines(field, period)
+    seen = spectrum(windows_of(drawn, min(WINDOW, *drawn.light.shape)))
+    flat = transform(flattened(drawn.light, period), margin=math.ceil(4 * sigma))
+    other = follow(flat, one.ends, one.picks, lines=lines_of(one, seen), sigma=sigma)
+    if other is None or other.valid.sum() < SEEN_BY_BOTH * plain.valid.sum():
+        return plain
+    ends, picks = (
+        again < STEADIER * before
+        for before, again in zip(unsteady, _unsteadiness(other, one), strict=True)
     )
-    return max(math.inf if each is None else each.irregular + each.broken for each in counts)
+    if ends and picks:
+        return other
+    valid = plain.valid & other.valid
+    if not (ends or picks) or valid.sum() < SEEN_BY_BOTH * plain.valid.sum():
+        return plain
+    return replace(
+        plain,
+        ends=other.ends if ends else plain.ends,
+        picks=other.picks if picks else plain.picks,
+        valid=valid,
+    )
+
+
+def _unsteadiness(followed: Followed, one: Candidate) -> tuple[float, float]:
+    """How unevenly each set seems to lie, relative to its density."""
+    across, down = (
+        count(phase, followed, vector)
+        for phase, vector in ((followed.ends, one.ends), (followed.picks, one.picks))
+    )
+    return (
+        math.inf if across is None else across.irregular + across.broken,
+        math.inf if down is None else down.irregular + down.broken,
+    )
 
 
 def _scaled(one: Candidate, ends: Fraction, picks: Fraction) -> Candidate:
