@@ -6,6 +6,8 @@ import math
 from dataclasses import dataclass, replace
 from fractions import Fraction
 
+import numpy as np
+
 from imgcover.repeat.phase import Transformed, transform
 from imgcover.repeat.spectrum import Peak, Spectrum, peaks, spectrum
 from imgcover.threads.candidates import Candidate, candidates
@@ -33,8 +35,8 @@ STEADY = 0.0015
 STEADIER = 0.7
 """Outlines are noisier than the light, so they must be this much steadier to be followed instead."""
 
-SEEN_BY_BOTH = 0.5
-"""Share of what the light shows that must be left: a steadier count of a corner is no gain."""
+SEEN_WELL = 0.65
+"""Share of the field in which threads are followed; with less of it too many tiles are unclear."""
 
 PAIRED = 0.3
 """Share of a thread's own line that its half line reaches where threads lie in pairs."""
@@ -177,35 +179,35 @@ def _track(
 
 
 def _steadiest(field: Field, one: Candidate, plain: Followed, sigma: float) -> Followed:
-    """Follow the threads' outlines instead, where their light is unsteady and those are steadier.
+    """Follow the threads' outlines too, where their light is unsteady, and keep what is steadier.
 
-    Each set is taken from where it is steadier: stripes along one set leave the other alone.
+    Each set may be taken from where it is steadier: stripes along one set leave the other alone.
     """
-    unsteady = _unsteadiness(plain, one)
-    if max(unsteady) < STEADY:
+    if max(_unsteadiness(plain, one)) < STEADY and plain.valid.mean() > SEEN_WELL:
         return plain
     period = max(one.pixels)
     drawn = outlines(field, period)
     seen = spectrum(windows_of(drawn, min(WINDOW, *drawn.light.shape)))
     flat = transform(flattened(drawn.light, period), margin=math.ceil(4 * sigma))
     other = follow(flat, one.ends, one.picks, lines=lines_of(one, seen), sigma=sigma)
-    if other is None or other.valid.sum() < SEEN_BY_BOTH * plain.valid.sum():
+    if other is None:
         return plain
-    ends, picks = (
-        again < STEADIER * before
-        for before, again in zip(unsteady, _unsteadiness(other, one), strict=True)
-    )
-    if ends and picks:
-        return other
-    valid = plain.valid & other.valid
-    if not (ends or picks) or valid.sum() < SEEN_BY_BOTH * plain.valid.sum():
-        return plain
-    return replace(
+    both = plain.valid & other.valid
+    offered = [
         plain,
-        ends=other.ends if ends else plain.ends,
-        picks=other.picks if picks else plain.picks,
-        valid=valid,
-    )
+        other,
+        replace(plain, ends=other.ends, valid=both),
+        replace(plain, picks=other.picks, valid=both),
+    ]
+    doubts = [_doubt(each, one) for each in offered]
+    best = int(np.argmin(doubts))
+    return offered[best] if doubts[best] < STEADIER * doubts[0] else plain
+
+
+def _doubt(followed: Followed, one: Candidate) -> float:
+    """Unsteadiness of the worse set; a view that has lost sight of the field comes last."""
+    blind = followed.valid.mean() < SEEN_WELL
+    return max(_unsteadiness(followed, one)) + (1.0 if blind else 0.0)
 
 
 def _unsteadiness(followed: Followed, one: Candidate) -> tuple[float, float]:

@@ -80,6 +80,10 @@ DIAGONAL = (
 LARGEST_U = 0.0075
 """A count looser than this has lost its threads somewhere, and decides nothing."""
 
+HALF_A_THREAD, LARGEST_U_THEN = 0.25, 0.005
+"""Threads of u from which on a whole thread more or less is not excluded (2 u is half a thread), and
+the relative u from which on that matters: among hundreds of threads it does not."""
+
 
 class Plain:
     """An array of linear light, as a light source."""
@@ -225,7 +229,8 @@ def _read(seen: Identified, region: Region, warp: Direction) -> ThreadReading:
 
 
 def _lost(each: ThreadSet) -> bool:
-    return each.u_relative > LARGEST_U or each.local_scatter > LARGEST_SCATTER
+    unsure = each.u_relative * each.counted > HALF_A_THREAD and each.u_relative > LARGEST_U_THEN
+    return unsure or each.u_relative > LARGEST_U or each.local_scatter > LARGEST_SCATTER
 
 
 def _weak(each: ThreadSet) -> bool:
