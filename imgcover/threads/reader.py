@@ -70,6 +70,9 @@ EDGE = 1.7
 """How far the outermost threads stray, in units of the phase's unevenness from place to place:
 fitted so that 2 u covers 95 % of counted truth (tests/threads/sweep_threads.py)."""
 
+TURN = 0.5
+"""Share of the tiles' scatter by which two ways of averaging a field turned by 45 degrees differ."""
+
 FOLDED = "the strongest pattern is as fine as the pixels themselves: threads may be folded over"
 
 DIAGONAL = (
@@ -283,6 +286,9 @@ def _set(
     zoom = seen.origin.zoom
     local = local_density(phase, followed, pieces, frequency)
     parts = _parts(counted)
+    # lines across turned cloth each meet other threads, and their mean is that of a sample
+    turned = abs(math.sin(2 * math.atan2(frequency[1], frequency[0])))
+    parts["turn"] = TURN * turned * local.scatter / math.sqrt(len(pieces.blocks))
     return ThreadSet(
         frequency=(counted.frequency[0] / zoom, counted.frequency[1] / zoom),
         counted=counted.counted,
