@@ -112,7 +112,7 @@ def follow(
     unwrapped = np.stack([_unwrapped(phases[k], solid) for k in (one, two)])
     both = np.einsum("ij,jrc->irc", np.linalg.inv(base), unwrapped)
     both, agreement = _all_lines(both, phases, relative, lines, solid)
-    valid = _largest(solid & agreement & ~_beside_bare(solid))
+    valid = _largest(solid & agreement)
     return Followed(both[0], both[1], valid, x, y, strength, float(typical.max()))
 
 
@@ -136,13 +136,6 @@ def _centroids(
 def _below(at: NDArray[np.float64]) -> NDArray[np.float64]:
     """Share of a standard Gaussian that lies below each place."""
     return np.array([math.erfc(-each / math.sqrt(2)) / 2 for each in at.tolist()])
-
-
-def _beside_bare(solid: NDArray[np.bool_]) -> NDArray[np.bool_]:
-    """Places next to where no threads are: the step at the cloth's edge bends their phase."""
-    around = np.ones((3, 3), np.uint8)
-    bare = cv2.morphologyEx((~solid).astype(np.uint8), cv2.MORPH_OPEN, around)
-    return np.asarray(cv2.dilate(bare, around) > 0)
 
 
 def _largest(mask: NDArray[np.bool_]) -> NDArray[np.bool_]:
@@ -213,4 +206,4 @@ def _all_lines(
     return both + np.moveaxis(step, -1, 0), spread / np.maximum(total, 1e-12) < 0.2
 
 
-__all__ = ["Followed", "Line", "follow"]
+__all__ = ["STRONG_ENOUGH", "Followed", "Line", "follow"]

@@ -18,7 +18,15 @@ from imgcover.threads.follow import Followed
 from imgcover.threads.identify import Identified, identify, taken_as
 from imgcover.threads.profile import amplitudes
 from imgcover.threads.reading import Fork, ThreadReading, ThreadSet, Tile, Track
-from imgcover.threads.regions import UNCLEAR, Pieces, bow_of, divide, local_density, without_strays
+from imgcover.threads.regions import (
+    UNCLEAR,
+    Pieces,
+    away_from_bare,
+    bow_of,
+    divide,
+    local_density,
+    without_strays,
+)
 from imgcover.threads.tie import settled
 from imgcover.threads.woven import crossing
 from imgcover.weave import Weave
@@ -189,6 +197,8 @@ def _refused(*findings: Finding, tiles: tuple[Tile, ...] = ()) -> ThreadReading:
 def _read(seen: Identified, region: Region, warp: Direction) -> ThreadReading:
     one, followed = seen.candidate, seen.followed
     period = max(one.pixels)
+    clear_of_bare = away_from_bare(followed, seen.origin.light, period)
+    followed = dataclasses.replace(followed, valid=clear_of_bare)
     pieces = divide(followed, period, seen.origin.light.shape)
     clear = len(pieces.blocks)
     pieces = without_strays(followed, pieces, one.ends, one.picks)
