@@ -164,4 +164,13 @@ def _smooth(array: NDArray[np.float32], sigma: float) -> NDArray[np.float32]:
     return array
 
 
-__all__ = ["Field", "LightSource", "Region", "field_of", "flattened", "outlines", "whole", "windows_of"]
+__all__ = [
+    "Field",
+    "LightSource",
+    "Region",
+    "field_of",
+    "flattened",
+    "outlines",
+    "whole",
+    "windows_of",
+]
