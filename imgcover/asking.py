@@ -1,23 +1,31 @@
-"""How each room is asked: from the options of a request to what the room takes."""
+"""How each room is asked: from the options of a request to what the room takes.
+
+Rooms are loaded when they are first asked: what finds rules, sheets and certificates is seldom
+needed and takes as long to load as a small picture to count; the rest is loaded by `getting_ready`
+while the picture is decoded, which leaves Python free.
+"""
 
 from __future__ import annotations
 
+from collections.abc import Iterator
+from contextlib import contextmanager
 from dataclasses import astuple, dataclass, replace
 from datetime import UTC, datetime
 from functools import lru_cache
+from importlib import import_module
 from pathlib import Path
+from threading import Thread
 from typing import TYPE_CHECKING
 
 import numpy as np
 from numpy.typing import NDArray
 
-from imgcover.cover.reader import read_cover
 from imgcover.cover.reading import CoverReading, Lattice, Pitch
 from imgcover.errors import OptionError, PictureError
 from imgcover.findings import Finding, Flag, found, has
 from imgcover.picture.picture import Picture
 from imgcover.picture.reader import read_picture
-from imgcover.request import Options
+from imgcover.request import Enclosed, Options
 from imgcover.scale.choice import choose_scale
 from imgcover.scale.clear import clear_part
 from imgcover.scale.pitch import scale_from
@@ -25,7 +33,6 @@ from imgcover.scale.rule_class import RuleClass
 from imgcover.scale.scale import Scale
 from imgcover.threads.density import Density, density_of
 from imgcover.threads.field import Region
-from imgcover.threads.reader import read_threads
 from imgcover.threads.reading import ThreadReading
 from imgcover.tone import Tone
 from imgcover.weave import weave
@@ -35,11 +42,28 @@ if TYPE_CHECKING:
     from imgcover.scale.rule_scale import RuleScale
     from imgcover.scale.sheet_scale import SheetScale
 
-# what finds rules, sheets and certificates is loaded when it is asked for: few pictures have any,
-# and loading it takes as long as counting a small picture
-
 SWAPPED_FROM = 5
 """From this orientation on, stored columns became shown rows (TIFF 6.0, tag 274)."""
+
+
+ALWAYS_ASKED = ("imgcover.threads.reader", "imgcover.cover.reader")
+"""Every picture that can be read comes to these rooms."""
+
+
+@contextmanager
+def getting_ready() -> Iterator[None]:
+    """Load the rooms that every picture comes to beside what is done meanwhile."""
+
+    def load() -> None:
+        for room in ALWAYS_ASKED:
+            import_module(room)
+
+    beside = Thread(target=load)
+    beside.start()
+    try:
+        yield
+    finally:
+        beside.join()
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -100,7 +124,7 @@ def _sheet(picture: Picture, options: Options) -> SheetScale | None:
     return measure_sheet(picture, options.bars)
 
 
-def certificate(device: str | None) -> Certificate | None:
+def certificate(device: str | Enclosed | None) -> Certificate | None:
     """Read the certificate that names the device, or is the file.
 
     Raises
@@ -112,6 +136,8 @@ def certificate(device: str | None) -> Certificate | None:
         return None
     from imgcover.scale.certificate import find_certificate, read_certificate
 
+    if isinstance(device, Enclosed):
+        return read_certificate(device.content, name=device.name)
     path = find_certificate(device)
     return read_certificate(path, name=path.name)
 
@@ -170,6 +196,8 @@ def count_threads(
         (picture.rows, picture.columns),
         within=astuple(region),
     )
+    from imgcover.threads.reader import read_threads
+
     return read_threads(
         picture,
         warp=options.warp,
@@ -203,6 +231,8 @@ def measure_cover(
     for taken in (blank, dark):
         if taken is not None and taken.stored.shape[:2] != picture.stored.shape[:2]:
             return CoverReading(findings=(_other_size(taken, picture),))
+    from imgcover.cover.reader import read_cover
+
     lattice, warp_across = _lattice(threads)
     reading = read_cover(
         picture,
@@ -217,7 +247,7 @@ def measure_cover(
     return reading if warp_across else _exchanged(reading)
 
 
-def exposure(path: Path | None, tone: Tone | None) -> Picture | None:
+def exposure(path: Path | Enclosed | None, tone: Tone | None) -> Picture | None:
     """Read a blank or dark exposure, once for all pictures that share it.
 
     Raises
@@ -227,6 +257,8 @@ def exposure(path: Path | None, tone: Tone | None) -> Picture | None:
     """
     if path is None:
         return None
+    if isinstance(path, Enclosed):
+        return _exposure(path, tone, 0, 0)
     try:
         state = path.stat()
     except OSError as fault:
@@ -237,10 +269,11 @@ def exposure(path: Path | None, tone: Tone | None) -> Picture | None:
 
 
 @lru_cache(maxsize=4)
-def _exposure(path: Path, tone: Tone | None, changed_ns: int, size: int) -> Picture:
+def _exposure(path: Path | Enclosed, tone: Tone | None, changed_ns: int, size: int) -> Picture:
     """The file's time and size are part of the key: a watched folder may replace it."""
+    source = path.content if isinstance(path, Enclosed) else path
     try:
-        return read_picture(path, name=path.name, tone=tone)
+        return read_picture(source, name=path.name, tone=tone)
     except PictureError as fault:
         raise OptionError(path.name, fault.fault, fault.remedy) from fault
 
@@ -291,6 +324,7 @@ __all__ = [
     "density_in",
     "exposure",
     "find_scale",
+    "getting_ready",
     "measure_cover",
     "noticed",
 ]

@@ -19,6 +19,7 @@ from imgcover.asking import (
     density_in,
     exposure,
     find_scale,
+    getting_ready,
     measure_cover,
     noticed,
 )
@@ -76,7 +77,8 @@ def inspect(request: Request) -> Inspection:
     options, declaration = request.options, request.declaration
     answers = _asked(request)
     try:
-        picture = read_picture(request.source, name=request.name, tone=options.tone)
+        with getting_ready():
+            picture = read_picture(request.source, name=request.name, tone=options.tone)
     except PictureError as fault:
         return _judged(_unread(answers, request, fault), request)
     scale = find_scale(picture, options)

@@ -40,6 +40,24 @@ HIGHEST_RISK = 0.5
 """A risk of one half or more would let anything through."""
 
 
+@dataclass(frozen=True, slots=True)
+class Enclosed:
+    """A file that an option names, as it travels to a machine that does not see it.
+
+    Parameters
+    ----------
+    name : str
+        The file's, without its folder.
+    sha256 : str
+        Of the content, which is not compared again.
+    content : bytes
+    """
+
+    name: str
+    sha256: str
+    content: bytes = field(compare=False, repr=False)
+
+
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Options:
     """How a picture is to be read and judged.
@@ -54,13 +72,13 @@ class Options:
         Whether a rule is to be found, of which unit and class.
     sheet, bars : bool, Bars or None
         Whether the printed sheet is to be found, and its bars as measured.
-    device : str or None
+    device : str, Enclosed or None
         Name or path of the device's certificate.
     metadata : bool
         Whether the file's own claim may be the scale.
     tone : Tone or None
         None: as the file says, else sRGB.
-    blank, dark : Path or None
+    blank, dark : Path, Enclosed or None
         Exposures without cloth and without light.
     backing : str or None
         Of a swatch on a card.
@@ -81,11 +99,11 @@ class Options:
     rule_class: int = 2
     sheet: bool = False
     bars: Bars | None = None
-    device: str | None = None
+    device: str | Enclosed | None = None
     metadata: bool = False
     tone: Tone | None = None
-    blank: Path | None = None
-    dark: Path | None = None
+    blank: Path | Enclosed | None = None
+    dark: Path | Enclosed | None = None
     backing: Backing | None = None
     gsm: Measured | None = None
     region: Region | None = None
@@ -256,5 +274,5 @@ def _risk(text: str | None) -> float | None:
 
 
 __all__ = [
-    *("Backing", "Light", "Options", "Request", "RuleUnit", "Warp", "read_options"),
+    *("Backing", "Enclosed", "Light", "Options", "Request", "RuleUnit", "Warp", "read_options"),
 ]

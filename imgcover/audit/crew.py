@@ -84,12 +84,12 @@ class LocalCrew:
     ) -> Iterator[tuple[Done[Answer] | Lost, Load]]:
         underway: dict[int, Load] = {}
         try:
-            while True:
+            self._hand_out(work, loads, most, underway)
+            while underway:
+                done = [(outcome, underway.pop(outcome.index)) for outcome in self._gather()]
+                # first give out, then tell: nobody waits while what was done is written down
                 self._hand_out(work, loads, most, underway)
-                if not underway:
-                    return
-                for outcome in self._gather():
-                    yield outcome, underway.pop(outcome.index)
+                yield from done
         finally:
             # left in the middle: what is underway belongs to nobody any more
             for hand in [hand for hand in self._hands if hand.index is not None]:

@@ -17,7 +17,7 @@ from imgcover.errors import DeclarationError, ImgcoverError, LotSheetError
 from imgcover.findings import Finding, Flag, found
 from imgcover.ledger.canonical import canonical
 from imgcover.ledger.record import Sample
-from imgcover.request import Options, read_options
+from imgcover.request import Enclosed, Options, read_options
 
 FILE_WORDS = ("blank", "dark", "device")
 """Options that name files; in a lot sheet they must lie inside the audited folder."""
@@ -74,7 +74,7 @@ class OrderBook:
         self.versions = dict(versions)
         self._options: dict[tuple[tuple[str, str], ...], Options] = {}
         self._declarations: dict[Path, Declaration | DeclarationError] = {}
-        self._certificates: dict[str, tuple[str, bool]] = {}
+        self._certificates: dict[str | Enclosed, tuple[str, bool]] = {}
         self._digests: dict[Path, str] = {}
 
     @property
@@ -142,7 +142,7 @@ class OrderBook:
         }
         return hashlib.sha256(canonical(parts).encode("utf-8", "backslashreplace")).hexdigest()
 
-    def _certificate(self, device: str | None) -> tuple[str, bool] | None:
+    def _certificate(self, device: str | Enclosed | None) -> tuple[str, bool] | None:
         """What a certificate holds, and whether it is valid today: both can touch a decision."""
         if device is None:
             return None
@@ -153,10 +153,12 @@ class OrderBook:
             self._certificates[device] = (held.sha256, valid)
         return self._certificates[device]
 
-    def _digest(self, path: Path | None) -> str | None:
+    def _digest(self, path: Path | Enclosed | None) -> str | None:
         """Hash a file that pictures share; one that cannot be read stands for itself."""
         if path is None:
             return None
+        if isinstance(path, Enclosed):
+            return path.sha256
         if path not in self._digests:
             try:
                 self._digests[path] = hashlib.sha256(read_file(path.resolve())).hexdigest()

@@ -7,16 +7,17 @@ from __future__ import annotations
 
 import json
 from collections.abc import Callable, Iterator
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from enum import StrEnum
 from typing import Any
 
 from imgcover.audit.digests import Digests
 from imgcover.audit.folder import Listing
-from imgcover.audit.grounds import OffGroundsError, read_file
+from imgcover.audit.grounds import OffGroundsError
 from imgcover.audit.orders import Order, OrderBook
 from imgcover.audit.out_folder import OutFolder
 from imgcover.audit.outcome import Crew, Done, Loss, Lost
+from imgcover.audit.packing import packed
 from imgcover.audit.sequence import Sequence
 from imgcover.audit.work import Answer, lost_answer
 from imgcover.ledger.chain import Entry
@@ -78,7 +79,7 @@ class Round:
     fresh : bool
         Measure also what is known.
     send : bool
-        Read pictures here and send what they hold: the workers do not see this disk.
+        Read files here and send what they hold: the workers do not see this disk.
     """
 
     listing: Listing
@@ -126,7 +127,7 @@ def measure_all(round_: Round, crew: Crew, *, work: Callable[[Order], Answer]) -
     def loads() -> Iterator[tuple[int, Order]]:
         for index in unknown:
             orders[index] = round_.book.order(round_.listing.pictures[index])
-            yield index, _packed(orders[index]) if round_.send else orders[index]
+            yield index, packed(orders[index]) if round_.send else orders[index]
 
     for outcome in crew.run(work, loads()):
         entry, how, said = _kept(round_, orders.pop(outcome.index), outcome)
@@ -161,16 +162,6 @@ def _known(round_: Round, index: int, order: Order) -> Entry | None:
     except OffGroundsError:
         return None
     return round_.ledger.find(subject, round_.book.key(order, digest))
-
-
-def _packed(order: Order) -> Order:
-    """Put what a picture's file holds into its order."""
-    if order.path is None:
-        return order
-    try:
-        return replace(order, content=read_file(order.path))
-    except OffGroundsError as fault:
-        return replace(order, path=None, fault=str(fault))
 
 
 def record_in(entry: Entry) -> dict[str, Any]:

@@ -13,7 +13,7 @@ from imgcover.cover.places import Places
 
 Floats = NDArray[np.float64]
 
-ROUNDNESS, ROUNDNESS_U = 0.33, 0.12
+ROUNDNESS, ROUNDNESS_U = 0.30, 0.10
 """Cross-section expected where the picture cannot tell: a round yarn (0.5) and a flat ribbon (0.1)
 are both within two standard uncertainties."""
 BLUR, BLUR_U = 0.8, 0.8
@@ -28,7 +28,7 @@ EXCESS = 1.5
 """What the fit takes for noise is mostly uneven yarn, blurred: it errs alike over about as many
 pixels as the blur covers, and in every pore. What the picture says of the shared unknowns counts
 so many times less again (tests/cover/sweep_cover.py)."""
-FINEST = 0.0015
+FINEST = 0.0008
 """Share of the light that the fit's idea of a yarn is true to: an error that all pores share."""
 GLARE_U = 0.02
 """Glare, a share of the light, is seldom more: a dark room and a clean glass give less."""

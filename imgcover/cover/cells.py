@@ -73,10 +73,7 @@ def cells_of(places: Places, fitted: Fitted) -> Cells:
     down = _sides(
         fitted.edges[:, 2:4], places.above, places.above_lacks, places.row, fitted.optics.picks
     )
-    whole = np.all(places.beside_lacks[:, 1::2] == 0, axis=1)
-    whole &= np.all(places.above_lacks[:, 1::2] == 0, axis=1)
-    if whole.sum() < len(whole) / 8:
-        whole[:] = True
+    whole = places.whole
     return Cells(
         width=across[0][whole],
         height=down[0][whole],

@@ -20,17 +20,22 @@ Floats = NDArray[np.float64]
 
 MOST_LEAN = 0.4
 """Neither leans nor densities can be followed further than this."""
-FLATTEST, ROUNDEST = 0.05, 0.65
-"""Limits of the roundness: a ribbon with steep edges, and a yarn that thins towards its rim."""
+FLATTEST, ROUNDEST = 0.05, 0.5
+"""Limits of the roundness: a ribbon with steep edges, and a round yarn; what fades more slowly than
+that towards its rim is hairs, which are not counted as cover."""
+THINNEST, DENSEST = 0.2, 9.0
+"""Limits of a yarn's depth: one lets 82 % of the light through, the other nothing."""
 SHARPEST = 0.05
 """The least blur, px: below it the pixel's own aperture is all that is seen."""
+CLEANEST = 5e-4
+"""The least misfit that a pixel may be trusted to: no file of 8 bits is truer in linear light."""
 OUTLYING = 6.0
 """Pores that fit this many times worse than the usual one (mean square) count less."""
-STARTS = (1.0, 1.5)
+STARTS = (1.4, 1.0)
 """Bare light over the brightest pores that the fit starts from: small pores never reach it."""
 FAIR = 0.02
 """Misfit over the light of an explanation that is fair: no other start need be tried."""
-FIRST_ROUNDS, ROUNDS = 6, 12
+FIRST_ROUNDS, ROUNDS = 6, 18
 """Steps while edges keep together, and steps at most after that: six or seven settle."""
 HELD = 0.1
 """At first edges keep together and the section is held: light, blur and depth come first."""
@@ -174,7 +179,7 @@ class Fit:
         off = off * counts
         square = np.sum(off**2, axis=(1, 2), dtype=np.float64)
         square = square / np.maximum(1, counts.sum(axis=(1, 2)))
-        usual = max(float(np.median(square)), 1e-10)
+        usual = max(float(np.median(square)), CLEANEST**2)
         weight = 1 / np.maximum(square / (OUTLYING * usual), 1)
         products = multiply(expected, off, counts)
         gram, toward = products.gram * weight[:, None, None], products.toward * weight[:, None]
@@ -205,7 +210,8 @@ class Fit:
         """Move everything once; the third value says how far light and blur have moved."""
         normal = self._normal(edges, optics, loose)
         alone, carried, matrix, toward = normal.solved(DAMPING)
-        change = np.asarray(np.linalg.solve(matrix + 1e-7 * np.diag(np.diag(matrix)), toward))
+        stiff = matrix + 1e-7 * np.diag(np.diag(matrix))
+        change = _bounded(stiff, toward, *_limits(optics))
         change = change * min(1.0, 1 / float(np.max(np.abs(change) / MOST)))
         moved = alone - carried @ change
         reach = 0.12 * min(self._pitch)
@@ -244,17 +250,44 @@ class Fit:
         )
 
 
+def _bounded(matrix: Floats, toward: Floats, low: Floats, high: Floats) -> Floats:
+    """Solve for steps between limits; what would leave them is held there, and the rest follows."""
+    change, held = np.zeros(len(toward)), np.zeros(len(toward), np.bool_)
+    while not held.all():
+        free = ~held
+        rest = toward - matrix[:, held] @ change[held]
+        change[free] = np.linalg.solve(matrix[np.ix_(free, free)], rest[free])
+        beyond = (change < low) | (change > high)
+        if not beyond.any():
+            break
+        change = np.clip(change, low, high)
+        held |= beyond
+    return change
+
+
+def _limits(optics: Optics) -> tuple[Floats, Floats]:
+    """Say how far what is shared may move down and up."""
+    free = np.full(TERMS, np.inf)
+    depths = np.array([optics.ends.depth, optics.picks.depth])
+    here = np.array([optics.blur_px, optics.ends.roundness, optics.glare])
+    low, high = np.array([SHARPEST, FLATTEST, 0.0]) - here, np.array([np.inf, ROUNDEST, np.inf])
+    thinner, denser = THINNEST / depths - 1, DENSEST / depths - 1
+    return (
+        np.concatenate([-free, low[:1], thinner, low[1:]]),
+        np.concatenate([free, high[:1], denser, high[1:] - here[1:]]),
+    )
+
+
 def _moved(optics: Optics, change: Floats) -> Optics:
-    """Step what is shared, within what is possible."""
+    """Step what is shared."""
     blur, ends, picks, rounder, glare = (float(each) for each in change[TERMS:])
-    roundness = min(max(optics.ends.roundness + rounder, FLATTEST), ROUNDEST)
     yarns = [
-        replace(yarn, depth=min(max(yarn.depth * (1 + deeper), 0.2), 9.0), roundness=roundness)
+        replace(yarn, depth=yarn.depth * (1 + deeper), roundness=yarn.roundness + rounder)
         for yarn, deeper in ((optics.ends, ends), (optics.picks, picks))
     ]
     return Optics(
         light=optics.light + change[:TERMS],
-        blur_px=max(SHARPEST, optics.blur_px + blur),
+        blur_px=optics.blur_px + blur,
         ends=yarns[0],
         picks=yarns[1],
         glare=max(0.0, optics.glare + glare),

@@ -17,7 +17,8 @@ from imgcover.cover.pores import describe_pores
 from imgcover.cover.reading import CoverReading, Lattice, Pitch
 from imgcover.cover.shown import shown
 from imgcover.cover.surface import Surface
-from imgcover.cover.windows import PART_CELLS, Window, cell_sides, whole_periods
+from imgcover.cover.systems import each_system
+from imgcover.cover.windows import Window, whole_periods
 from imgcover.cover.witnesses import between_windows, edge_bias, open_share, weighted
 from imgcover.findings import Finding, Flag, found
 from imgcover.quantity import Measured
@@ -27,15 +28,19 @@ EXPLAINED = 0.97
 backlit cloth, at most 0.94 on the same cloth in reflected light."""
 FLOOR = 0.0015
 """What drawn cloths of known cover are off by where nothing else speaks (sweep_cover.py)."""
-BLURRED = 0.03
-"""Cover of pores without clear edges is uncertain by this over the cube of how many blurs fit into
-a pore (sweep_cover.py): 0.4 points for two, 0.9 for one and a half."""
+BLURRED = 0.003
+"""Cover of pores without clear edges is uncertain by this over the square of how many blurs fit
+into a pore (sweep_cover.py): 0.1 points for one and a half, 0.5 for three quarters."""
 PIXEL_BLUR = 0.29
 """Standard deviation of a pixel's own aperture: 1 / √12 px."""
 FEWEST_BLURS = 1.5
 """Pores smaller than so many blurs can leave a fit astray on any backlit cloth."""
-LEAST_SURE = 0.010
-"""A cover less sure than this is refused: pores so small leave light and blur to be guessed."""
+LEAST_SURE = 0.006
+"""A cover less sure than this is refused: threads and pores so small leave the section of the yarns
+to be guessed, and with it where they end."""
+MOST_MISFIT = 0.008
+"""Misfit common to all pores is refused beyond this only: fuzz on well resolved yarns shows up to
+0.0075, and the cover was still within 0.5 points (sweep_cover.py)."""
 MOST_BIAS = 0.25
 """Where blur makes the half-level edge miss more of the open area, the edge is no witness."""
 APART = 0.015
@@ -74,11 +79,21 @@ class _Witnessed:
 
     @property
     def u(self) -> float:
-        """One standard uncertainty: the fit's, the field's, and the witnesses' difference."""
+        """One standard uncertainty."""
+        return math.hypot(self._u_read, self.u_misfit)
+
+    @property
+    def sure(self) -> bool:
+        """Whether this is sure enough to be told."""
+        return self._u_read <= LEAST_SURE and self.u_misfit <= MOST_MISFIT
+
+    @property
+    def _u_read(self) -> float:
+        """Of what was read: the fit's, the field's, and the witnesses' difference."""
         apart = self.cover - self.two_level
         if self.threshold is None:
-            apart = BLURRED / self.blurs**3
-        return math.hypot(self.u_fit, self.u_windows, self.u_misfit, self.u_guessed, apart, FLOOR)
+            apart = BLURRED / self.blurs**2
+        return math.hypot(self.u_fit, self.u_windows, self.u_guessed, apart, FLOOR)
 
 
 def by_openings(
@@ -142,7 +157,7 @@ def by_openings(
         u_misfit=_common_misfit(places, fitted, bare),
         u_guessed=GUESSED * guessed,
     )
-    if witnessed.u > LEAST_SURE:
+    if not witnessed.sure:
         return _not_resolved(reading, windows, witnessed, light_known)
     reading = replace(
         reading,
@@ -162,7 +177,7 @@ def _answered(
 ) -> CoverReading:
     """Put the figures into the reading, and say what is to be said of them."""
     cover, u = witnessed.cover, witnessed.u
-    warp, weft = _systems(cells, lattice, cover, u)
+    warp, weft = each_system(cells, lattice, cover=cover, u=u)
     findings: list[Finding] = []
     if witnessed.threshold is not None and abs(witnessed.threshold - witnessed.two_level) > APART:
         findings.append(found(Flag.COVER_WITNESSES_DISAGREE))
@@ -238,26 +253,6 @@ def _not_resolved(
     )
     return replace(
         reading, upper_bound_open=bound, findings=(found(Flag.COVER_NOT_RESOLVED, message),)
-    )
-
-
-def _systems(cells: Cells, lattice: Lattice, cover: float, u: float) -> tuple[Measured, Measured]:
-    """Each system's own share of the width, its threads' widths measured in parts of the field.
-
-    The widths of all threads are brought to agree with the cover of the whole field.
-    """
-    systems = []
-    for pitch, widths in zip(
-        cell_sides(lattice), (cells.end_widths, cells.pick_widths), strict=True
-    ):
-        # The cells of one thread in one part share its width: they count as one.
-        u_widths = float(widths.std()) / math.sqrt(widths.size / PART_CELLS)
-        systems.append((1 - float(widths.mean()) / pitch, u_widths / pitch))
-    (gap_x, u_x), (gap_y, u_y) = systems
-    wider = math.sqrt(max(0.0, 1 - cover) / max(gap_x * gap_y, 1e-9))
-    return (
-        Measured(1 - gap_x * wider, math.hypot(u_x, u), "1"),
-        Measured(1 - gap_y * wider, math.hypot(u_y, u), "1"),
     )
 
 

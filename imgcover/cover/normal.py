@@ -12,7 +12,7 @@ from imgcover.cover.places import Places
 
 Floats = NDArray[np.float64]
 
-CONJUGATES, CLOSE = 25, 1e-4
+CONJUGATES, CLOSE = 40, 1e-6
 """Conjugate gradient steps at most, and the remaining error (squared) at which they may stop."""
 
 
@@ -147,10 +147,11 @@ class Normal:
         block = block + self.meets.gather_diagonal(self.gram)[..., None] * np.eye(LOCAL)
         stiff = damping * np.einsum("naa->na", block)[..., None]
         inverse = np.linalg.inv(block + stiff * np.eye(LOCAL))
+        gram = self.gram.copy()
+        gram[:, :LOCAL, :LOCAL] += self.expected + stiff * np.eye(LOCAL)
 
         def apply(own: Floats) -> Floats:
-            seen = self.gram @ self.meets.spread(own)
-            return np.asarray(self.meets.gather(seen) + self.expected @ own + stiff * own)
+            return self.meets.gather(gram @ self.meets.spread(own))
 
         answer = inverse @ wanted
         rest = wanted - apply(answer)
@@ -179,6 +180,13 @@ class Meets:
             (places.above[:, 1], 3),
             (places.above[:, 3], 2),
         )
+        # a pore stands in for the neighbour it lacks; of the others no two have the same
+        alone = [pore == np.arange(len(pore)) for pore, _ in self._far]
+        self._onto = [
+            (pore[mine], edge, LOCAL + k, mine)
+            for k, (pore, edge) in enumerate(self._far)
+            for mine in (np.flatnonzero(alone[k]), np.flatnonzero(~alone[k]))
+        ]
 
     def spread(self, own: Floats) -> Floats:
         """Give each patch its own unknowns and the far ones: (n, 12, k) to (n, 16, k)."""
@@ -188,8 +196,8 @@ class Meets:
     def gather(self, seen: Floats) -> Floats:
         """Add up for each pore what its edges do in all patches: (n, 16, k) to (n, 12, k)."""
         own = seen[:, :LOCAL].copy()
-        for k, (pore, edge) in enumerate(self._far):
-            np.add.at(own[:, edge], pore, seen[:, LOCAL + k])
+        for pore, edge, far, mine in self._onto:
+            own[pore, edge] += seen[mine, far]
         return own
 
     def gather_diagonal(self, gram: Floats) -> Floats:

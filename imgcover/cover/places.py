@@ -54,6 +54,13 @@ class Places:
     beside_lacks: NDArray[np.float64]
     above_lacks: NDArray[np.float64]
 
+    @property
+    def whole(self) -> NDArray[np.bool_]:
+        """Pores all of whose edges are seen: the four next to each are known; all if few are."""
+        whole = np.all(self.beside_lacks[:, 1::2] == 0, axis=1)
+        whole &= np.all(self.above_lacks[:, 1::2] == 0, axis=1)
+        return whole if whole.sum() >= len(whole) / 8 else np.ones(len(whole), np.bool_)
+
 
 def pore_places(windows: list[Window], lattice: Lattice) -> Places:
     """Find the pores of every window by following the phase of both thread repeats.

@@ -18,7 +18,7 @@ FINER = 4
 """Sub-pixels a pixel for the half-level edge: the edge is then placed to a few hundredths px."""
 ROUNDS = 4
 """Levels and edge depend on each other; after three rounds neither moves by 0.0001."""
-CLEAR = 2.5
+CLEAR = 2.0
 """Standard deviations of the blur from the edge at which a level is free of the other."""
 FEWEST_CLEAR = 200
 """Pixels clear of any edge that a level must rest on: fewer are all rim."""
@@ -69,7 +69,7 @@ def two_levels(windows: list[Window], shares: list[Floats], weights: list[Floats
     """
     values = np.concatenate([s[w > 0] for s, w in zip(shares, weights, strict=True)])
     low, high = (float(q) for q in np.quantile(values, (0.02, 0.995)))
-    blur, scatter = 0.5, 0.0
+    blur, scatter = 0.4, 0.0
     for _ in range(ROUNDS):
         middle = (low + high) / 2
         found = _clear_levels(windows, shares, middle, CLEAR * blur)
@@ -100,9 +100,8 @@ def _clear_levels(
     """Levels of what lies further than `reach` px from every edge, and the open one's scatter."""
     bright, dark = [], []
     for window, share in zip(windows, shares, strict=True):
-        above = (share > middle).astype(np.uint8)
-        inner = cv2.distanceTransform(above, cv2.DIST_L2, 5) > reach + 1
-        outer = cv2.distanceTransform(1 - above, cv2.DIST_L2, 5) > reach + 1
+        above = share > middle
+        inner, outer = (_clearance(each) > reach + 1 for each in (above, ~above))
         bright.append(share[inner & window.inside])
         dark.append(share[outer & window.inside])
     above_all, below_all = np.concatenate(bright), np.concatenate(dark)
@@ -110,6 +109,12 @@ def _clear_levels(
         return None
     high = float(np.median(above_all))
     return high, float(np.mean(below_all)), float(np.std(above_all)) / high
+
+
+def _clearance(mask: NDArray[np.bool_]) -> Floats:
+    """Distance to the nearest edge, px; beyond the rim of the window there may be one."""
+    ringed = np.pad(mask.astype(np.uint8), 1)
+    return np.asarray(cv2.distanceTransform(ringed, cv2.DIST_L2, 5)[1:-1, 1:-1], np.float32)
 
 
 def _blur(shares: list[Floats], high: float, low: float) -> float:

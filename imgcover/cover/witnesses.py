@@ -68,8 +68,11 @@ def edge_bias(places: Places, fitted: Fitted, bare: NDArray[np.float64], level: 
         :, None, None
     ]
     inside = open_share(share, level)
-    seen = float(np.sum(inside * own_pixels(places, fitted), dtype=np.float64))
-    true = float(np.sum(fitted.width * fitted.height))
+    # Where an edge is not seen the fit and the picture may be of two minds about it.
+    whole = places.whole
+    own = (inside * own_pixels(places, fitted))[whole]
+    seen = float(np.sum(own, dtype=np.float64))
+    true = float(np.sum((fitted.width * fitted.height)[whole]))
     return seen / true - 1 if true > 0 else 0.0
 
 

@@ -69,14 +69,16 @@ def choose_channel(stored: Stored, tone: Tone) -> Choice:
     whole: list[Channel] = [
         one for one, share in zip(PRIMARIES, clipped, strict=True) if share < UNCLIPPED
     ]
-    clearness = {one: _clearness(windows, tone, one) for one in PRIMARIES}
     lost = sum(share * clip for share, clip in zip(LUMINANCE, clipped, strict=True))
     if lost > LOST_LIGHT and whole:
-        best = max(whole, key=clearness.__getitem__)
+        best = max(whole, key=lambda one: _clearness(windows, tone, one))
         return Choice(best, "other colours are at the largest value the file can hold")
     luminance = _clearness(windows, tone, "luminance")
+    if luminance >= CLEAR_ENOUGH:
+        return Choice("luminance")
+    clearness = {one: _clearness(windows, tone, one) for one in PRIMARIES}
     best = max(PRIMARIES, key=clearness.__getitem__)
-    if luminance < CLEAR_ENOUGH and clearness[best] > CLEARLY_BETTER * luminance:
+    if clearness[best] > CLEARLY_BETTER * luminance:
         told = f"the cloth is {clearness[best] / luminance:.1f} times as clear there"
         return Choice(best, f"{told} as in luminance")
     return Choice("luminance")

@@ -10,8 +10,8 @@ import numpy as np
 from imgcover.picture.header import Stored
 from imgcover.picture.picture import PRIMARIES, Channel
 
-STRIPE = 1 << 22
-"""Pixels looked at together."""
+STRIPE = 1 << 18
+"""Pixels looked at together: most stripes hold neither end of the scale and are not counted."""
 SENSOR_BITS = (8, 10, 12, 14)
 """Depths of the converters whose values come in 16-bit files, shifted up or not."""
 CEILINGS = {
@@ -69,9 +69,9 @@ def clipped_shares(stored: Stored, channel: Channel) -> tuple[float, float]:
         if channel in PRIMARIES:
             stripe = cast("Stored", cv2.extractChannel(stripe, PRIMARIES.index(channel)))
         pixels = stripe.shape[0] * stripe.shape[1]
-        if _count_within(stripe, 1, top - 1) < pixels:  # most stripes need no second look
-            dark += _count_within(stripe, 0, 0)
-            bright += pixels - _count_within(stripe, 0, top - 1)
+        lowest, highest, _, _ = cv2.minMaxLoc(stripe.reshape(len(stripe), -1))
+        dark += _count_within(stripe, 0, 0) if lowest == 0 else 0
+        bright += pixels - _count_within(stripe, 0, top - 1) if highest >= top else 0
     pixels = stored.shape[0] * stored.shape[1]
     return dark / pixels, bright / pixels
 

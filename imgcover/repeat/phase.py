@@ -120,10 +120,9 @@ def demodulate(
     # the band's middle bin became zero frequency; what is left of the wanted one is a slow ramp
     left_over_x = centre_column / columns - frequency[0]
     left_over_y = centre_row / rows - frequency[1]
-    ramp = np.exp(
-        2j * np.pi * (left_over_y * grid.rows()[:, None] + left_over_x * grid.columns()[None, :])
-    )
-    values = small[: grid.shape[0], : grid.shape[1]] * ramp * scale
+    down = np.exp(2j * np.pi * left_over_y * grid.rows()) * scale
+    across = np.exp(2j * np.pi * left_over_x * grid.columns())
+    values = small[: grid.shape[0], : grid.shape[1]] * np.outer(down, across)
     return values.astype(np.complex64), grid
 
 

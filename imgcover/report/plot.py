@@ -234,26 +234,29 @@ def _sheet(
     """Put everything on one sheet, whose unit is the inch."""
     from matplotlib.collections import LineCollection, PolyCollection
     from matplotlib.figure import Figure
+    from matplotlib.lines import Line2D
 
     figure = Figure(figsize=(WIDTH_INCH, height))
-    axis = figure.add_axes((0.0, 0.0, 1.0, 1.0))
-    axis.set_axis_off()
-    axis.set_xlim(0, WIDTH_INCH)
-    axis.set_ylim(0, height)
-    axis.add_collection(PolyCollection(fields.corners, facecolors=fields.colours, linewidths=0))
-    axis.add_collection(
+    inches = figure.dpi_scale_trans
+    figure.add_artist(
+        PolyCollection(fields.corners, facecolors=fields.colours, linewidths=0, transform=inches)
+    )
+    figure.add_artist(
         LineCollection(
             strokes.ends,
             colors=strokes.colours,
             linewidths=strokes.widths,
             linestyles=strokes.dashes,
+            transform=inches,
         )
     )
     if marks:
         x, y = zip(*marks, strict=True)
-        axis.plot(x, y, "o", ms=4, mec=INK, mfc="white", mew=0.9)
+        points = Line2D(x, y, linestyle="none", marker="o", markersize=4, transform=inches)
+        points.set(markeredgecolor=INK, markerfacecolor="white", markeredgewidth=0.9)
+        figure.add_artist(points)
     for left, base, text, style in words.placed:
-        axis.text(left, base, text, **style)
+        figure.text(left, base, text, transform=inches, **style)
     written = io.StringIO()
     figure.savefig(written, format="svg", metadata={"Date": None, "Creator": None})
     return written.getvalue()

@@ -123,8 +123,9 @@ def _vectors(lattice: Lattice) -> tuple[list[Vector], list[Vector]]:
     across: list[Vector] = []
     down: list[Vector] = []
     steps = range(-FARTHEST_INDEX, FARTHEST_INDEX + 1)
+    (ax, ay), (bx, by) = lattice.first, lattice.second
     for at in itertools.product(steps, steps):
-        fx, fy = (float(v) for v in lattice.basis @ np.array(at))
+        fx, fy = at[0] * ax + at[1] * bx, at[0] * ay + at[1] * by
         if not LOWEST_FREQUENCY < math.hypot(fx, fy) < HIGHEST_FREQUENCY:
             continue
         # a little over 45° each way, so that a swatch turned by half a right angle is not lost

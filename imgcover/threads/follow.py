@@ -18,6 +18,10 @@ STRONG_ENOUGH = 0.3
 of what is left is that of the noise (a Gaussian smoothed amplitude falls to half at an edge)."""
 
 
+LEAST = 1e-9
+"""Added to the weights of a place: one that no line reaches stays where it is."""
+
+
 @dataclass(frozen=True, slots=True)
 class Line:
     """One spectral line, in thread units: h ends and v picks a period."""
@@ -184,26 +188,26 @@ def _all_lines(
     Each line's own constant phase is unknown, and is its mean residual over the field. Residuals
     are small, so they need no unwrapping.
     """
-    weight_sum = np.zeros((2, 2, *solid.shape))
-    pull = np.zeros((2, *solid.shape))
-    spread = np.zeros(solid.shape)
-    total = np.zeros(solid.shape)
+    # normal equations of every place, two by two; their diagonal is never quite zero
+    hh, vv = (np.full(solid.shape, LEAST) for _ in range(2))
+    hv, h, v, spread, total = (np.zeros(solid.shape) for _ in range(5))
     for k, line in enumerate(lines):
         residual = phases[k] - line.h * both[0] - line.v * both[1]
         turned = np.exp(2j * np.pi * residual)
         constant = np.angle((turned * relative[k] * solid).sum())
         rest = np.angle(turned * np.exp(-1j * constant)) / (2 * np.pi)
         weight = np.minimum(relative[k], 2.0) ** 2 * np.exp(line.excess)
-        direction = np.array([line.h, line.v])
-        weight_sum += weight * np.multiply.outer(
-            np.outer(direction, direction), np.ones(solid.shape)
-        )
-        pull += weight * np.multiply.outer(direction, rest)
+        hh += line.h * line.h * weight
+        hv += line.h * line.v * weight
+        vv += line.v * line.v * weight
+        weighed = weight * rest
+        h += line.h * weighed
+        v += line.v * weighed
         spread += weight * np.abs(rest)
         total += weight
-    system = np.moveaxis(weight_sum, (0, 1), (-2, -1)) + 1e-9 * np.eye(2)
-    step = np.linalg.solve(system, np.moveaxis(pull, 0, -1)[..., None])[..., 0]
-    return both + np.moveaxis(step, -1, 0), spread / np.maximum(total, 1e-12) < 0.2
+    area = np.maximum(hh * vv - hv * hv, LEAST * (hh + vv - LEAST))
+    step = np.stack([vv * h - hv * v, hh * v - hv * h]) / area
+    return both + step, spread / np.maximum(total, 1e-12) < 0.2
 
 
 __all__ = ["STRONG_ENOUGH", "Followed", "Line", "follow"]

@@ -33,7 +33,7 @@ STEADY = 0.0015
 """Unevenness as a share of the count; even cloth lies below it."""
 
 STEADIER = 0.7
-"""Outlines are noisier than the light, so they must be this much steadier to be followed instead."""
+"""Outlines are noisier than the light: they must be this much steadier to be followed instead."""
 
 SEEN_WELL = 0.65
 """Share of the field in which threads are followed; with less of it too many tiles are unclear."""
@@ -158,10 +158,12 @@ def taken_as(seen: Identified, ends: Multiple, picks: Multiple) -> Identified | 
 
 
 def _lattices(found: list[Peak], tolerance: float) -> list[Lattice]:
+    cuts = [
+        [each for each in found if math.hypot(each.fx, each.fy) > cut][:24] for cut in LOWEST_CUTS
+    ]
     out: list[Lattice] = []
-    for cut in LOWEST_CUTS:
-        kept = [each for each in found if math.hypot(each.fx, each.fy) > cut][:24]
-        if len(kept) >= 2:
+    for kept, before in zip(cuts, [[], *cuts], strict=False):
+        if len(kept) >= 2 and kept != before:  # often no peak lies between two cuts
             out += fit_lattices(kept, tolerance=tolerance, most=4)
     return out
 

@@ -46,7 +46,7 @@ class Lattice:
     @property
     def cell(self) -> float:
         """Area of the primitive cell, (cycles per pixel)²."""
-        return abs(float(np.linalg.det(self.basis)))
+        return abs(self.first[0] * self.second[1] - self.first[1] * self.second[0])
 
     @property
     def shortest(self) -> float:
@@ -93,7 +93,7 @@ def fit_lattices(peaks: list[Peak], *, tolerance: float, most: int) -> list[Latt
     found: list[Lattice] = []
     for one, two in itertools.combinations(range(min(len(peaks), BASIS_PEAKS)), 2):
         reduced = _reduced(positions[one], positions[two])
-        if reduced is None or math.sqrt(abs(np.linalg.det(reduced))) < 4 * tolerance:
+        if reduced is None or math.sqrt(_area(reduced)) < 4 * tolerance:
             continue
         lattice = _refined(reduced, positions, weights, tolerance)
         if lattice is not None and not any(_same(lattice, each, tolerance) for each in found):
@@ -104,16 +104,23 @@ def fit_lattices(peaks: list[Peak], *, tolerance: float, most: int) -> list[Latt
 
 def _reduced(first: NDArray[np.float64], second: NDArray[np.float64]) -> NDArray[np.float64] | None:
     """Lagrange's reduction: the two shortest vectors, as columns; None where they are parallel."""
-    area = abs(first[0] * second[1] - first[1] * second[0])
-    if area < NARROWEST * math.hypot(*first) * math.hypot(*second):
+    # thousands of these a picture: plain numbers are ten times as fast as arrays of two
+    (ax, ay), (bx, by) = first.tolist(), second.tolist()
+    if abs(ax * by - ay * bx) < NARROWEST * math.hypot(ax, ay) * math.hypot(bx, by):
         return None
     while True:
-        if np.dot(first, first) > np.dot(second, second):
-            first, second = second, first
-        times = round(float(np.dot(first, second) / np.dot(first, first)))
+        if ax * ax + ay * ay > bx * bx + by * by:
+            ax, ay, bx, by = bx, by, ax, ay
+        times = round((ax * bx + ay * by) / (ax * ax + ay * ay))
         if times == 0:
-            return np.array([first, second]).T
-        second = second - times * first
+            return np.array([[ax, bx], [ay, by]])
+        bx, by = bx - times * ax, by - times * ay
+
+
+def _area(basis: NDArray[np.float64]) -> float:
+    (ax, bx), (ay, by) = basis.tolist()
+    area: float = abs(ax * by - ay * bx)
+    return area
 
 
 def _refined(
@@ -125,19 +132,29 @@ def _refined(
     """Fit the basis to all peaks it indexes, then weigh what it explains."""
     for _ in range(3):
         indices, on = index(basis, positions, tolerance)
-        if np.linalg.matrix_rank(indices[on]) < 2:
-            return None
-        root = np.sqrt(weights[on])[:, None]
-        solved, *_ = np.linalg.lstsq(indices[on] * root, positions[on] * root, rcond=None)
-        again = _reduced(solved[0], solved[1])
+        solved = _least_squares(indices[on], positions[on], weights[on])
+        again = None if solved is None else _reduced(solved[0], solved[1])
         if again is None:
             return None
         basis = again
     _, on = index(basis, positions, tolerance)
-    chance = min(1.0, math.pi * tolerance**2 / abs(float(np.linalg.det(basis))))
+    chance = min(1.0, math.pi * tolerance**2 / _area(basis))
     explained = float((weights * (on - chance)).sum() / weights.sum())
     first, second = basis.T.tolist()
     return Lattice((first[0], first[1]), (second[0], second[1]), explained)
+
+
+def _least_squares(
+    indices: NDArray[np.float64], positions: NDArray[np.float64], weights: NDArray[np.float64]
+) -> NDArray[np.float64] | None:
+    """Fit two vectors, as rows, to peaks of known indices; None where these lie on one line."""
+    (ii, ij), (_, jj) = (indices.T @ indices).tolist()
+    if ii * jj == ij * ij:  # whole numbers: exact
+        return None
+    weighed = indices * weights[:, None]
+    (ii, ij), (_, jj) = (weighed.T @ indices).tolist()
+    inverse = np.array([[jj, -ij], [-ij, ii]]) / (ii * jj - ij * ij)
+    return np.asarray(inverse @ (weighed.T @ positions), np.float64)
 
 
 def index(
@@ -153,9 +170,12 @@ def index(
         Whether the peak lies within the tolerance, which grows 0.6 % of the peak's own frequency:
         skew and bow spread the far lines more.
     """
-    indices = np.round(np.linalg.solve(basis, positions.T).T)
+    (ax, bx), (ay, by) = basis.tolist()
+    x, y = positions.T
+    cell = ax * by - ay * bx
+    indices = np.round(np.stack([by * x - bx * y, ax * y - ay * x], axis=1) / cell)
     misses = np.hypot(*(indices @ basis.T - positions).T)
-    lengths = np.hypot(*positions.T)
+    lengths = np.hypot(x, y)
     small = np.abs(indices).max(axis=1) <= LARGEST_INDEX
     return indices, small & (misses <= tolerance + 0.006 * lengths)
 
@@ -163,7 +183,7 @@ def index(
 def _same(one: Lattice, other: Lattice, tolerance: float) -> bool:
     if abs(one.cell / other.cell - 1) > 0.05:
         return False
-    _, on = index(one.basis, other.basis.T, 2 * tolerance)
+    _, on = index(one.basis, np.array([other.first, other.second]), 2 * tolerance)
     return bool(on.all())
 
 

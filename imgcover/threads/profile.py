@@ -97,8 +97,8 @@ def amplitudes(
         rows, columns = phase.shape
         values = values[:rows, :columns]
         valid = followed.valid[: values.shape[0], : values.shape[1]]
-        turned = values * np.exp(-2j * np.pi * h * phase[: values.shape[0], : values.shape[1]])
-        chosen = turned[valid]
+        turns = h * phase[: values.shape[0], : values.shape[1]][valid]
+        chosen = values[valid] * np.exp(-2j * np.pi * turns)
         out[k] = chosen.mean()
         # neighbouring places share about half their smoothing
         scatter.append(float(np.abs(chosen - out[k]).std()) / math.sqrt(max(1.0, chosen.size / 3)))

@@ -79,7 +79,7 @@ EDGE = 1.7
 fitted so that 2 u covers 95 % of counted truth (tests/threads/sweep_threads.py)."""
 
 TURN = 0.5
-"""Share of the tiles' scatter by which two ways of averaging a field turned by 45 degrees differ."""
+"""Share of the tiles' scatter by which two means over a field turned by 45 degrees differ."""
 
 FOLDED = "the strongest pattern is as fine as the pixels themselves: threads may be folded over"
 
@@ -92,7 +92,7 @@ LARGEST_U = 0.0075
 """A count looser than this has lost its threads somewhere, and decides nothing."""
 
 HALF_A_THREAD, LARGEST_U_THEN = 0.25, 0.005
-"""Threads of u from which on a whole thread more or less is not excluded (2 u is half a thread), and
+"""Threads of u from which on one thread more or less is not excluded (2 u is half a thread), and
 the relative u from which on that matters: among hundreds of threads it does not."""
 
 

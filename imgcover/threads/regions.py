@@ -157,16 +157,29 @@ def densities(
     ndarray, shape (blocks,), float64
         From a plane fitted to the tile's phase; NaN where too little was followed for one.
     """
-    values = np.full(len(pieces.blocks), np.nan)
-    for k, (high, wide) in enumerate(pieces.blocks):
-        use = pieces.valid[high, wide]
-        if use.sum() < FEWEST_PLACES:
-            continue
-        y, x = np.broadcast_arrays(followed.y[high][:, None], followed.x[wide][None, :])
-        flat = np.stack([x[use], y[use], np.ones(int(use.sum()))], axis=1)
-        (sx, sy, _), *_ = np.linalg.lstsq(flat, phase[high, wide][use], rcond=None)
-        values[k] = math.hypot(frequency[0] + sx, frequency[1] + sy)
-    known = values[np.isfinite(values)]
+    tile = np.full(phase.shape, -1)
+    for k, block in enumerate(pieces.blocks):
+        tile[block] = k
+    row, column = np.nonzero(pieces.valid & (tile >= 0))
+    at = tile[row, column]
+    places = np.bincount(at, minlength=len(pieces.blocks))
+
+    def summed(each: NDArray[np.float64]) -> NDArray[np.float64]:
+        return np.asarray(np.bincount(at, each, minlength=len(pieces.blocks)), np.float64)
+
+    def from_middle(each: NDArray[np.float64]) -> NDArray[np.float64]:
+        return np.asarray(each - (summed(each) / np.maximum(places, 1))[at], np.float64)
+
+    x, y = from_middle(followed.x[column]), from_middle(followed.y[row])
+    turns = phase[row, column]
+    xx, xy, yy = summed(x * x), summed(x * y), summed(y * y)
+    area = xx * yy - xy * xy
+    flat = (places >= FEWEST_PLACES) & (area > 0)
+    area = np.where(flat, area, np.nan)
+    along_x, along_y = summed(x * turns), summed(y * turns)
+    slope_x, slope_y = (yy * along_x - xy * along_y) / area, (xx * along_y - xy * along_x) / area
+    values = np.hypot(frequency[0] + slope_x, frequency[1] + slope_y)
+    known = values[flat]
     return values / np.median(known) if known.size else values
 
 

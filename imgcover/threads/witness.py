@@ -17,8 +17,8 @@ from numpy.typing import NDArray
 from imgcover.repeat.between import between
 from imgcover.repeat.spectrum import Peak, Spectrum
 from imgcover.threads.candidates import Candidate
+from imgcover.threads.lattice import Lattice, weights_of
 from imgcover.threads.lattice import index as index_on
-from imgcover.threads.lattice import weights_of
 
 WHOLE = 99.0
 """Stands for "nothing to look for": higher than any line rises over its floor."""
@@ -91,10 +91,8 @@ def weigh(
     positions = np.array([(each.fx, each.fy) for each in peaks])
     levels = np.array([each.level for each in peaks])
     weights = weights_of(peaks)
-    streaks: dict[int, float] = {}
-    heard = []
-    for one in these:
-        heard.append((one, _hear(one, of, positions, levels, weights, tolerance, streaks)))
+    seen = _Seen(of, positions, tolerance)
+    heard = [(one, _hear(one, seen, levels, weights, tolerance)) for one in these]
     heard.sort(key=lambda pair: -pair[1].score)
     return heard
 
@@ -110,21 +108,73 @@ def excess_at(of: Spectrum, frequency: NDArray[np.float64]) -> tuple[float, floa
     return max(0.0, level - float(of.log_floor[row, column])), level
 
 
+Vector = tuple[float, float]
+
+
+@dataclass(frozen=True, slots=True)
+class _Axis:
+    """What the spectrum shows at the multiples of one wave vector."""
+
+    line: float
+    level: float
+    second: float
+    highest: float
+    streak: float
+
+
+class _Seen:
+    """What was looked up in the spectrum: candidates share their vectors and lattices."""
+
+    def __init__(self, of: Spectrum, positions: NDArray[np.float64], tolerance: float) -> None:
+        self._of = of
+        self.positions = positions
+        self._tolerance = tolerance
+        self._axes: dict[Vector, _Axis] = {}
+        self._parts: dict[tuple[Vector, int], float] = {}
+        self._streaks: dict[int, float] = {}
+        self._on: dict[Lattice, NDArray[np.bool_]] = {}
+
+    def axis(self, vector: Vector) -> _Axis:
+        """Look along the multiples of a wave vector."""
+        if vector not in self._axes:
+            frequency = np.array(vector)
+            line, level = excess_at(self._of, frequency)
+            above = [excess_at(self._of, times * frequency)[0] for times in (2, 3, 4, 5)]
+            self._axes[vector] = _Axis(line, level, above[0], max(above), self._streak(vector))
+        return self._axes[vector]
+
+    def part(self, vector: Vector, parts: int) -> float:
+        """The highest line at a broken multiple of a wave vector."""
+        if parts == 1:
+            return WHOLE
+        if (vector, parts) not in self._parts:
+            frequency = np.array(vector)
+            lines = (excess_at(self._of, k / parts * frequency)[0] for k in range(1, parts))
+            self._parts[vector, parts] = max(lines)
+        return self._parts[vector, parts]
+
+    def on(self, lattice: Lattice) -> NDArray[np.bool_]:
+        """Which peaks lie on a lattice."""
+        if lattice not in self._on:
+            _, self._on[lattice] = index_on(lattice.basis, self.positions, self._tolerance)
+        return self._on[lattice]
+
+    def _streak(self, vector: Vector) -> float:
+        key = round(math.atan2(vector[1], vector[0]) * 500)
+        if key not in self._streaks:
+            self._streaks[key] = streak(self._of, vector)
+        return self._streaks[key]
+
+
 def _hear(
     one: Candidate,
-    of: Spectrum,
-    positions: NDArray[np.float64],
+    seen: _Seen,
     levels: NDArray[np.float64],
     weights: NDArray[np.float64],
     tolerance: float,
-    streaks: dict[int, float],
 ) -> Evidence:
-    ends, picks = np.array(one.ends), np.array(one.picks)
-    ends_line, ends_level = excess_at(of, ends)
-    picks_line, picks_level = excess_at(of, picks)
-    ends_second, _ = excess_at(of, 2 * ends)
-    picks_second, _ = excess_at(of, 2 * picks)
-    at = np.linalg.solve(one.basis, positions.T).T
+    ends, picks = seen.axis(one.ends), seen.axis(one.picks)
+    at = np.linalg.solve(one.basis, seen.positions.T).T
     slack = np.array([tolerance / math.hypot(*one.ends), tolerance / math.hypot(*one.picks)]) + 0.02
     # waves much longer than two threads are stripes and checks: they say nothing of the threads
     weights = weights * np.minimum(1.0, 2 * np.hypot(*at.T)) ** 2
@@ -134,44 +184,26 @@ def _hear(
     broken_picks = on_axis[:, 0] & ~on_axis[:, 1] & ~whole[:, 1]
     # a broken multiple counts by how it compares with the thread's own line
     against = weights[broken_ends] @ np.exp(
-        np.clip(0.5 * (levels[broken_ends] - ends_level), -4, 0.4)
-    ) + weights[broken_picks] @ np.exp(np.clip(0.5 * (levels[broken_picks] - picks_level), -4, 0.4))
-    _, on = index_on(one.lattice.basis, positions, tolerance)
-    apart = weights @ ~(on | whole.all(axis=1))
+        np.clip(0.5 * (levels[broken_ends] - ends.level), -4, 0.4)
+    ) + weights[broken_picks] @ np.exp(np.clip(0.5 * (levels[broken_picks] - picks.level), -4, 0.4))
+    apart = weights @ ~(seen.on(one.lattice) | whole.all(axis=1))
     total = max(float(weights.sum()), 1e-9)
     evidence = {
-        "ends_line": ends_line,
-        "picks_line": picks_line,
-        "ends_second": ends_second,
-        "picks_second": picks_second,
-        "ends_part": _part_line(of, ends, one.parts[0]),
-        "picks_part": _part_line(of, picks, one.parts[1]),
-        "ends_above": _highest_multiple(of, ends) - ends_line,
-        "picks_above": _highest_multiple(of, picks) - picks_line,
+        "ends_line": ends.line,
+        "picks_line": picks.line,
+        "ends_second": ends.second,
+        "picks_second": picks.second,
+        "ends_part": seen.part(one.ends, one.parts[0]),
+        "picks_part": seen.part(one.picks, one.parts[1]),
+        "ends_above": ends.highest - ends.line,
+        "picks_above": picks.highest - picks.line,
         "against": float(against / total),
         "beyond": float(weights @ (np.abs(at).max(axis=1) > 1.25) / total),
         "apart": float(apart / total),
-        "ends_streak": _known_streak(of, one.ends, streaks),
-        "picks_streak": _known_streak(of, one.picks, streaks),
+        "ends_streak": ends.streak,
+        "picks_streak": picks.streak,
     }
     return Evidence(**evidence, score=_score(one, evidence))
-
-
-def _highest_multiple(of: Spectrum, frequency: NDArray[np.float64]) -> float:
-    return max(excess_at(of, times * frequency)[0] for times in (2, 3, 4, 5))
-
-
-def _part_line(of: Spectrum, frequency: NDArray[np.float64], parts: int) -> float:
-    if parts == 1:
-        return WHOLE
-    return max(excess_at(of, k / parts * frequency)[0] for k in range(1, parts))
-
-
-def _known_streak(of: Spectrum, vector: tuple[float, float], known: dict[int, float]) -> float:
-    key = round(math.atan2(vector[1], vector[0]) * 500)
-    if key not in known:
-        known[key] = streak(of, vector)
-    return known[key]
 
 
 def streak(of: Spectrum, vector: tuple[float, float]) -> float:

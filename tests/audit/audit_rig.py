@@ -7,6 +7,7 @@ import os
 import signal
 import subprocess
 import sys
+from datetime import date
 from pathlib import Path
 from typing import Any
 
@@ -19,6 +20,11 @@ from imgcover.audit.outcome import Crew, Done
 from imgcover.cli.auditing import Audit, AuditAsked
 from imgcover.cli.exits import ExitCode
 from imgcover.ledger.store import Ledger
+from imgcover.quantity import Measured
+from imgcover.scale.certificate import write_certificate
+from imgcover.scale.sheet import SHEET_NAME, Bars
+from imgcover.scale.sheet_bed import BedMap
+from imgcover.scale.sheet_device import DeviceReading
 
 ROOT = Path(__file__).resolve().parent.parent.parent
 ARTICLE = """
@@ -66,6 +72,35 @@ def lay(folder: Path, lots: dict[str, int], **grids: float) -> None:
             Image.fromarray(grid(seed=n, **grids)).save(folder / name)
             rows.append(f"{name},{lot},G-1,{place},24px/mm")
     (folder / "lots.csv").write_text("\n".join(rows) + "\n")
+
+
+def certified(folder: Path, *, pitch: float, made: date, valid_until: date) -> None:
+    """Write a device's certificate with this pitch, px/mm, and these dates."""
+    there = np.zeros((16, 2))
+    reading = DeviceReading(
+        Measured(pitch, pitch * 1e-4, "px/mm"),
+        Measured(pitch, pitch * 1e-4, "px/mm"),
+        1e-4,
+        Measured(0.0, 1e-5, "rad"),
+        BedMap(there, there, 0.004),
+        True,
+        16,
+        (0.0, 0.0, 0.0),
+        (1e-4, 1e-4),
+    )
+    (folder / "bench.toml").write_text(
+        write_certificate(
+            reading,
+            name="bench",
+            resolution_dpi=(pitch * 25.4, pitch * 25.4),
+            tone="srgb",
+            made=made,
+            valid_until=valid_until,
+            sheet=SHEET_NAME,
+            bars=Bars(180.0, 260.0, 0.3),
+            scans_sha256=("ab" * 32,),
+        )
+    )
 
 
 def command(folder: Path, out: Path, *options: str) -> list[str]:

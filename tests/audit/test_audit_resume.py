@@ -8,19 +8,13 @@ from contextlib import closing
 from datetime import date, timedelta
 
 import audit_rig
-import numpy as np
 import pytest
-from audit_rig import audit_inline, lay, records, timeless
+from audit_rig import audit_inline, certified, lay, records, timeless
 
 from imgcover.audit.outcome import Loss, Lost
 from imgcover.audit.work import Answer
 from imgcover.cli.exits import ExitCode
 from imgcover.errors import CertificateError, LotSheetError
-from imgcover.quantity import Measured
-from imgcover.scale.certificate import write_certificate
-from imgcover.scale.sheet import SHEET_NAME, Bars
-from imgcover.scale.sheet_bed import BedMap
-from imgcover.scale.sheet_device import DeviceReading
 
 
 def rows(out):
@@ -175,35 +169,6 @@ def test_a_file_that_an_option_names_and_cannot_be_used_is_said(tmp_path, capsys
     assert audit_inline(goods, out) is ExitCode.USAGE
     assert "blank" in capsys.readouterr().err
     assert records(out)[0]["findings"][0]["code"] == "option-unusable"
-
-
-def certified(folder, *, pitch, made, valid_until):
-    """Write a device's certificate with this pitch, px/mm, and these dates."""
-    there = np.zeros((16, 2))
-    reading = DeviceReading(
-        Measured(pitch, pitch * 1e-4, "px/mm"),
-        Measured(pitch, pitch * 1e-4, "px/mm"),
-        1e-4,
-        Measured(0.0, 1e-5, "rad"),
-        BedMap(there, there, 0.004),
-        True,
-        16,
-        (0.0, 0.0, 0.0),
-        (1e-4, 1e-4),
-    )
-    (folder / "bench.toml").write_text(
-        write_certificate(
-            reading,
-            name="bench",
-            resolution_dpi=(pitch * 25.4, pitch * 25.4),
-            tone="srgb",
-            made=made,
-            valid_until=valid_until,
-            sheet=SHEET_NAME,
-            bars=Bars(180.0, 260.0, 0.3),
-            scans_sha256=("ab" * 32,),
-        )
-    )
 
 
 def test_a_certificate_made_anew_or_expired_measures_again(tmp_path, capsys):
