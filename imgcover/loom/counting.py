@@ -148,10 +148,14 @@ class Met:
         self._s = s
 
     def add(
-        self, end: Nearest, pick: Nearest, inside: Floats, own: NDArray[np.bool_], edge: int
+        self,
+        end: tuple[Nearest, Floats],
+        pick: tuple[Nearest, Floats],
+        own: NDArray[np.bool_],
+        edge: int,
     ) -> None:
-        """Take the lines that fall into these fine rows."""
-        over, below = (end, pick) if self._upright else (pick, end)
+        """Take the lines that fall into these fine rows: threads, and where they lie whole."""
+        (over, over_in), (below, below_in) = (end, pick) if self._upright else (pick, end)
         keep = np.flatnonzero(own)
         rows = self._rows[(self._rows >= self._row) & (self._rows < self._row + keep.size)]
         self._row += keep.size
@@ -159,11 +163,11 @@ class Met:
         wide = np.s_[edge : over.left.shape[1] - edge]
         self._across.append(
             _number(
-                over, np.ix_(keep[local], range(*wide.indices(over.left.shape[1]))), inside[local]
+                over, np.ix_(keep[local], range(*wide.indices(over.left.shape[1]))), over_in[local]
             )
         )
         self._down.append(
-            _number(below, np.ix_(keep, self._columns + edge), inside[:, self._columns])
+            _number(below, np.ix_(keep, self._columns + edge), below_in[:, self._columns])
         )
 
     def lines(self, loom: Loom) -> tuple[Lines, Lines]:

@@ -15,7 +15,7 @@ from imgcover.loom.cloth import ClothSpec
 from imgcover.loom.counting import Lines, Met, count
 from imgcover.loom.crossing import cross, nearest
 from imgcover.loom.dressing import Loom, dress
-from imgcover.loom.edges import creased, stained
+from imgcover.loom.edges import Extent, creased, stained
 from imgcover.loom.hairs import comb
 from imgcover.loom.noise import Rng
 from imgcover.loom.shading import HAIR_PASSES, reflected, surface, through
@@ -171,10 +171,13 @@ def _strip(loom: Loom, s: int, grid: Grid, first: int, last: int, tally: Tally, 
     own = (grid.row > first - 0.5) & (grid.row < last - 0.5)
     if own.any():
         keep = np.s_[own, halo * s : grid.column.size - halo * s]
-        inside = _inside(loom, u[keep], v[keep])
+        inside = _inside(loom.swatch.inset(cloth), u[keep], v[keep])
         shown = hidden if isinstance(hidden, float) else hidden[keep]
         tally.add(end.covered[keep], pick.covered[keep], shown, inside)
-        met.add(end, pick, inside, own, halo * s)
+        # threads lie side by side up to the cut edge; only their tips fray
+        beside = (loom.swatch.inset(cloth, ends=False), loom.swatch.inset(cloth, picks=False))
+        with_ends, with_picks = (_inside(each, u[keep], v[keep]) for each in beside)
+        met.add((end, with_ends), (pick, with_picks), own, halo * s)
     textures = (
         surface(loom.fibres, end, v, cloth.end_diameter_mm),
         surface(loom.fibres, pick, u, cloth.pick_diameter_mm),
@@ -215,9 +218,8 @@ def _mixed(loom: Loom, parts: tuple[Floats, Floats, Floats], hidden: Floats | fl
     return np.asarray(light + veil * (np.float32(hair) * 0.5 * (warm + cold) - light))
 
 
-def _inside(loom: Loom, u: Floats, v: Floats) -> Floats:
-    """Say which points are sound cloth: 1 inside the swatch's inset, else 0."""
-    rim = loom.swatch.inset(loom.cloth)
+def _inside(rim: Extent, u: Floats, v: Floats) -> Floats:
+    """Say which points lie inside a rim: 1 there, else 0."""
     good = (u > rim.ends_from) & (u < rim.ends_to) & (v > rim.picks_from) & (v < rim.picks_to)
     return good.astype(np.float32)
 

@@ -30,12 +30,13 @@ class Extent:
     picks_from: float
     picks_to: float
 
-    def inset(self, cloth: ClothSpec) -> Extent:
-        """Take off the frayed rim and the selvedge."""
-        by_ends = INSET_PITCHES / cloth.ends_per_mm
-        by_picks = INSET_PITCHES / cloth.picks_per_mm
+    def inset(self, cloth: ClothSpec, *, ends: bool = True, picks: bool = True) -> Extent:
+        """Take off the selvedge, and the frayed rim across the ends, across the picks, or both."""
+        by_ends = INSET_PITCHES / cloth.ends_per_mm if ends else 0.0
+        beside_selvedge = INSET_PITCHES / cloth.ends_per_mm if cloth.selvedge_mm > 0 else by_ends
+        by_picks = INSET_PITCHES / cloth.picks_per_mm if picks else 0.0
         return Extent(
-            self.ends_from + by_ends + cloth.selvedge_mm,
+            self.ends_from + beside_selvedge + cloth.selvedge_mm,
             self.ends_to - by_ends,
             self.picks_from + by_picks,
             self.picks_to - by_picks,

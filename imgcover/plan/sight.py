@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from enum import StrEnum
 
 from imgcover.scale.pitch import INCH_MM
-from imgcover.threads.reader import FEW_PIXELS, FEWEST_PIXELS
+from imgcover.threads.telling import FEW_PIXELS, FEWEST_PIXELS
 
 COMFORTABLE_PIXELS = 8.0
 """Pixels a thread: from here on drawn covers are read no worse than with half as many again

@@ -81,7 +81,7 @@ def count(
     irregular = math.hypot(cos * walk_x, sin * walk_y) / density
     counted = density * length
     # where a thread begins inside the field is known only to a part of the rows
-    broken = A_BREAK * math.sqrt(breaks(phase * followed.folded, followed.valid)) / counted
+    broken = A_BREAK * math.sqrt(breaks(phase, followed.valid)) / counted
     return Counted((fx, fy), counted, length, noise, irregular, broken)
 
 

@@ -48,8 +48,6 @@ class Followed:
         Amplitude of the two leading lines over its usual value.
     loudest : float
         Usual amplitude of the strongest line.
-    folded : {1, 2}
-        Whether the phase, or twice the phase, was followed.
     """
 
     ends: NDArray[np.float64]
@@ -59,7 +57,6 @@ class Followed:
     y: NDArray[np.float64]
     strength: NDArray[np.float64]
     loudest: float
-    folded: int
 
 
 def follow(
@@ -69,7 +66,6 @@ def follow(
     *,
     lines: list[Line],
     sigma: float,
-    folded: int = 1,
 ) -> Followed | None:
     """Follow ends and picks over the field.
 
@@ -83,9 +79,6 @@ def follow(
         Strongest first; at least two that are not parallel.
     sigma : float
         Smoothing, pixels.
-    folded : {1, 2}
-        2 follows twice the phase. Where dark ends follow light ones the contrast turns over and
-        with it the phase, by half a thread; twice the phase knows nothing of that.
 
     Returns
     -------
@@ -120,11 +113,11 @@ def follow(
         return None
     phases = np.asarray(np.angle(values) / (2 * np.pi), np.float64)
     base = np.array([[lines[one].h, lines[one].v], [lines[two].h, lines[two].v]])
-    unwrapped = np.stack([_unwrapped(folded * phases[k], solid) / folded for k in (one, two)])
+    unwrapped = np.stack([_unwrapped(phases[k], solid) for k in (one, two)])
     both = np.einsum("ij,jrc->irc", np.linalg.inv(base), unwrapped)
-    both, agreement = _all_lines(both, phases, relative, lines, solid, folded)
+    both, agreement = _all_lines(both, phases, relative, lines, solid)
     valid = _largest(solid & agreement)
-    return Followed(both[0], both[1], valid, x, y, strength, float(typical.max()), folded)
+    return Followed(both[0], both[1], valid, x, y, strength, float(typical.max()))
 
 
 def _centroids(
@@ -189,7 +182,6 @@ def _all_lines(
     relative: NDArray[np.float64],
     lines: list[Line],
     solid: NDArray[np.bool_],
-    folded: int,
 ) -> tuple[NDArray[np.float64], NDArray[np.bool_]]:
     """Improve both phases by every line; tell where the lines agree.
 
@@ -201,9 +193,9 @@ def _all_lines(
     hv, h, v, spread, total = (np.zeros(solid.shape) for _ in range(5))
     for k, line in enumerate(lines):
         residual = phases[k] - line.h * both[0] - line.v * both[1]
-        turned = np.exp(2j * np.pi * folded * residual)
+        turned = np.exp(2j * np.pi * residual)
         constant = np.angle((turned * relative[k] * solid).sum())
-        rest = np.angle(turned * np.exp(-1j * constant)) / (2 * np.pi * folded)
+        rest = np.angle(turned * np.exp(-1j * constant)) / (2 * np.pi)
         weight = np.minimum(relative[k], 2.0) ** 2 * np.exp(line.excess)
         hh += line.h * line.h * weight
         hv += line.h * line.v * weight
@@ -211,11 +203,11 @@ def _all_lines(
         weighed = weight * rest
         h += line.h * weighed
         v += line.v * weighed
-        spread += weight * folded * np.abs(rest)
+        spread += weight * np.abs(rest)
         total += weight
     area = np.maximum(hh * vv - hv * hv, LEAST * (hh + vv - LEAST))
     step = np.stack([vv * h - hv * v, hh * v - hv * h]) / area
     return both + step, spread / np.maximum(total, 1e-12) < 0.2
 
 
-__all__ = ["Followed", "Line", "follow"]
+__all__ = ["STRONG_ENOUGH", "Followed", "Line", "follow"]

@@ -6,11 +6,13 @@ import math
 from dataclasses import dataclass, replace
 from fractions import Fraction
 
+import numpy as np
+
 from imgcover.repeat.phase import Transformed, transform
 from imgcover.repeat.spectrum import Peak, Spectrum, peaks, spectrum
 from imgcover.threads.candidates import Candidate, candidates
 from imgcover.threads.counting import count
-from imgcover.threads.field import Field, flattened, windows_of
+from imgcover.threads.field import Field, flattened, outlines, windows_of
 from imgcover.threads.follow import Followed, follow
 from imgcover.threads.lattice import Lattice, fit_lattices
 from imgcover.threads.lines import lines_of, refined
@@ -29,6 +31,12 @@ MOST_PEAKS = 40
 
 STEADY = 0.0015
 """Unevenness as a share of the count; even cloth lies below it."""
+
+STEADIER = 0.7
+"""Outlines are noisier than the light: they must be this much steadier to be followed instead."""
+
+SEEN_WELL = 0.65
+"""Share of the field in which threads are followed; with less of it too many tiles are unclear."""
 
 PAIRED = 0.3
 """Share of a thread's own line that its half line reaches where threads lie in pairs."""
@@ -115,7 +123,7 @@ def identify(field: Field) -> Identified | None:
         _doubted(ends, picks, *best.pixels),
         _doubted(picks, ends, *reversed(best.pixels)),
     )
-    followed = _steadiest(flat, best, seen, followed, sigma)
+    followed = _steadiest(field, best, followed, sigma)
     return Identified(best, evidence, field, flat, followed, sigma, ends, picks, seen)
 
 
@@ -143,6 +151,7 @@ def taken_as(seen: Identified, ends: Multiple, picks: Multiple) -> Identified | 
     if tracked is None:
         return None
     flat, followed, sigma = tracked
+    followed = _steadiest(seen.origin, one, followed, sigma)
     return replace(
         seen, candidate=one, field=flat, followed=followed, sigma=sigma, ends=ends, picks=picks
     )
@@ -171,24 +180,48 @@ def _track(
     return None if followed is None else (flat, followed, sigma)
 
 
-def _steadiest(
-    flat: Transformed, one: Candidate, seen: Spectrum, plain: Followed, sigma: float
-) -> Followed:
-    """Follow twice the phase instead, where the phase is unsteady and twice it is steadier."""
-    unsteady = _unsteadiness(plain, one)
-    if unsteady < STEADY:
+def _steadiest(field: Field, one: Candidate, plain: Followed, sigma: float) -> Followed:
+    """Follow the threads' outlines too, where their light is unsteady, and keep what is steadier.
+
+    Each set may be taken from where it is steadier: stripes along one set leave the other alone.
+    """
+    if max(_unsteadiness(plain, one)) < STEADY and plain.valid.mean() > SEEN_WELL:
         return plain
-    twice = follow(flat, one.ends, one.picks, lines=lines_of(one, seen), sigma=sigma, folded=2)
-    return plain if twice is None or _unsteadiness(twice, one) > 0.7 * unsteady else twice
+    period = max(one.pixels)
+    drawn = outlines(field, period)
+    seen = spectrum(windows_of(drawn, min(WINDOW, *drawn.light.shape)))
+    flat = transform(flattened(drawn.light, period), margin=math.ceil(4 * sigma))
+    other = follow(flat, one.ends, one.picks, lines=lines_of(one, seen), sigma=sigma)
+    if other is None:
+        return plain
+    both = plain.valid & other.valid
+    offered = [
+        plain,
+        other,
+        replace(plain, ends=other.ends, valid=both),
+        replace(plain, picks=other.picks, valid=both),
+    ]
+    doubts = [_doubt(each, one) for each in offered]
+    best = int(np.argmin(doubts))
+    return offered[best] if doubts[best] < STEADIER * doubts[0] else plain
 
 
-def _unsteadiness(followed: Followed, one: Candidate) -> float:
-    """How unevenly the worse set seems to lie, relative to its density."""
-    counts = (
-        count(followed.ends, followed, one.ends),
-        count(followed.picks, followed, one.picks),
+def _doubt(followed: Followed, one: Candidate) -> float:
+    """Unsteadiness of the worse set; a view that has lost sight of the field comes last."""
+    blind = followed.valid.mean() < SEEN_WELL
+    return max(_unsteadiness(followed, one)) + (1.0 if blind else 0.0)
+
+
+def _unsteadiness(followed: Followed, one: Candidate) -> tuple[float, float]:
+    """How unevenly each set seems to lie, relative to its density."""
+    across, down = (
+        count(phase, followed, vector)
+        for phase, vector in ((followed.ends, one.ends), (followed.picks, one.picks))
     )
-    return max(math.inf if each is None else each.irregular + each.broken for each in counts)
+    return (
+        math.inf if across is None else across.irregular + across.broken,
+        math.inf if down is None else down.irregular + down.broken,
+    )
 
 
 def _scaled(one: Candidate, ends: Fraction, picks: Fraction) -> Candidate:

@@ -18,7 +18,23 @@ from imgcover.threads.follow import Followed
 from imgcover.threads.identify import Identified, identify, taken_as
 from imgcover.threads.profile import amplitudes
 from imgcover.threads.reading import Fork, ThreadReading, ThreadSet, Tile, Track
-from imgcover.threads.regions import UNCLEAR, Pieces, bow_of, divide, local_density, without_strays
+from imgcover.threads.regions import (
+    UNCLEAR,
+    Pieces,
+    away_from_bare,
+    bow_of,
+    divide,
+    local_density,
+    without_strays,
+)
+from imgcover.threads.telling import (
+    FEWEST_PIXELS,
+    NEAR_HALF_RIGHT,
+    is_lost,
+    is_weak,
+    of_field,
+    of_set,
+)
 from imgcover.threads.tie import settled
 from imgcover.threads.woven import crossing
 from imgcover.weave import Weave
@@ -26,18 +42,8 @@ from imgcover.weave import Weave
 Direction = Literal["vertical", "horizontal"]
 SetName = Literal["ends", "picks"]
 
-FEWEST_PIXELS = 3.0
-"""Pixels a thread: below it a wave and its harmonics fold over each other (DEVELOPERS, threads)."""
-
-FEW_PIXELS = 5.0
-"""Below it the count is flagged."""
-
 FEWEST_THREADS = 6.0
 """Threads across the field: with fewer, one thread more or less at the edge is the uncertainty."""
-
-LARGEST_SCATTER = 0.045
-"""Relative scatter of the density between tiles of eight threads. Uneven cloth reaches 0.03; where
-stripes turn the contrast over and a thread was lost it is 0.1."""
 
 LEAST_AGREEING = 0.75
 """Share of the clear tiles that must agree on the density: a few hold a burl or a hole, but where
@@ -63,12 +69,12 @@ LEAST_LINE = 4.0
 """ln(power over floor) of the fainter set's own line below which a set that could not be followed
 was never there: 5.1 in drawn cloth with a lost set, 3.5 in a brick wall, 2.4 in laid paper."""
 
-NEAR_HALF_RIGHT = 35.0
-"""Degrees of turn from which on the nearer axis says little about which set is the warp."""
-
 EDGE = 1.7
 """How far the outermost threads stray, in units of the phase's unevenness from place to place:
 fitted so that 2 u covers 95 % of counted truth (tests/threads/sweep_threads.py)."""
+
+TURN = 0.5
+"""Share of the tiles' scatter by which two means over a field turned by 45 degrees differ."""
 
 FOLDED = "the strongest pattern is as fine as the pixels themselves: threads may be folded over"
 
@@ -76,9 +82,6 @@ DIAGONAL = (
     "the pattern can be read as threads turned by about 45 degrees, or as straight plain cloth"
     " of twice as many threads on the diagonals"
 )
-
-LARGEST_U = 0.0075
-"""A count looser than this has lost its threads somewhere, and decides nothing."""
 
 
 class Plain:
@@ -182,6 +185,8 @@ def _refused(*findings: Finding, tiles: tuple[Tile, ...] = ()) -> ThreadReading:
 def _read(seen: Identified, region: Region, warp: Direction) -> ThreadReading:
     one, followed = seen.candidate, seen.followed
     period = max(one.pixels)
+    clear_of_bare = away_from_bare(followed, seen.origin.light, period)
+    followed = dataclasses.replace(followed, valid=clear_of_bare)
     pieces = divide(followed, period, seen.origin.light.shape)
     clear = len(pieces.blocks)
     pieces = without_strays(followed, pieces, one.ends, one.picks)
@@ -197,7 +202,7 @@ def _read(seen: Identified, region: Region, warp: Direction) -> ThreadReading:
     if across is None or down is None:
         return _refused(found(Flag.TOO_FEW_THREADS), tiles=tiles)
     faint = min(seen.evidence.ends_line, seen.evidence.picks_line) < LEAST_LINE
-    if faint and (_lost(across) or _lost(down)):
+    if faint and (is_lost(across) or is_lost(down)):
         return _refused(found(Flag.NOT_WOVEN), tiles=tiles)
     names = _names(warp)
     findings: list[Finding] = []
@@ -207,12 +212,12 @@ def _read(seen: Identified, region: Region, warp: Direction) -> ThreadReading:
             ratio = float(multiple.rival / multiple.factor)
             other = (each.frequency[0] * ratio, each.frequency[1] * ratio)
             forks.append(Fork(name, (each.frequency, other)))
-        findings += _said_of(name, each, multiple.rival is not None)
+        findings += of_set(name, each, multiple.rival is not None)
     named = list(zip(names, (across, down), strict=True))
     refused = {each.set_name for each in forks}
-    refused |= {name for name, each in named if _weak(each)}
+    refused |= {name for name, each in named if is_weak(each)}
     kept = {name: None if name in refused else each for name, each in named}
-    findings += _said_of_field(seen, region, tiles)
+    findings += of_field(seen.candidate.turn, seen.origin.region, region, tiles)
     return ThreadReading(
         kept["ends"],
         kept["picks"],
@@ -222,47 +227,6 @@ def _read(seen: Identified, region: Region, warp: Direction) -> ThreadReading:
         tuple(forks),
         tuple(findings),
     )
-
-
-def _lost(each: ThreadSet) -> bool:
-    return each.u_relative > LARGEST_U or each.local_scatter > LARGEST_SCATTER
-
-
-def _weak(each: ThreadSet) -> bool:
-    return each.pixels_a_thread < FEWEST_PIXELS or _lost(each)
-
-
-def _said_of(name: str, each: ThreadSet, forked: bool) -> list[Finding]:
-    said = []
-    pixels = each.pixels_a_thread
-    if pixels < FEWEST_PIXELS:
-        message = f"only {pixels:.1f} pixels a thread: the {name} are too fine for this picture"
-        remedy = f"scan at {math.ceil(8 / pixels)} times the resolution"
-        said.append(found(Flag.TOO_COARSE, message, remedy))
-    elif pixels < FEW_PIXELS:
-        said.append(found(Flag.FEW_PIXELS_A_THREAD, f"only {pixels:.1f} pixels a thread ({name})"))
-    if _lost(each):
-        said.append(found(Flag.THREADS_LOST, f"the {name} could not be followed over the field"))
-    if forked:
-        said.append(found(Flag.TWO_READINGS, f"two readings of the {name} stay possible"))
-    return said
-
-
-def _said_of_field(seen: Identified, region: Region, tiles: tuple[Tile, ...]) -> list[Finding]:
-    said = []
-    turn = seen.candidate.turn
-    if abs(turn) > NEAR_HALF_RIGHT:
-        said.append(found(Flag.WARP_UNCERTAIN, f"the swatch is turned by {turn:.0f} degrees"))
-    elif abs(turn) > 3:
-        said.append(found(Flag.SWATCH_TURNED, f"the swatch is turned by {turn:.1f} degrees"))
-    out = sum(not tile.used for tile in tiles)
-    if out:
-        message = f"{out} of {len(tiles)} parts of the field could not be followed"
-        said.append(found(Flag.TILES_LEFT_OUT, message))
-    cut = seen.origin.region
-    if cut.width < 0.9 * region.width or cut.height < 0.9 * region.height:
-        said.append(found(Flag.MIDDLE_COUNTED))
-    return said
 
 
 def _set(
@@ -278,6 +242,9 @@ def _set(
     zoom = seen.origin.zoom
     local = local_density(phase, followed, pieces, frequency)
     parts = _parts(counted)
+    # lines across turned cloth each meet other threads, and their mean is that of a sample
+    turned = abs(math.sin(2 * math.atan2(frequency[1], frequency[0])))
+    parts["turn"] = TURN * turned * local.scatter / math.sqrt(len(pieces.blocks))
     return ThreadSet(
         frequency=(counted.frequency[0] / zoom, counted.frequency[1] / zoom),
         counted=counted.counted,

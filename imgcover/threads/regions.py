@@ -5,11 +5,12 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass, replace
 
+import cv2
 import numpy as np
 from numpy.typing import NDArray
 
 from imgcover.quantity import Measured
-from imgcover.threads.follow import Followed
+from imgcover.threads.follow import STRONG_ENOUGH, Followed
 from imgcover.threads.reading import Tile
 
 THREADS_A_TILE = 8
@@ -24,6 +25,9 @@ FOLLOWED_SHARE = 0.6
 
 FEWEST_PLACES = 6
 """Places a plane is fitted to; three would fit any."""
+
+SMOOTH = 0.3
+"""Share of the cloth's local contrast below which a place may be bare bed."""
 
 UNCLEAR = ("threads not clear", "unlike the rest")
 """Why a tile with threads in it is left out."""
@@ -88,6 +92,46 @@ def _cuts(places: NDArray[np.float64], length: int, period: float) -> list[tuple
         (slice(bounds[k], bounds[k + 1]), round(edges[k]), round(edges[k + 1]))
         for k in range(parts)
     ]
+
+
+def away_from_bare(
+    followed: Followed, light: NDArray[np.float32], period: float
+) -> NDArray[np.bool_]:
+    """Tell which places are followed and lie clear of where there is no cloth.
+
+    Parameters
+    ----------
+    light : ndarray, shape (rows, columns), float32
+        The field.
+    period : float
+        The longer thread period, field pixels.
+
+    Returns
+    -------
+    ndarray, shape of the grid, bool
+
+    Notes
+    -----
+    The step from cloth to bare bed is a wave of every length, and seems to carry the threads on
+    for two or three more. Bare bed is smooth: from where no thread is followed it is traced up to
+    the cloth, and a margin is left out beside it.
+    """
+    around = np.ones((3, 3), np.uint8)
+    lost = (followed.strength <= STRONG_ENOUGH).astype(np.uint8)
+    core = cv2.morphologyEx(lost, cv2.MORPH_OPEN, around)
+    if not core.any():
+        return followed.valid
+    side = 2 * round(0.75 * period) + 1
+    root = np.sqrt(np.maximum(light, 0.0))
+    mean = cv2.blur(root, (side, side), borderType=cv2.BORDER_REFLECT)
+    square = cv2.blur(root * root, (side, side), borderType=cv2.BORDER_REFLECT)
+    rows, columns = (np.rint(each).astype(int) for each in (followed.y, followed.x))
+    texture = np.sqrt(np.maximum(square - mean * mean, 0.0))[np.ix_(rows, columns)]
+    usual = float(np.median(texture[followed.valid])) if followed.valid.any() else 0.0
+    smooth = (texture < SMOOTH * usual).astype(np.uint8)
+    _, labels = cv2.connectedComponents(smooth | core, connectivity=4)
+    bare = np.isin(labels, np.unique(labels[core > 0])).astype(np.uint8)
+    return np.asarray(followed.valid & (cv2.dilate(bare, around) == 0))
 
 
 @dataclass(frozen=True, slots=True)
@@ -226,6 +270,7 @@ __all__ = [
     "UNCLEAR",
     "LocalDensity",
     "Pieces",
+    "away_from_bare",
     "bow_of",
     "divide",
     "local_density",

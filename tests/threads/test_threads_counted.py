@@ -105,21 +105,21 @@ def told(reading: ThreadReading) -> list[str]:
 
 
 def test_a_tie_is_refused_and_the_declared_weave_may_break_it() -> None:
-    """Warp-faced twill: alone, a float could be one end or two; the twill's cell says which."""
-    picture, light, woven, scale = drawn("denim", 0, "backlit")
+    """Weft rib: alone, a pair of ends could be one broad end; the rib's cell says which."""
+    picture, light, woven, scale = drawn("rib", 4, "reflected")
     alone = read_threads(Plain(light))
-    assert alone.ends is None and alone.picks is not None
-    assert has(alone.findings, Flag.TWO_READINGS)
-    (fork,) = alone.forks
-    readings = [np.hypot(*(scale * each)) for each in fork.frequencies]
-    assert fork.set_name == "ends"
-    assert min(abs(each / picture.truth.ends - 1) for each in readings) < RIGHT
+    assert alone.ends is None and alone.picks is None
+    assert told(alone) == ["two-readings"] * 2
+    truth = (picture.truth.ends, picture.truth.picks)
+    for fork, true in zip(alone.forks, truth, strict=True):
+        readings = [np.hypot(*(scale * each)) for each in fork.frequencies]
+        assert min(abs(each / true - 1) for each in readings) < RIGHT
     helped = read_threads(Plain(light), weave=weave(woven))
     assert told(helped) == ["rests-on-declared-weave"]
-    assert helped.ends is not None and not helped.forks
-    density = np.hypot(*(scale * helped.ends.frequency))
-    assert density == pytest.approx(picture.truth.ends, rel=RIGHT)
-    assert told(read_threads(Plain(light), weave=weave("2/2 hopsack"))) == ["two-readings"]
+    assert helped.ends is not None and helped.picks is not None and not helped.forks
+    for counted, true in zip((helped.ends, helped.picks), truth, strict=True):
+        assert np.hypot(*(scale * counted.frequency)) == pytest.approx(true, rel=RIGHT)
+    assert told(read_threads(Plain(light), weave=weave("8-end satin"))) == ["two-readings"] * 2
 
 
 def test_pairs_are_no_weave_so_it_cannot_tell_them_from_threads() -> None:

@@ -28,7 +28,7 @@ def followed(
 ) -> Followed:
     valid = np.ones((ROWS, COLUMNS), bool) if valid is None else valid
     strength = valid.astype(float)
-    return Followed(ends, NOWHERE, valid, X[0], Y[:, 0], strength, 1.0, 1)
+    return Followed(ends, NOWHERE, valid, X[0], Y[:, 0], strength, 1.0)
 
 
 @settings(max_examples=25, deadline=None)
