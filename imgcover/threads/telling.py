@@ -21,8 +21,9 @@ stripes turn the contrast over and a thread was lost it is 0.1."""
 NEAR_HALF_RIGHT = 35.0
 """Degrees of turn from which on the nearer axis says little about which set is the warp."""
 
-LARGEST_U = 0.0075
-"""A count looser than this has lost its threads somewhere, and decides nothing."""
+LARGEST_U, LARGEST_U_THREADS = 0.0075, 0.15
+"""A count looser than both, relative and in threads, has lost its threads somewhere. Among a
+handful of threads the unknown place of the outermost alone is more than the first."""
 
 HALF_A_THREAD, LARGEST_U_THEN = 0.25, 0.005
 """Threads of u from which on one thread more or less is not excluded (2 u is half a thread), and
@@ -31,8 +32,10 @@ the relative u from which on that matters: among hundreds of threads it does not
 
 def is_lost(each: ThreadSet) -> bool:
     """Whether threads were lost on the way from edge to edge."""
-    unsure = each.u_relative * each.counted > HALF_A_THREAD and each.u_relative > LARGEST_U_THEN
-    return unsure or each.u_relative > LARGEST_U or each.local_scatter > LARGEST_SCATTER
+    threads = each.u_relative * each.counted
+    unsure = threads > HALF_A_THREAD and each.u_relative > LARGEST_U_THEN
+    loose = threads > LARGEST_U_THREADS and each.u_relative > LARGEST_U
+    return unsure or loose or each.local_scatter > LARGEST_SCATTER
 
 
 def is_weak(each: ThreadSet) -> bool:

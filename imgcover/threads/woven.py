@@ -29,6 +29,14 @@ threads' own lines in it and next to nothing beside it, is that of a twill or sa
 warp-faced cloth the other set has no streak to show."""
 
 
+SURE_SCORE = 7.0
+"""Spectral witnesses below which only plain cloth that shows its weave is believed: 200 drawn
+cloths lie above it; rib knits, pickets, scales and water reach 6.8."""
+
+SILENT_PAIR = 0.17
+"""Share of the strongest line's amplitude that the louder of the threads' own lines reaches in a
+printed screen of dots in quincunx; 0.2 and more in two-colour cloth."""
+
 STRAIGHT = 12.0
 """Degrees of turn within which a pair is taken for what it looks like: nearly all swatches lie so,
 and few combinations of other lines of a pattern do."""
@@ -55,6 +63,16 @@ def crossing(seen: Identified) -> bool:
     regular = one.index > 2 and one.parts == (1, 1) and e.against < 0.03 and e.apart < apart
     loud = min(seen.ends.amplitude, seen.picks.amplitude) / seen.followed.loudest
     straight = abs(one.turn) < STRAIGHT
+    plain = one.index == 2 and one.parts == (1, 1)
+    if e.score < SURE_SCORE and not (
+        plain and straight and min(e.ends_streak, e.picks_streak) > 0.3
+    ):
+        return False
+    if (
+        plain
+        and max(seen.ends.amplitude, seen.picks.amplitude) < SILENT_PAIR * seen.followed.loudest
+    ):
+        return False
     if not straight and loud < TURNED_LOUDNESS:
         return False
     even = one.index > 1 and one.parts == (1, 1) and loud > EVEN_LOUDNESS
