@@ -75,7 +75,8 @@ class Flag(Enum):
         → find out which is wrong: check the rule, the stated pitch and the device"""
     # scale: rule
     NO_RULE_FOUND = """warning: no rule was found in the picture
-        → lay a clean rule flat on the cloth, its lines fully in the frame, 10 lines or more"""
+        → lay a clean, opaque rule flat on the cloth, at least 22 mm or two inch lines of it in
+        the frame"""
     RULE_UNIT_OPEN = """warning: the rule's unit is not certain from its lines
         → say --rule mm or --rule inch, or let more of the rule into the frame"""
     RULE_REFUSED = """warning: a rule was found but its scale cannot be trusted

@@ -3,11 +3,13 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
+from importlib import import_module
 from typing import Any
 
 import cv2
 import numpy as np
 
+from imgcover.asking import ALWAYS_ASKED
 from imgcover.audit.evidence import evidence_text
 from imgcover.audit.grounds import OffGroundsError, read_file
 from imgcover.audit.orders import Order
@@ -22,6 +24,10 @@ from imgcover.report.canvas import eight_bits, resized
 from imgcover.report.closeup import close_up
 from imgcover.report.strips import marked_sets
 from imgcover.request import Request
+
+for each in (*ALWAYS_ASKED, "imgcover.verdict.swatch", "scipy.special"):
+    # loaded with this module: a worker's clock starts when all that it will need is there
+    import_module(each)
 
 SMALL = 360
 """Side of a small picture, px: three stand beside one another on a page, and print sharp enough

@@ -197,7 +197,7 @@ def _watched(audit: Audit, asked: AuditAsked, out: OutFolder) -> ExitCode:
         if now != done and listing.pictures:
             audit.round(listing)
             done = now
-            still = f"; not whole yet: {_pictures(waiting)}" if waiting else ""
+            still = f"; not there or not whole yet: {_pictures(waiting)}" if waiting else ""
             tell(f"waiting for pictures{still}")
     return ExitCode.CONFORMS
 

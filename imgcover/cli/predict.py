@@ -59,8 +59,12 @@ def predict(
             )
         else:
             records = [
-                prediction_record(prediction, declaration=declaration)
-                for prediction, declaration in zip(predictions, declarations, strict=True)
+                prediction_record(
+                    prediction, declaration=declaration, comparison=comparison, index=index
+                )
+                for index, (prediction, declaration) in enumerate(
+                    zip(predictions, declarations, strict=True)
+                )
             ]
             told = {"json": json_array, "jsonl": json_lines, "csv": prediction_csv}[form]
             for piece in told(records):

@@ -6,6 +6,7 @@ predicted, with its own uncertainty; what lies within two u of it is a tie and i
 
 from __future__ import annotations
 
+import itertools
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, replace
 
@@ -33,19 +34,27 @@ class ComparisonLine:
         "warp", "weft", "whole", "tightness" or "mass".
     values : tuple of (Measured or None)
         One a cloth, in the order given; None where it cannot be predicted.
-    closest : int or None
-        Which of them is the closest (or the heaviest); None where it cannot be told.
-    difference : Measured or None
-        How far the closest, or the first of a tie, is ahead of the next.
+    order : tuple of int
+        The cloths from the closest (or the heaviest) on; empty where one cannot be predicted.
+    ahead : tuple of Measured
+        How far each in that order is ahead of the next.
+    apart : tuple of bool
+        Whether that tells the two apart.
     reason : str
         Why, in a sentence.
     """
 
     respect: str
     values: tuple[Measured | None, ...]
-    closest: int | None
-    difference: Measured | None
+    order: tuple[int, ...]
+    ahead: tuple[Measured, ...]
+    apart: tuple[bool, ...]
     reason: str
+
+    @property
+    def closest(self) -> int | None:
+        """Which of them is the closest (or the heaviest); None where it cannot be told."""
+        return self.order[0] if self.apart and self.apart[0] else None
 
 
 @dataclass(frozen=True, slots=True)
@@ -54,6 +63,10 @@ class Comparison:
 
     predictions: tuple[Prediction, ...]
     lines: tuple[ComparisonLine, ...]
+
+    def label(self, index: int) -> str:
+        """The article's code; with its place where several sheets carry the same."""
+        return _label(self.predictions, index)
 
 
 def compare(predictions: Sequence[Prediction]) -> Comparison:
@@ -131,21 +144,37 @@ def _line(
     values = tuple(_value(quantity, each, unit) for each in cloths)
     known = [(value.value, index) for index, value in enumerate(values) if value is not None]
     if len(known) < len(cloths):
-        return ComparisonLine(respect, values, None, None, "not every sheet declares a weave")
+        return ComparisonLine(respect, values, (), (), (), "not every sheet declares a weave")
     ranked = sorted(known, key=lambda pair: -pair[0])
-    (most, first), (_, second) = ranked[:2]
-    difference = _difference(quantity, cloths[first], cloths[second], unit)
-    tells = difference.value > max(COVERAGE * difference.u, SAME * abs(most))
-    one, other = _label(predictions, first), _label(predictions, second)
-    words = f"{one} {_COMPARATIVE[respect]} than {other}"
-    if not tells:
-        words = f"{one} and {other} cannot be told apart within the uncertainty"
-    reason = f"{words}: {_REASONS[respect](predictions[first], predictions[second])}"
-    return ComparisonLine(respect, values, first if tells else None, difference, reason)
+    order = tuple(index for _, index in ranked)
+    ahead = tuple(
+        _difference(quantity, cloths[first], cloths[second], unit)
+        for first, second in itertools.pairwise(order)
+    )
+    apart = tuple(
+        each.value > max(COVERAGE * each.u, SAME * abs(most))
+        for each, (most, _) in zip(ahead, ranked, strict=False)
+    )
+    words = _ranked(respect, [_label(predictions, index) for index in order], apart)
+    reason = f"{words}: {_REASONS[respect]([predictions[index] for index in order])}"
+    return ComparisonLine(respect, values, order, ahead, apart, reason)
+
+
+def _ranked(respect: str, names: Sequence[str], apart: Sequence[bool]) -> str:
+    """Say the order of two or more cloths, and who cannot be told apart."""
+    if len(names) == 2 and apart[0]:
+        return f"{names[0]} {_COMPARATIVE[respect]} than {names[1]}"
+    if not any(apart):
+        listed = f"{', '.join(names[:-1])} and {names[-1]}"
+        return f"{listed} cannot be told apart within the uncertainty"
+    words = names[0]
+    for name, tells in zip(names[1:], apart, strict=True):
+        words += f", then {name}" if tells else f" or {name}"
+    unsure = "" if all(apart) else " (or: not told apart within the uncertainty)"
+    return f"{_SUPERLATIVE[respect]} {words}{unsure}"
 
 
 def _label(predictions: Sequence[Prediction], index: int) -> str:
-    """The article's code; with its place where several sheets carry the same."""
     code = predictions[index].code
     alike = [each for each in predictions if each.code == code]
     return code if len(alike) == 1 else f"{code} ({index + 1})"
@@ -166,6 +195,13 @@ def _difference(
     return combined(ahead, (*first.constants, *second.constants), unit=unit)[0]
 
 
+_SUPERLATIVE = {
+    "warp": "the closest warp is that of",
+    "weft": "the closest weft is that of",
+    "whole": "the closest cloth is",
+    "tightness": "nearest to its limit of weaving is",
+    "mass": "the heaviest is",
+}
 _COMPARATIVE = {
     "warp": "has the closer warp",
     "weft": "has the closer weft",
@@ -175,44 +211,46 @@ _COMPARATIVE = {
 }
 
 
-def _warp_reason(first: Prediction, second: Prediction) -> str:
-    return _threads_reason(
-        (first.warp_factor, first.ends.k, first.warp),
-        (second.warp_factor, second.ends.k, second.warp),
-    )
+def _warp_reason(these: Sequence[Prediction]) -> str:
+    return _threads_reason([(each.warp_factor, each.ends.k, each.warp) for each in these])
 
 
-def _weft_reason(first: Prediction, second: Prediction) -> str:
-    return _threads_reason(
-        (first.weft_factor, first.picks.k, first.weft),
-        (second.weft_factor, second.picks.k, second.weft),
-    )
+def _weft_reason(these: Sequence[Prediction]) -> str:
+    return _threads_reason([(each.weft_factor, each.picks.k, each.weft) for each in these])
 
 
 Figures = tuple[Measured, Measured | None, Measured]
 
 
-def _threads_reason(first: Figures, second: Figures) -> str:
-    factors = f"K {first[0].value:.2f} against {second[0].value:.2f}"
-    if first[1] is not None and second[1] is not None:
-        return f"{factors}, k = K/28 {first[1].value:.3f} against {second[1].value:.3f}"
-    return f"{factors}, width over spacing {first[2].value:.3f} against {second[2].value:.3f}"
+def _threads_reason(these: Sequence[Figures]) -> str:
+    factors = f"K {_against([f'{factor.value:.2f}' for factor, _, _ in these])}"
+    known = [k for _, k, _ in these if k is not None]
+    if len(known) == len(these):
+        return f"{factors}, k = K/28 {_against([f'{k.value:.3f}' for k in known])}"
+    shares = _against([f"{share.value:.3f}" for _, _, share in these])
+    return f"{factors}, width over spacing {shares}"
 
 
-def _whole_reason(first: Prediction, second: Prediction) -> str:
-    return (
-        f"predicted cover {first.cover.value:.1%} against {second.cover.value:.1%}, "
-        f"cloth factor {first.cloth_factor.value:.2f} against {second.cloth_factor.value:.2f}"
-    )
+def _whole_reason(these: Sequence[Prediction]) -> str:
+    covers = _against([f"{each.cover.value:.1%}" for each in these])
+    factors = _against([f"{each.cloth_factor.value:.2f}" for each in these])
+    return f"predicted cover {covers}, cloth factor {factors}"
 
 
-def _tightness_reason(first: Prediction, second: Prediction) -> str:
-    shares = [each.limit.tightness.value for each in (first, second) if each.limit]
-    return " against ".join(f"{share:.0%}" for share in shares) + " of the jammed sett"
+def _tightness_reason(these: Sequence[Prediction]) -> str:
+    shares = [f"{each.limit.tightness.value:.0%}" for each in these if each.limit]
+    return f"{_against(shares)} of the jammed sett"
 
 
-def _mass_reason(first: Prediction, second: Prediction) -> str:
-    return f"{first.mass.value:.4g} against {second.mass.value:.4g} g/m²"
+def _mass_reason(these: Sequence[Prediction]) -> str:
+    return f"{_against([f'{each.mass.value:.4g}' for each in these])} g/m²"
+
+
+def _against(figures: Sequence[str]) -> str:
+    """Two figures against each other; more one after another, in the order that was said."""
+    if len(figures) == 2:
+        return " against ".join(figures)
+    return f"{', '.join(figures[:-1])} and {figures[-1]}"
 
 
 _REASONS = {

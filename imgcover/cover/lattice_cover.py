@@ -35,7 +35,7 @@ PIXEL_BLUR = 0.29
 """Standard deviation of a pixel's own aperture: 1 / √12 px."""
 FEWEST_BLURS = 1.5
 """Pores smaller than so many blurs can leave a fit astray on any backlit cloth."""
-LEAST_SURE = 0.006
+LEAST_SURE = 0.0075
 """A cover less sure than this is refused: threads and pores so small leave the section of the yarns
 to be guessed, and with it where they end."""
 MOST_MISFIT = 0.008

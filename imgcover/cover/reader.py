@@ -2,16 +2,21 @@
 
 from __future__ import annotations
 
+import math
+
 import numpy as np
 from numpy.typing import NDArray
 
 from imgcover.cover.lattice_cover import by_openings
+from imgcover.cover.masking import cloth_only
 from imgcover.cover.places import pore_places
 from imgcover.cover.plain_cover import by_levels
 from imgcover.cover.reading import CoverReading, Lattice, Lit, Pitch
-from imgcover.cover.windows import Sheet, exposed, parts, spread
+from imgcover.cover.windows import Sheet, cell_sides, exposed, parts, spread
 from imgcover.findings import Flag, found
 
+AROUND = 8.0
+"""So many cells around the field are looked at: bare light beyond a frayed rim lies within them."""
 FEWEST_PORES = 16
 """Fewer cannot tell light, blur and yarn apart."""
 
@@ -56,12 +61,16 @@ def read_cover(
         return CoverReading(findings=(found(Flag.COVER_NEEDS_BACKLIGHT),))
     picture, bare, without = (_lit(each) for each in (source, blank, dark))
     assert picture is not None
-    windows = exposed(spread(picture, field=field), blank=bare, dark=without)
+    around = 0 if lattice is None else math.ceil(AROUND * max(cell_sides(lattice)))
+    windows = exposed(spread(picture, field=field, around=around), blank=bare, dark=without)
     if not windows:
         return CoverReading(findings=(found(Flag.NO_CLOTH_TO_COVER),))
     size = (picture.rows, picture.columns)
     known = bare is not None
     if light == "backlit" and lattice is not None:
+        windows = cloth_only(windows, lattice, size=size)
+        if not windows:
+            return CoverReading(findings=(found(Flag.NO_CLOTH_TO_COVER),))
         places = pore_places(parts(windows, lattice), lattice)
         if len(places.row) >= FEWEST_PORES:
             return by_openings(windows, places, lattice, pitch, size=size, light_known=known)

@@ -69,7 +69,11 @@ class Sheet:
 
 
 def spread(
-    source: Lit, *, field: NDArray[np.bool_] | None, pixels: int = PIXELS_READ
+    source: Lit,
+    *,
+    field: NDArray[np.bool_] | None,
+    pixels: int = PIXELS_READ,
+    around: int = 0,
 ) -> list[Window]:
     """Take the whole field where it is small, else windows on an even grid over it.
 
@@ -80,13 +84,15 @@ def spread(
         True where the cloth is; None means everywhere.
     pixels : int
         About how many pixels may be read.
+    around : int
+        So many px around the field are read too, and are not inside: they show what lies there.
 
     Returns
     -------
     list of Window
         In reading order; windows less than half in the field are left out.
     """
-    top, left, bottom, right = _bounds(source, field)
+    top, left, bottom, right = _bounds(source, field, around)
     if (bottom - top) * (right - left) <= pixels:
         return _read(source, field, [(top, left, bottom - top, right - left)])
     height, width = min(WINDOW_SIDE, bottom - top), min(WINDOW_SIDE, right - left)
@@ -176,14 +182,19 @@ def _places(
     return sorted(set(places))
 
 
-def _bounds(source: Lit, field: NDArray[np.bool_] | None) -> tuple[int, int, int, int]:
-    """First and past-last row and column of the field."""
+def _bounds(source: Lit, field: NDArray[np.bool_] | None, around: int) -> tuple[int, int, int, int]:
+    """First and past-last row and column of the field and what is around it."""
     if field is None:
         return 0, 0, source.rows, source.columns
     rows, columns = np.flatnonzero(field.any(axis=1)), np.flatnonzero(field.any(axis=0))
     if rows.size == 0:
         return 0, 0, 0, 0
-    return int(rows[0]), int(columns[0]), int(rows[-1]) + 1, int(columns[-1]) + 1
+    return (
+        max(0, int(rows[0]) - around),
+        max(0, int(columns[0]) - around),
+        min(source.rows, int(rows[-1]) + 1 + around),
+        min(source.columns, int(columns[-1]) + 1 + around),
+    )
 
 
 def _read(

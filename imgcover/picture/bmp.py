@@ -14,7 +14,7 @@ from numpy.typing import NDArray
 
 from imgcover.picture.exif import positive_pair
 from imgcover.picture.header import Header, Stored, damaged, not_read_here
-from imgcover.picture.profile import ProfileError, profile_refused, tone_of_profile
+from imgcover.picture.profile import ProfileError, tone_of_profile
 from imgcover.tone import Tone
 
 SIGNATURE = b"BM"
@@ -41,6 +41,8 @@ def read_bmp(data: bytes, name: str) -> Header:
     ------
     PictureError
         When rows are missing, or the picture is of a sort not read here.
+    ProfileError
+        When its colour profile cannot be honoured.
     """
     if len(data) < FILE_HEADER + 40:
         raise damaged(name, "the BMP is truncated: its header is cut short")
@@ -61,7 +63,7 @@ def read_bmp(data: bytes, name: str) -> Header:
     if pixels_at < FILE_HEADER + size:
         raise damaged(name, "the BMP header is malformed")
     palette = _palette(data, size, pixels_at, used, name) if depth == 8 else None
-    tone = _profile(data, size, name)
+    tone = _profile(data, size)
     return Header(
         kind="BMP",
         width=width,
@@ -118,17 +120,14 @@ def _alpha_mask(data: bytes, size: int, name: str) -> int:
     return int(struct.unpack_from("<I", data, begin + 12)[0]) if size >= 56 else 0
 
 
-def _profile(data: bytes, size: int, name: str) -> Tone | None:
+def _profile(data: bytes, size: int) -> Tone | None:
     if size != 124:
         return None
     kind = data[FILE_HEADER + 56 : FILE_HEADER + 60]
     at, length = struct.unpack_from("<II", data, FILE_HEADER + 112)
-    try:
-        if kind == LINKED:
-            raise ProfileError("is only a link to another file")
-        return tone_of_profile(data[FILE_HEADER + at :][:length]) if kind == EMBEDDED else None
-    except ProfileError as fault:
-        raise profile_refused(name, fault) from fault
+    if kind == LINKED:
+        raise ProfileError("is only a link to another file")
+    return tone_of_profile(data[FILE_HEADER + at :][:length]) if kind == EMBEDDED else None
 
 
 __all__ = ["SIGNATURE", "read_bmp"]

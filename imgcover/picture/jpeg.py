@@ -20,7 +20,7 @@ from imgcover.findings import Finding
 from imgcover.picture.exif import one_dpi, positive_pair, read_exif
 from imgcover.picture.header import Header, Stored, damaged, not_read_here, through_codec
 from imgcover.picture.markers import Segments, walk
-from imgcover.picture.profile import ProfileError, profile_refused, tone_of_profile
+from imgcover.picture.profile import tone_of_profile
 from imgcover.tone import Tone
 
 SIGNATURE = b"\xff\xd8\xff"
@@ -44,6 +44,8 @@ def read_jpeg(data: bytes, name: str) -> Header:
     ------
     PictureError
         When the file is cut short or damaged, or the picture is of a sort not read here.
+    ProfileError
+        When its colour profile cannot be honoured.
     """
     segments = walk(data, name)
     frame = segments.frame
@@ -51,7 +53,7 @@ def read_jpeg(data: bytes, name: str) -> Header:
         raise not_read_here(name, f"the JPEG has {len(frame.components)} colour channels")
     exif = read_exif(next((each for each in segments.app1 if each.startswith(EXIF_MARK)), b""))
     dpi, contradiction = one_dpi(_density(segments), exif.dpi)
-    tone, tone_from = _profile(segments, name)
+    tone, tone_from = _profile(segments)
     if tone is None and exif.tone is not None:
         tone, tone_from = exif.tone, "its EXIF colour space"
     findings: tuple[Finding, ...] = (*exif.findings, *contradiction)
@@ -121,15 +123,12 @@ def _density(segments: Segments) -> tuple[float, float] | None:
     return positive_pair(x, y, 1.0 if block[7] == 1 else 2.54)
 
 
-def _profile(segments: Segments, name: str) -> tuple[Tone | None, str]:
+def _profile(segments: Segments) -> tuple[Tone | None, str]:
     """Join the numbered parts of the ICC profile and find its curve (ICC.1:2022, B.4)."""
     parts = {each[12]: each[14:] for each in segments.app2 if each.startswith(ICC_MARK)}
     if not parts:
         return None, ""
-    try:
-        return tone_of_profile(b"".join(parts[key] for key in sorted(parts))), "its ICC profile"
-    except ProfileError as fault:
-        raise profile_refused(name, fault) from fault
+    return tone_of_profile(b"".join(parts[key] for key in sorted(parts))), "its ICC profile"
 
 
 __all__ = ["SIGNATURE", "has_grey_block", "parses_strictly", "read_jpeg"]

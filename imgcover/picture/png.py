@@ -16,7 +16,7 @@ import imagecodecs
 from imgcover.findings import Finding, Flag, found
 from imgcover.picture.exif import one_dpi, positive_pair, read_exif
 from imgcover.picture.header import Header, Stored, damaged, not_read_here, through_codec
-from imgcover.picture.profile import ProfileError, profile_refused, tone_of_profile
+from imgcover.picture.profile import ProfileError, tone_of_profile
 from imgcover.tone import HIGHEST_GAMMA, LINEAR, LOWEST_GAMMA, SRGB, Tone
 
 SIGNATURE = b"\x89PNG\r\n\x1a\n"
@@ -61,6 +61,8 @@ def read_png(data: bytes, name: str) -> Header:
     ------
     PictureError
         When a chunk is missing, cut short or altered, or the picture is of a sort not read here.
+    ProfileError
+        When its colour profile cannot be honoured.
     """
     chunks = _walk(data, name)
     head = chunks.get(b"IHDR")
@@ -150,10 +152,7 @@ def _tone(chunks: _Chunks, name: str) -> tuple[Tone | None, str]:
             raise not_read_here(name, "the PNG states a video tone curve")
         return tone, "its cICP chunk"
     if block := chunks.get(b"iCCP"):
-        try:
-            return tone_of_profile(_unpacked(block)), "its ICC profile"
-        except ProfileError as fault:
-            raise profile_refused(name, fault) from fault
+        return tone_of_profile(_unpacked(block)), "its ICC profile"
     if b"sRGB" in chunks.places:
         return SRGB, "its sRGB chunk"
     block = chunks.get(b"gAMA")

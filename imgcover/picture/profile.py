@@ -15,7 +15,6 @@ import struct
 import numpy as np
 from numpy.typing import NDArray
 
-from imgcover.errors import PictureError
 from imgcover.tone import HIGHEST_GAMMA, LINEAR, LOWEST_GAMMA, SRGB, Tone
 
 SAME_CURVE = 0.004
@@ -152,13 +151,4 @@ def _parametric(function: int, given: list[float]) -> NDArray[np.float64]:
     return np.clip(np.where(d <= _STORED, power, c * _STORED + f), 0, 1)
 
 
-def profile_refused(name: str, fault: ProfileError) -> PictureError:
-    """Make the error for a picture whose colour profile cannot be honoured."""
-    return PictureError(
-        name,
-        f"the embedded colour profile {fault}",
-        "convert the picture to sRGB, or save it without the profile and say --tone",
-    )
-
-
-__all__ = ["ProfileError", "nearest_tone", "profile_refused", "same_curve", "tone_of_profile"]
+__all__ = ["ProfileError", "nearest_tone", "same_curve", "tone_of_profile"]

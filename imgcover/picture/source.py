@@ -10,6 +10,7 @@ from pathlib import Path
 from imgcover.errors import PictureError
 from imgcover.picture import bmp, jpeg, png, tiff, webp
 from imgcover.picture.header import SAVE_PLAIN, Header
+from imgcover.picture.profile import ProfileError
 
 MOST_BYTES = 2 << 30
 """The largest picture accepted, 300 million pixels of 16-bit RGB, takes 1.8 GB uncompressed."""
@@ -93,7 +94,14 @@ def read_header(data: bytes, name: str) -> Header:
     """
     reader = _reader(data)
     if reader is not None:
-        return reader(data, name)
+        try:
+            return reader(data, name)
+        except ProfileError as fault:
+            raise PictureError(
+                name,
+                f"the embedded colour profile {fault}",
+                "convert the picture to sRGB, or save it without the profile and say --tone",
+            ) from fault
     if not data:
         raise PictureError(name, "the file is empty", "scan or export it again")
     for at, mark, told in OTHER_KINDS:

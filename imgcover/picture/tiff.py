@@ -15,12 +15,7 @@ from imgcover.findings import Finding, Flag, found
 from imgcover.picture.exif import dpi_of, one_dpi, orientation_of, tone_of
 from imgcover.picture.header import Header, Stored, damaged, not_read_here
 from imgcover.picture.ifd import Directory, DirectoryError, Tree, open_tree
-from imgcover.picture.profile import (
-    ProfileError,
-    nearest_tone,
-    profile_refused,
-    tone_of_profile,
-)
+from imgcover.picture.profile import ProfileError, nearest_tone, tone_of_profile
 from imgcover.picture.strips import CODECS, Layout, decode_layout
 from imgcover.tone import Tone
 
@@ -59,6 +54,8 @@ def read_tiff(data: bytes, name: str) -> Header:
     ------
     PictureError
         When any page points outside the file, or the first is of a sort not read here.
+    ProfileError
+        When its colour profile cannot be honoured.
     """
     try:
         tree = open_tree(data)
@@ -92,7 +89,7 @@ def _read_page(tree: Tree, pages: list[Directory], name: str) -> Header:
     lookup = _colour_map(page, sort.bits, name) if sort.photometric == PALETTE else None
     inverted = sort.photometric == WHITE_IS_ZERO
     orientation, odd = orientation_of(page)
-    tone, tone_from = _tone(page, sort, name)
+    tone, tone_from = _tone(page, sort)
     dpi, contradiction = one_dpi(dpi_of(page))
     return Header(
         kind="TIFF",
@@ -182,19 +179,16 @@ def _colour_map(page: Directory, bits: int, name: str) -> Stored:
     return np.ascontiguousarray(colours)
 
 
-def _tone(page: Directory, sort: _Sort, name: str) -> tuple[Tone | None, str]:
+def _tone(page: Directory, sort: _Sort) -> tuple[Tone | None, str]:
     """Find the claimed curve: ICC profile, then transfer function, then EXIF colour space."""
-    try:
-        if profile := page.raw(PROFILE):
-            return tone_of_profile(profile), "its ICC profile"
-        if values := page.numbers(TRANSFER):
-            curves = np.array(values[: len(values) >> sort.bits << sort.bits], dtype=np.float64)
-            tones = {nearest_tone(one / 65535) for one in curves.reshape(-1, 1 << sort.bits)}
-            if len(tones) == 1:
-                return tones.pop(), "its transfer function"
-            raise ProfileError("has a different tone curve for each colour")
-    except ProfileError as fault:
-        raise profile_refused(name, fault) from fault
+    if profile := page.raw(PROFILE):
+        return tone_of_profile(profile), "its ICC profile"
+    if values := page.numbers(TRANSFER):
+        curves = np.array(values[: len(values) >> sort.bits << sort.bits], dtype=np.float64)
+        tones = {nearest_tone(one / 65535) for one in curves.reshape(-1, 1 << sort.bits)}
+        if len(tones) == 1:
+            return tones.pop(), "its transfer function"
+        raise ProfileError("has a different tone curve for each colour")
     tone = tone_of(page)
     return (tone, "its EXIF colour space") if tone is not None else (None, "")
 

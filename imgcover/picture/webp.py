@@ -14,7 +14,7 @@ import imagecodecs
 from imgcover.findings import Finding, Flag, found
 from imgcover.picture.exif import read_exif
 from imgcover.picture.header import Header, Stored, damaged, through_codec
-from imgcover.picture.profile import ProfileError, profile_refused, tone_of_profile
+from imgcover.picture.profile import tone_of_profile
 from imgcover.tone import Tone
 
 HAS_ALPHA, IS_ANIMATED = 0x10, 0x02
@@ -40,11 +40,13 @@ def read_webp(data: bytes, name: str) -> Header:
     ------
     PictureError
         When the file is cut short or damaged.
+    ProfileError
+        When its colour profile cannot be honoured.
     """
     chunks = _walk(data, name)
     width, height, alpha, animated = _canvas(chunks, name)
     exif = read_exif(chunks.get(b"EXIF", b""))
-    tone, tone_from = _profile(chunks, name)
+    tone, tone_from = _profile(chunks)
     if tone is None and exif.tone is not None:
         tone, tone_from = exif.tone, "its EXIF colour space"
     first: tuple[Finding, ...] = (found(Flag.FIRST_PAGE_ONLY),) if animated else ()
@@ -96,13 +98,10 @@ def _canvas(chunks: dict[bytes, bytes], name: str) -> tuple[int, int, bool, bool
     raise damaged(name, "the WebP holds no picture")
 
 
-def _profile(chunks: dict[bytes, bytes], name: str) -> tuple[Tone | None, str]:
+def _profile(chunks: dict[bytes, bytes]) -> tuple[Tone | None, str]:
     if b"ICCP" not in chunks:
         return None, ""
-    try:
-        return tone_of_profile(chunks[b"ICCP"]), "its ICC profile"
-    except ProfileError as fault:
-        raise profile_refused(name, fault) from fault
+    return tone_of_profile(chunks[b"ICCP"]), "its ICC profile"
 
 
 def _decode(data: bytes, name: str, *, alpha: bool) -> Stored:

@@ -9,7 +9,7 @@ from __future__ import annotations
 from collections.abc import Iterable, Iterator, Mapping, Sequence
 from typing import Any
 
-from imgcover.cloth.comparison import Comparison
+from imgcover.cloth.comparison import Comparison, ComparisonLine
 from imgcover.cloth.declaration import Declaration
 from imgcover.cloth.prediction import Prediction, YarnPrediction
 from imgcover.cloth.weaving_limit import WeavingLimit
@@ -31,8 +31,25 @@ COLUMN = 26
 """Columns of the sheet a cloth takes when several stand side by side: two fit, more are stacked."""
 
 
-def prediction_record(prediction: Prediction, *, declaration: Declaration) -> Record:
-    """Lay a prediction out for machines."""
+def prediction_record(
+    prediction: Prediction,
+    *,
+    declaration: Declaration,
+    comparison: Comparison | None = None,
+    index: int = 0,
+) -> Record:
+    """Lay a prediction out for machines.
+
+    Parameters
+    ----------
+    prediction : Prediction
+    declaration : Declaration
+        What it was made from.
+    comparison : Comparison or None
+        Of this cloth with others.
+    index : int
+        Which of them it is.
+    """
     article = declaration.article
     limit = prediction.limit
     return {
@@ -55,7 +72,34 @@ def prediction_record(prediction: Prediction, *, declaration: Declaration) -> Re
             ]
             for result, effects in prediction.budget.items()
         },
+        "comparison": None if comparison is None else _comparison_section(comparison, index),
         "findings": findings_section(prediction.findings),
+    }
+
+
+def _comparison_section(comparison: Comparison, index: int) -> Record:
+    """Lay out how one cloth stands among several, respect by respect."""
+    return {
+        line.respect: {
+            "value": quantity(line.values[index]),
+            "rank": line.order.index(index) + 1 if line.order else None,
+            "of": len(line.values),
+            "ahead": _ahead_section(comparison, line, index),
+            "reason": line.reason,
+        }
+        for line in comparison.lines
+    }
+
+
+def _ahead_section(comparison: Comparison, line: ComparisonLine, index: int) -> Record | None:
+    """How far a cloth is ahead of the next; null for the last, and where there is no order."""
+    place = line.order.index(index) if line.order else len(line.ahead)
+    if place == len(line.ahead):
+        return None
+    return {
+        "of": comparison.label(line.order[place + 1]),
+        "by": quantity(line.ahead[place]),
+        "told_apart": line.apart[place],
     }
 
 
@@ -78,7 +122,7 @@ def comparison_text(comparison: Comparison) -> str:
     """Set several predictions side by side, and say which is the closer cloth and why."""
     predictions = comparison.predictions
     whole = next(line for line in comparison.lines if line.respect == "whole")
-    lines = [_cut(plain(whole.reason.partition(": ")[0])), ""]
+    lines = [*wrapped(plain(whole.reason.partition(": ")[0]), first="", then="  "), ""]
     fitting = max(1, (WIDTH - 22) // COLUMN)
     for first in range(0, len(predictions), fitting):
         shown = predictions[first : first + fitting]

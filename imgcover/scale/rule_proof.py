@@ -61,10 +61,14 @@ LEAST_KEPT = 0.5
 MM_SHORTEST = 1.75
 """Pitches. Tenths of an inch this tall would be 4.4 mm lines at 2.5 mm distance; no rule at hand
 has them, and millimetre lines are hardly ever shorter."""
-MM_LONGEST = 2.6
+MM_RISE = 1.8
+"""Pitches from the shortest lines to the longest, which no misplaced foot moves: tenths of an inch
+would rise by 4.6 mm, more than any drawn or at hand; millimetre lines rise by 2 to 4."""
 HALF_MM_SHORTEST = 3.2
 """Pitches. Twentieths of an inch this tall would be 4 mm tall; half-millimetre lines are 1.7
 at least."""
+HALF_MM_RISE = 4.5
+"""Pitches, as `MM_RISE`: twentieths of an inch would rise by 5.7 mm, half-millimetres by 2.3."""
 INCH_SHORTEST_MM = 0.7
 """Below, a reading as a fraction of an inch would have lines that no rule has."""
 SHORTEST_MM = 9.0
@@ -286,9 +290,11 @@ def _can_be(graduation: Graduation, pattern: Pattern, unit: str) -> bool:
     if unit == ("inch" if graduation.metric else "mm") or height > SHORTEST_MM:
         return False
     if graduation is Graduation.HALF_MM:
-        return unit != "auto" or shortest >= HALF_MM_SHORTEST
+        return unit != "auto" or (
+            shortest >= HALF_MM_SHORTEST and longest - shortest >= HALF_MM_RISE
+        )
     if graduation is Graduation.TENTH_INCH:
-        tall = shortest >= MM_SHORTEST and longest >= MM_LONGEST
+        tall = shortest >= MM_SHORTEST and longest - shortest >= MM_RISE
         return shortest <= TENTH_TALLEST and not (unit == "auto" and tall)
     return graduation.metric or height >= INCH_SHORTEST_MM
 

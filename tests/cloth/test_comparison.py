@@ -13,6 +13,7 @@ from declared_sheets import sheet
 from imgcover.cloth.comparison import Comparison, ComparisonLine, compare
 from imgcover.cloth.declaration import Declaration
 from imgcover.cloth.prediction import predict
+from imgcover.report.predicted import prediction_record
 
 POPLIN = sheet("133 /in", "72 /in", "40 Ne", "40 Ne", code="POPLIN")
 SQUARE = sheet("68 /in", "64 /in", "32 Ne", "32 Ne", code="SQUARE")
@@ -47,9 +48,8 @@ def test_a_shared_constant_does_not_blur_the_difference() -> None:
     near = sheet("68.7 /in", "64 /in", "32 Ne", "32 Ne", code="NEAR")
     warp = line(side_by_side(SQUARE, near), "warp")
     assert warp.closest == 1
-    assert warp.difference is not None
     assert warp.values[0] is not None
-    assert warp.difference.u < 0.02 * warp.values[0].u
+    assert warp.ahead[0].u < 0.02 * warp.values[0].u
     assert line(side_by_side(SQUARE, near), "weft").closest is None
 
 
@@ -66,29 +66,59 @@ def test_one_cloth_in_two_systems_is_a_tie() -> None:
                    code="METRIC")  # fmt: skip
     table = side_by_side(SQUARE, metric)
     for respect in ("warp", "weft", "whole", "mass"):
-        found = line(table, respect).difference
-        assert found is not None
-        assert found.value < 1e-6 * 100
+        assert line(table, respect).ahead[0].value < 1e-6 * 100
     assert line(table, "mass").closest is None
 
 
 def test_undeclared_crimp_of_two_cloths_is_not_one_constant() -> None:
     """Truth is theory: twice the crimp's and the finish's share, in squares."""
     mass = line(side_by_side(SQUARE, SQUARE), "mass")
-    assert mass.difference is not None and mass.values[0] is not None
-    assert mass.difference.u == pytest.approx(2**0.5 * mass.values[0].u, rel=1e-6)
+    assert mass.values[0] is not None
+    assert mass.ahead[0].u == pytest.approx(2**0.5 * mass.values[0].u, rel=1e-6)
     assert "SQUARE (1) and SQUARE (2) cannot be told apart" in mass.reason
 
 
 def test_three_cloths_are_ranked_and_none_is_ranked_without_a_weave() -> None:
     table = side_by_side(SQUARE, TEXTURED, POPLIN)
-    assert line(table, "warp").closest == 2
+    warp = line(table, "warp")
+    # 0.751 by Peirce stands alone; 0.45 and 0.43 rest on different constants
+    assert warp.closest == 2
+    assert warp.order == (2, 1, 0)
+    assert warp.apart == (True, False)
+    assert warp.reason.startswith(
+        "the closest warp is that of POPLIN, then TEXTURED or SQUARE (or: not told apart within "
+        "the uncertainty): K 21.03,"
+    )
     assert len(line(table, "whole").values) == 3
     bare = predict(SQUARE)
     without = predict(replace(bare.construction, weave=None))
     found = line(compare([bare, without]), "tightness")
     assert found.closest is None
     assert found.values[1] is None
+
+
+def test_three_cloths_alike_are_said_to_be() -> None:
+    mass = line(side_by_side(SQUARE, SQUARE, SQUARE), "mass")
+    assert mass.closest is None
+    assert mass.reason.startswith("SQUARE (1), SQUARE (2) and SQUARE (3) cannot be told apart")
+
+
+def test_each_cloths_record_says_where_it_stands() -> None:
+    """Truth is arithmetic: POPLIN's K is above SQUARE's, which is above that of half its ends."""
+    half = sheet("34 /in", "32 /in", "32 Ne", "32 Ne", code="HALF")
+    sheets = (SQUARE, half, POPLIN)
+    table = side_by_side(*sheets)
+    records = [
+        prediction_record(predict(each), declaration=each, comparison=table, index=k)
+        for k, each in enumerate(sheets)
+    ]
+    warps = [each["comparison"]["warp"] for each in records]
+    assert [each["rank"] for each in warps] == [2, 3, 1]
+    assert [each["ahead"] and each["ahead"]["of"] for each in warps] == ["HALF", None, "SQUARE"]
+    # half the ends of one yarn: half its closeness ahead, and so sure
+    assert warps[0]["ahead"]["by"]["value"] == pytest.approx(warps[0]["value"]["value"] / 2)
+    assert warps[0]["ahead"]["told_apart"] is True
+    assert prediction_record(predict(SQUARE), declaration=SQUARE)["comparison"] is None
 
 
 def test_one_cloth_is_no_comparison() -> None:

@@ -54,7 +54,7 @@ def harsh_bare(seed: int) -> Bare:
     truth = None
     if kind != "cloth":
         drawn, truth = _drawn(kind, pitch, generator)
-        light = _laid(light, drawn, generator)
+        light = laid(light, drawn, generator)
     light = cv2.GaussianBlur(light, (0, 0), generator.uniform(0.5, 0.15 * pitch))
     rows, columns = shape
     y, x = np.ogrid[-1 : 1 : rows * 1j, -1 : 1 : columns * 1j]  # type: ignore[misc]
@@ -154,7 +154,7 @@ def _protractor(step: float, generator: np.random.Generator) -> NDArray[np.float
     return paper
 
 
-def _laid(
+def laid(
     cloth: NDArray[np.float32], drawn: NDArray[np.float32], generator: np.random.Generator
 ) -> NDArray[np.float32]:
     """Lay it on the cloth at any turn, so that its upper edge shows."""

@@ -5,10 +5,11 @@ The full sweep is `tests/scale/sweep_rule.py harsh`; these are some of its pictu
 
 from __future__ import annotations
 
+import cv2
 import numpy as np
 import pytest
-from drawn_rules import Held, rule_case
-from harsh_bare import harsh_bare
+from drawn_rules import Held, rule_case, woven
+from harsh_bare import harsh_bare, laid
 from harsh_rules import harsh_case
 from numpy.typing import NDArray
 
@@ -90,3 +91,23 @@ def test_squared_paper_in_inches_is_no_millimetre_rule() -> None:
     like a rule's longer ones; once taken for millimetres."""
     found = find_rules(Held(harsh_bare(73).light))
     assert not found.readings and has(found.findings, Flag.NO_RULE_FOUND)
+
+
+def test_squares_that_go_on_beyond_the_edge_are_no_rule() -> None:
+    """Truth is drawn: tenths of an inch again, with lines across that end each square: seen from
+    the edge the lines are as tall as a millimetre rule's, but they go on beyond their foot."""
+    generator = np.random.default_rng(2)
+    step = 3 * generator.uniform(6, 12)
+    paper = np.full((int(27 * step), int(60 * step)), 0.85, np.float32)
+    for axis, lines in ((0, 20), (1, 60)):
+        for number in range(lines):
+            level = max(i for i, every in enumerate((1, 5, 10)) if number % every == 0)
+            width = round(step * (0.12 + 0.04 * level))
+            start = round((7 - 2.3 - 1.2 * level) * step) if axis else 0
+            at = round(number * step) + (0 if axis else int(7 * step))
+            part = np.s_[start:, at : at + width] if axis else np.s_[at : at + width, :]
+            paper[part] = np.minimum(paper[part], 0.85 * (0.5 - 0.05 * level))
+    light = woven((900, 1000), thread_px=5, turn=0.05, generator=generator)
+    light = cv2.GaussianBlur(laid(light, paper, generator), (0, 0), 0.8)
+    light = light + generator.normal(0, 0.005, light.shape)
+    assert not find_rules(Held(np.clip(light, 0, 1).astype(np.float32))).readings

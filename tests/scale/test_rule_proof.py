@@ -109,6 +109,24 @@ def test_decimal_inches_are_not_millimetres() -> None:
     assert alike is not None and alike.proven
 
 
+def test_a_misplaced_foot_does_not_turn_tenths_into_millimetres() -> None:
+    """Truth is drawn: tenths of an inch of 3, 4.5 and 6.5 mm; cloth in step with the lines makes
+    all of them look 2 mm taller, as seen on a drawn picture (seed 5021)."""
+    taller = heights(Division.TENTH, 60) + 2.0 / 2.54
+    proof = prove(row(taller), "auto")
+    assert proof is not None and not proof.proven
+    assert set(proof.graduations) == {Graduation.MM, Graduation.TENTH_INCH}
+
+
+def test_twentieths_of_an_inch_are_not_half_millimetres() -> None:
+    """Truth is theory: both lengthen every second, tenth and twentieth line. Lines of 3.4 to
+    7.4 mm, an inch's, pass for half millimetres by their foot; that they rise by 4 mm tells."""
+    level = levels(np.arange(110), (1, 2, 10, 20))
+    taller = np.array([3.4, 4.6, 6.0, 7.4])[level] / 1.27 + 0.8
+    proof = prove(row(taller), "auto")
+    assert proof is None or not proof.graduations
+
+
 def test_every_fifth_alone_is_left_open() -> None:
     """Truth is theory: two-millimetre scales lengthen every fifth line and no other."""
     proof = prove(row(np.where(np.arange(80) % 5 == 0, 5.5, 4.0)), "auto")
