@@ -15,7 +15,13 @@ from scipy import integrate, stats
 from imgcover.repeat.phase import Grid
 from imgcover.threads.counting import breaks, count
 from imgcover.threads.follow import Followed, _centroids
-from imgcover.threads.regions import bow_of, divide, local_density, without_strays
+from imgcover.threads.regions import (
+    away_from_bare,
+    bow_of,
+    divide,
+    local_density,
+    without_strays,
+)
 
 STEP = 10.0
 ROWS, COLUMNS = 30, 40
@@ -158,3 +164,22 @@ def test_bow_is_the_arc_over_the_chord(height: float) -> None:
     narrow = np.zeros((ROWS, COLUMNS), bool)
     narrow[:, :7] = True
     assert bow_of(phase, followed(), narrow, (0.0, 0.1)) is None
+
+
+def test_bare_bed_is_traced_from_where_nothing_is_followed_up_to_the_cloth() -> None:
+    """Left half textured, right half smooth; the phase seems to run on for three places more."""
+    light = np.full((ROWS * 10, COLUMNS * 10), 0.8, np.float32)
+    light[:, :200] += 0.1 * np.sin(2 * np.pi * np.arange(200) / 10).astype(np.float32)
+    seems = X < 230
+    strength = np.where(X < 260, np.where(seems, 1.0, 0.4), 0.0)
+    seen = Followed(NOWHERE, NOWHERE, seems, X[0], Y[:, 0], strength, 1.0)
+    kept = away_from_bare(seen, light, 10.0)
+    assert kept[:, X[0] < 190].all()
+    assert not kept[:, X[0] >= 210].any()
+
+
+def test_a_smooth_patch_inside_the_cloth_is_not_bare_bed() -> None:
+    """A dark stripe has little contrast, but its threads are followed: nothing is left out."""
+    light = np.full((ROWS * 10, COLUMNS * 10), 0.8, np.float32)
+    light[:, :200] += 0.1 * np.sin(2 * np.pi * np.arange(200) / 10).astype(np.float32)
+    assert away_from_bare(followed(), light, 10.0).all()
