@@ -243,6 +243,7 @@ def measure_cover(
         backing=options.backing,
         blank=blank,
         dark=dark,
+        lossy=picture.lossy,
     )
     return reading if warp_across else _exchanged(reading)
 

@@ -60,12 +60,15 @@ class Before:
         How the lattice's ends and picks lean, px a px along them.
     known_light_u : float or None
         Relative uncertainty of light that is known to be 1 everywhere; None when it is not known.
+    finest : float
+        Share of the light that the picture and the idea of a yarn are true to, alike in all pores.
     """
 
     places: Places
     pitch: tuple[float, float]
     leans: tuple[float, float]
     known_light_u: float | None
+    finest: float
 
     def edges(self, edges: Floats, usual: float, loose: float) -> tuple[Floats, Floats]:
         """Expect each pore to be like its neighbours along the threads.
@@ -141,8 +144,8 @@ class Before:
     def common(self, optics: Optics, usual: float) -> float:
         """Mean square misfit that counts for what is shared: it does not average out."""
         alike = EXCESS * (1 + 4 * math.pi * optics.blur_px**2)
-        own = (FINEST * math.exp(float(optics.light[0]))) ** 2
+        own = (self.finest * math.exp(float(optics.light[0]))) ** 2
         return alike * usual + len(self.places.row) * own
 
 
-__all__ = ["BLUR", "DEPTH", "ROUNDNESS", "Before"]
+__all__ = ["BLUR", "DEPTH", "FINEST", "ROUNDNESS", "Before"]

@@ -8,7 +8,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import NDArray
 
-from imgcover.cover.before import BLUR, DEPTH, ROUNDNESS, Before
+from imgcover.cover.before import BLUR, DEPTH, FINEST, ROUNDNESS, Before
 from imgcover.cover.normal import Meets, Normal, by_terms, multiply
 from imgcover.cover.openings import FAR, LOCAL, TERMS, Optics, expect
 from imgcover.cover.places import Places
@@ -105,6 +105,8 @@ class Fit:
     known_light_u : float or None
         Relative standard uncertainty of the bare light when the patches are given as shares of
         it; None when the light is to be found.
+    finest : float
+        See `before.Before`.
     """
 
     def __init__(
@@ -115,6 +117,7 @@ class Fit:
         rows: int,
         columns: int,
         known_light_u: float | None = None,
+        finest: float = FINEST,
     ) -> None:
         self._places = places
         self._terms = light_terms(places.row, places.column, rows, columns)
@@ -122,7 +125,7 @@ class Fit:
         self._meets = Meets(places)
         self._light_known = known_light_u is not None
         self._leans = (-lattice.ends[1] / lattice.ends[0], -lattice.picks[0] / lattice.picks[1])
-        self._before = Before(places, self._pitch, self._leans, known_light_u)
+        self._before = Before(places, self._pitch, self._leans, known_light_u, finest)
 
     def solve(self) -> Fitted:
         """Start from as many lights as it takes to explain the picture fairly."""

@@ -31,6 +31,7 @@ def read_cover(
     backing: str | None = None,
     blank: Lit | NDArray[np.float32] | None = None,
     dark: Lit | NDArray[np.float32] | None = None,
+    lossy: bool = False,
 ) -> CoverReading:
     """Measure the covered share of the field.
 
@@ -49,6 +50,8 @@ def read_cover(
         The card the cloth lies on in reflected light.
     blank, dark : Lit or ndarray, or None
         The same light without cloth, and the same exposure without light.
+    lossy : bool
+        Whether the picture was stored with losses, as JPEG.
 
     Returns
     -------
@@ -73,7 +76,9 @@ def read_cover(
             return CoverReading(findings=(found(Flag.NO_CLOTH_TO_COVER),))
         places = pore_places(parts(windows, lattice), lattice)
         if len(places.row) >= FEWEST_PORES:
-            return by_openings(windows, places, lattice, pitch, size=size, light_known=known)
+            return by_openings(
+                windows, places, lattice, pitch, size=size, light_known=known, lossy=lossy
+            )
     return by_levels(windows, lattice, size=size, light_known=known, backing=backing)
 
 

@@ -56,6 +56,8 @@ class Picture:
         `clipping.clipped_shares` counts them.
     findings : tuple of Finding
         What was noticed on the way.
+    lossy : bool
+        Whether the file's format drops what is fine and faint.
     """
 
     name: str
@@ -70,6 +72,7 @@ class Picture:
     clipped_low: float
     clipped_high: float
     findings: tuple[Finding, ...] = ()
+    lossy: bool = False
 
     @property
     def rows(self) -> int:

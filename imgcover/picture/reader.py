@@ -24,6 +24,8 @@ from imgcover.tone import SRGB, Tone
 
 MOST_PIXELS = 300_000_000
 """Two A4 scans at 1200 dpi; what claims more is a mistake or an attack."""
+LOSSY = frozenset({"JPEG", "WebP"})
+"""Formats that mostly drop what is fine and faint; a lossless WebP is not told from the others."""
 CLIPPED_SHARE = 0.01
 """One pixel in a hundred at the end of the scale moves a mean of light by a noticeable amount."""
 logging.getLogger("imagecodecs").addHandler(logging.NullHandler())
@@ -85,6 +87,7 @@ def read_picture(source: Path | bytes, *, name: str, tone: Tone | None = None) -
                 *_chosen(choice.channel, choice.reason),
                 *_clipping(low, high),
             ),
+            lossy=header.kind in LOSSY,
         )
 
 
