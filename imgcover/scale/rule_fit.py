@@ -23,7 +23,7 @@ sharp edge's place among the pixels moves its apparent place by up to a tenth of
 U_PIXEL = 0.05
 """Pixels by which lines at one end of a row may be misplaced against those at the other, softened
 as above: it does not average out where the pitch is nearly a whole number of pixels."""
-U_PIXEL_APART = U_PIXEL / 4
+U_PIXEL_APART = U_PIXEL / 2
 """The same for a line's foot against its tip, which one column of pixels misplaces alike: on 45
 upright rows the two halves agreed to a tenth of `U_PIXEL`, at worst to four tenths of it."""
 LIKENESS = 0.6
