@@ -192,7 +192,7 @@ def thread_places(marked: Marked, path: Path) -> list[tuple[int, float]]:
     -------
     list of (int, float)
         The thread's number, counted on through places that could not be followed, and px from
-        the start of the path; threads in such places are left out.
+        the start of the path; threads in such places are left out, but for single ones.
     """
     track = marked.track
     walked = np.arange(0.0, path.length, 0.5)
@@ -211,10 +211,12 @@ def thread_places(marked: Marked, path: Path) -> list[tuple[int, float]]:
     first = math.ceil(rising[0])
     numbers = np.arange(first, math.floor(rising[-1]) + 1)
     places = np.interp(numbers, rising, walked[followed])
-    near = np.clip(np.searchsorted(walked, places), 0, walked.size - 1)
+    # one thread lost between two that are followed is as sure as they are
+    reach = 1.5 * marked.threads.pixels_a_thread
+    sure = np.abs(places[:, None] - walked[followed][None, :]).min(axis=1) < reach
     return [
         (int(number) - first + 1, float(place))
-        for number, place, seen in zip(numbers, places, followed[near], strict=True)
+        for number, place, seen in zip(numbers, places, sure, strict=True)
         if seen
     ]
 
