@@ -25,7 +25,7 @@ from imgcover.report.closeup import close_up
 from imgcover.report.strips import marked_sets
 from imgcover.request import Request
 
-for each in (*ALWAYS_ASKED, "imgcover.verdict.swatch", "scipy.special"):
+for each in (*ALWAYS_ASKED, "imgcover.verdict.swatch"):
     # loaded with this module: a worker's clock starts when all that it will need is there
     import_module(each)
 

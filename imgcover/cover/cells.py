@@ -61,6 +61,14 @@ class Cells:
         return self.height - self.open_height
 
     @property
+    def unevenness(self) -> float:
+        """Relative standard deviation of the widths of the threads, of the less even system."""
+        return max(
+            float(widths.std()) / max(float(widths.mean()), 1e-9)
+            for widths in (self.end_widths, self.pick_widths)
+        )
+
+    @property
     def _area(self) -> float:
         return float(np.sum(self.width * self.height))
 

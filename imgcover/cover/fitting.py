@@ -238,6 +238,8 @@ class Fit:
     def _fitted(self, edges: Floats, optics: Optics) -> Fitted:
         normal = self._normal(edges, optics)
         _, carried, matrix, _ = normal.solved(0.0)
+        before, _ = self._before.shared(optics, normal.usual, 1.0)
+        matrix = _at_least(matrix, before)
         width, height = edges[:, 1] - edges[:, 0], edges[:, 3] - edges[:, 2]
         by_edge = np.stack([-height, height, -width, width], axis=1)
         return Fitted(
@@ -251,6 +253,15 @@ class Fit:
             open_by_shared=-np.einsum("na,nak->k", by_edge, carried[:, :4]) / len(edges),
             light=normal.light,
         )
+
+
+def _at_least(matrix: Floats, before: Floats) -> Floats:
+    """Keep what is known no less than what was known before looking: rounding may say otherwise."""
+    scale = np.sqrt(np.diag(matrix))
+    told = (matrix - before) / np.outer(scale, scale)
+    values, vectors = np.linalg.eigh((told + told.T) / 2)
+    kept = (vectors * np.maximum(values, 0)) @ vectors.T
+    return np.asarray(kept * np.outer(scale, scale) + before)
 
 
 def _bounded(matrix: Floats, toward: Floats, low: Floats, high: Floats) -> Floats:

@@ -54,6 +54,10 @@ ODD = 0.005
 sharpened pictures and fields blurred in part show 0.004 to 0.02, others at most 0.002."""
 NEARLY_SHUT = 0.97
 """From this cover on a bound on the open area is given too."""
+WIRE, ANY_SECTION = 0.014, 3.0
+"""Threads more even than the first are wires or tapes and no yarn (drawn wires show up to 0.012,
+drawn yarns 0.017 and more): they may be flat, three times as far from the section expected as
+yarns are, and what the picture cannot tell of it counts so many times more."""
 LOSSY_U, LOSSY_FINEST = 0.005, 0.004
 """Cover from a file stored with losses is uncertain by the first, and its profiles are true to the
 second, a share of the light (24 cloths of 6 to 22 px stored as JPEG of quality 80 and 90)."""
@@ -164,7 +168,7 @@ def by_openings(
         threshold=edge,
         two_level=(1 - weighted(shares, weights)) / (1 - cells.yarn_level),
         blurs=blurs,
-        u_fit=fitted.u_open_share(lattice),
+        u_fit=fitted.u_open_share(lattice) * (ANY_SECTION if cells.unevenness < WIRE else 1),
         u_windows=between_windows(shares, weights) / (1 - cells.yarn_level),
         u_misfit=_common_misfit(places, fitted, bare),
         u_guessed=GUESSED * guessed,

@@ -10,8 +10,8 @@ from itertools import pairwise
 import cv2
 import numpy as np
 from numpy.typing import NDArray
-from scipy.ndimage import map_coordinates
 
+from imgcover.repeat.between import between
 from imgcover.report.canvas import ENDS, LEFT_OUT, PICKS, Canvas, Colour, Pixels, eight_bits
 from imgcover.threads.reading import ThreadReading, ThreadSet, Tile, Track
 
@@ -201,10 +201,9 @@ def thread_places(marked: Marked, path: Path) -> list[tuple[int, float]]:
     column = np.interp(x, track.x, np.arange(track.x.size))
     row = np.interp(y, track.y, np.arange(track.y.size))
     deviation = marked.phase - _plane(marked.threads, track)
-    at = np.stack([row, column])
-    cycles = map_coordinates(deviation, at, order=1, mode="nearest")
+    cycles = between(deviation, row, column)
     cycles += marked.threads.frequency[0] * x + marked.threads.frequency[1] * y
-    followed = map_coordinates(track.valid.astype(np.float32), at, order=0, mode="nearest") > 0
+    followed = track.valid[np.rint(row).astype(int), np.rint(column).astype(int)]
     if followed.sum() < 2:
         return []
     rising = np.maximum.accumulate(cycles[followed])

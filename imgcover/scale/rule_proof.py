@@ -197,7 +197,7 @@ def _recurs(pattern: Pattern, row: Row) -> Recurrence:
     ends = misfit(row, np.full(len(reach), top)) <= bound
     if not _orderly(pattern, row, bound):
         return Recurrence.DISPROVED
-    if _fifths_longer(pattern, row, bound):
+    if Graduation.MM in pattern.graduations and _fifths_longer(pattern, row, bound):
         return Recurrence.DISPROVED
     if pattern.steps in UNMISTAKABLE:
         # that they are longer than the level below is enough, however far each still reaches
@@ -236,7 +236,8 @@ def _fifths_longer(pattern: Pattern, row: Row, bound: float) -> bool:
             continue
         if digit[fifth].any() and digit[longest & ~fifth].any():
             continue
-        if (reach[fifth] > np.quantile(rest, 0.75) + bound).mean() > 0.6:
+        # worn lines among the rest must not make whole ones seem longer
+        if (reach[fifth] > np.quantile(rest, 0.9) + bound).mean() > 0.6:
             return True
     return False
 

@@ -178,21 +178,36 @@ def _ridges(
     values, _ = amplitudes(field, followed, phase, vector, sigma=sigma, multiples=harmonics)
     turns = np.outer(np.arange(1, 9), np.arange(96) / 96)
     profile = (values[:, None] * np.exp(2j * np.pi * turns)).real.sum(axis=0)
-    counts = [_count(side, PLAIN_RIDGE) for side in (profile, -profile)]
-    faint = [_count(side, FAINT_RIDGE) for side in (profile, -profile)]
+    counts = [ridges_in(side, share=PLAIN_RIDGE) for side in (profile, -profile)]
+    faint = [ridges_in(side, share=FAINT_RIDGE) for side in (profile, -profile)]
     if max(faint) == 1:
         return 1
     return max(counts) if max(counts) > 1 else None
 
 
-def _count(profile: NDArray[np.float64], share: float) -> int:
-    # half a second to import, and needed for few pictures
-    from scipy.signal import find_peaks
+def ridges_in(profile: NDArray[np.float64], *, share: float) -> int:
+    """Count the ridges of one closed period.
 
-    around = np.roll(profile, -int(profile.argmin()))
-    closed = np.append(around, around[0])
-    found, _ = find_peaks(closed, prominence=share * float(np.ptp(profile)))
-    return len(found)
+    Parameters
+    ----------
+    profile : ndarray, shape (places,), float64
+        Light along one period; its end meets its beginning.
+    share : float
+        A ridge counts when the light rises to it, and falls from it again, by this share of the
+        profile's range.
+    """
+    least = share * float(np.ptp(profile))
+    if least <= 0:
+        return 0
+    lowest = int(profile.argmin())
+    ridges, rising = 0, True
+    turn = float(profile[lowest])
+    for light in (*np.roll(profile, -lowest).tolist(), turn):
+        turn = max(turn, light) if rising else min(turn, light)
+        if abs(light - turn) >= least:
+            ridges += rising
+            rising, turn = not rising, light
+    return ridges
 
 
-__all__ = ["Multiple", "amplitudes", "which_multiple"]
+__all__ = ["Multiple", "amplitudes", "ridges_in", "which_multiple"]

@@ -13,6 +13,7 @@ from imgcover.verdict.departure import SEEN, Departure, Floats, expected
 from imgcover.verdict.mean_count import moisture_u
 from imgcover.verdict.observed import Observed
 from imgcover.verdict.sheet import Sheet
+from imgcover.verdict.tail import chi_squared_above
 
 ENDS, PICKS, MASS = (SEEN.index(name) for name in ("ends", "picks", "mass"))
 
@@ -119,10 +120,7 @@ def _rest_fits(sheet: Sheet, evidence: Evidence, risk: float) -> bool:
     residual = np.linalg.solve(lower, evidence.values - mean)
     steps = np.linalg.solve(lower, effect[free].T)
     residual = residual - steps @ np.linalg.lstsq(steps, residual, rcond=None)[0]
-    # here, and not above: a third of a second to load
-    from scipy.special import chdtrc
-
-    return float(chdtrc(left, float(residual @ residual))) > risk
+    return chi_squared_above(float(residual @ residual), freedom=left) > risk
 
 
 def _jitter(covariance: Floats) -> Floats:

@@ -23,6 +23,7 @@ from imgcover.verdict.cause import Cause, fixed
 from imgcover.verdict.departure import Departure, Floats, expected, joined
 from imgcover.verdict.evidence import Evidence
 from imgcover.verdict.sheet import Sheet
+from imgcover.verdict.tail import chi_squared_above
 
 NOTHING_FITS = "nothing fits: more than one figure may be off"
 NOTHING_PRIOR = 0.1
@@ -170,11 +171,8 @@ def _log_penalty(residual: Floats, covariance: Floats) -> float:
     """How much less a cause is trusted for what it leaves unexplained; 0 where that is chance."""
     if not len(residual):
         return 0.0
-    # here, and not above: a third of a second to load
-    from scipy.special import chdtrc
-
     squared = float(residual @ np.linalg.solve(covariance, residual))
-    tail = max(float(chdtrc(len(residual), squared)), sys.float_info.min)
+    tail = max(chi_squared_above(squared, freedom=len(residual)), sys.float_info.min)
     return min(0.0, math.log(tail / POOR_FIT))
 
 

@@ -36,7 +36,8 @@ def test_bad_photographs_are_read_right(seed: int) -> None:
 
 def test_a_tilted_picture_is_read_where_the_cloth_is() -> None:
     """Truth is drawn: a camera leaning by three degrees, whose scale changes by 7 % over the
-    frame. Asked for a corner, the scale is the corner's."""
+    frame. Asked for a corner, the scale is the corner's, within the 0.3 % that is asked and twice
+    what the fit says of itself."""
     case = harsh_case(41)
     rows, columns = case.light.shape
     corner = (0, rows // 2, columns // 3, rows // 2)
@@ -46,10 +47,11 @@ def test_a_tilted_picture_is_read_where_the_cloth_is() -> None:
     there = found.readings[0].at(middle)
     truth = case.truth(there.angle, middle)
     assert abs(truth / case.truth(there.angle) - 1) > 0.01
-    assert there.px_per_mm.value == pytest.approx(truth, rel=0.001)
+    assert there.px_per_mm.value == pytest.approx(truth, rel=0.003)
+    assert abs(there.px_per_mm.value / truth - 1) < 2 * there.u_fit
     scale = measure_rules(Held(case.light), within=corner).scale
     assert scale is not None
-    assert scale.x.value == pytest.approx(truth, rel=0.001)
+    assert scale.x.value == pytest.approx(truth, rel=0.003)
 
 
 def test_a_clear_rule_is_read_with_the_cloth_pressed_down() -> None:
