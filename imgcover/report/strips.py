@@ -211,8 +211,9 @@ def thread_places(marked: Marked, path: Path) -> list[tuple[int, float]]:
     numbers = np.arange(first, math.floor(rising[-1]) + 1)
     places = np.interp(numbers, rising, walked[followed])
     # one thread lost between two that are followed is as sure as they are
-    reach = 1.5 * marked.threads.pixels_a_thread
-    sure = np.abs(places[:, None] - walked[followed][None, :]).min(axis=1) < reach
+    seen_at = walked[followed]
+    after = np.clip(np.searchsorted(seen_at, places), 1, seen_at.size - 1)
+    sure = seen_at[after] - seen_at[after - 1] < 2 * marked.threads.pixels_a_thread
     return [
         (int(number) - first + 1, float(place))
         for number, place, seen in zip(numbers, places, sure, strict=True)
