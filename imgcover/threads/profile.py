@@ -21,6 +21,9 @@ from imgcover.threads.follow import Followed
 SUBMULTIPLES = tuple(Fraction(1, m) for m in (2, 3, 4))
 """Broken multiples tried: pairs and ribs, dents of two to four."""
 
+THIRDS = (Fraction(2, 3), Fraction(3, 2))
+"""Tried too: wide pairs are loudest at the third multiple of the pair, and are two thirds of it."""
+
 MULTIPLES = (Fraction(2), Fraction(3), Fraction(4))
 """Whole multiples tried: a repeat taken for a thread."""
 
@@ -128,7 +131,7 @@ def which_multiple(
     """
     tried = tuple(
         sorted(
-            {*SUBMULTIPLES, Fraction(1), *MULTIPLES}
+            {*SUBMULTIPLES, *THIRDS, Fraction(1), *MULTIPLES}
             | {Fraction(k, parts) for k in range(1, 2 * parts)}
         )
     )

@@ -185,8 +185,7 @@ def _refused(*findings: Finding, tiles: tuple[Tile, ...] = ()) -> ThreadReading:
 def _read(seen: Identified, region: Region, warp: Direction) -> ThreadReading:
     one, followed = seen.candidate, seen.followed
     period = max(one.pixels)
-    clear_of_bare = away_from_bare(followed, seen.origin.light, period)
-    followed = dataclasses.replace(followed, valid=clear_of_bare)
+    followed = away_from_bare(followed, seen.origin.light, period)
     pieces = divide(followed, period, seen.origin.light.shape)
     clear = len(pieces.blocks)
     pieces = without_strays(followed, pieces, one.ends, one.picks)

@@ -72,9 +72,9 @@ def divide(followed: Followed, period: float, shape: tuple[int, int]) -> Pieces:
     for high, top, bottom in _cuts(followed.y, shape[0], period):
         for wide, left, right in _cuts(followed.x, shape[1], period):
             share = float(followed.valid[high, wide].mean())
-            strength = float(np.median(followed.strength[high, wide]))
+            there = float((followed.strength[high, wide] > STRONG_ENOUGH).mean())
             used = share >= FOLLOWED_SHARE
-            reason = "" if used else "no threads here" if strength < 0.3 else UNCLEAR[0]
+            reason = "" if used else "no threads here" if there < FOLLOWED_SHARE else UNCLEAR[0]
             tiles.append(Tile(left, top, right - left, bottom - top, used, reason))
             if used:
                 valid[high, wide] = followed.valid[high, wide]
@@ -94,10 +94,8 @@ def _cuts(places: NDArray[np.float64], length: int, period: float) -> list[tuple
     ]
 
 
-def away_from_bare(
-    followed: Followed, light: NDArray[np.float32], period: float
-) -> NDArray[np.bool_]:
-    """Tell which places are followed and lie clear of where there is no cloth.
+def away_from_bare(followed: Followed, light: NDArray[np.float32], period: float) -> Followed:
+    """Follow no threads where there is no cloth, nor right beside it.
 
     Parameters
     ----------
@@ -108,7 +106,8 @@ def away_from_bare(
 
     Returns
     -------
-    ndarray, shape of the grid, bool
+    Followed
+        Neither valid nor strong where the bed is bare.
 
     Notes
     -----
@@ -120,7 +119,7 @@ def away_from_bare(
     lost = (followed.strength <= STRONG_ENOUGH).astype(np.uint8)
     core = cv2.morphologyEx(lost, cv2.MORPH_OPEN, around)
     if not core.any():
-        return followed.valid
+        return followed
     side = 2 * round(0.75 * period) + 1
     root = np.sqrt(np.maximum(light, 0.0))
     mean = cv2.blur(root, (side, side), borderType=cv2.BORDER_REFLECT)
@@ -131,7 +130,12 @@ def away_from_bare(
     smooth = (texture < SMOOTH * usual).astype(np.uint8)
     _, labels = cv2.connectedComponents(smooth | core, connectivity=4)
     bare = np.isin(labels, np.unique(labels[core > 0])).astype(np.uint8)
-    return np.asarray(followed.valid & (cv2.dilate(bare, around) == 0))
+    beside = cv2.dilate(bare, around) > 0
+    return replace(
+        followed,
+        valid=followed.valid & ~beside,
+        strength=np.where(beside, 0.0, followed.strength),
+    )
 
 
 @dataclass(frozen=True, slots=True)

@@ -24,6 +24,11 @@ WHOLE = 99.0
 """Stands for "nothing to look for": higher than any line rises over its floor."""
 
 
+SKEWED = 5.5
+"""Degrees of skew that cost one point of score: cloth is asked for to 8, and a twill skewed by 7.5
+must not lose to a satin that is not."""
+
+
 @dataclass(frozen=True, slots=True)
 class Evidence:
     """The witnesses for one candidate.
@@ -243,7 +248,7 @@ def _score(one: Candidate, e: dict[str, float]) -> float:
     # a thread's own line stands higher over the floor than its multiples do
     seconds -= 0.6 * (max(0, e["ends_above"]) + max(0, e["picks_above"]))
     streaks = 5 * (min(0.6, max(0, e["ends_streak"])) + min(0.6, max(0, e["picks_streak"])))
-    shape = 1.5 * (one.turn / 30) ** 2 + (one.skew / 4) ** 2
+    shape = 1.5 * (one.turn / 30) ** 2 + (one.skew / SKEWED) ** 2
     weave = _WEAVE_COST.get(one.index, 1.3 if one.index < 9 else 1.8)
     weave += sum(
         0.5 if e[part] > 2.5 else 2.5 for part in ("ends_part", "picks_part") if e[part] < WHOLE

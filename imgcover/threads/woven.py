@@ -78,9 +78,10 @@ def crossing(seen: Identified) -> bool:
     even = one.index > 1 and one.parts == (1, 1) and loud > EVEN_LOUDNESS
     if straight and even and e.against < 0.05:
         return True
-    if straight and regular and lines > REGULAR_LINES and e.score > REGULAR_SCORE:
-        return True
     narrow = min(e.ends_streak, e.picks_streak)
+    regular = regular and narrow > 0 and lines > REGULAR_LINES and e.score > REGULAR_SCORE
+    if straight and regular:
+        return True
     if narrow > 2 * LEAST_STREAK:
         return True
     wide = spectrum(windows_of(seen.origin, min(2 * WINDOW, *seen.origin.light.shape)))
