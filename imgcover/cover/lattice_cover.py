@@ -39,9 +39,15 @@ FEWEST_BLURS = 1.5
 LEAST_SURE = 0.0075
 """A cover less sure than this is refused: threads and pores so small leave the section of the yarns
 to be guessed, and with it where they end."""
-MOST_MISFIT = 0.008
-"""Misfit common to all pores is refused beyond this only: fuzz on well resolved yarns shows up to
-0.0075, and the cover was still within 0.5 points (sweep_cover.py)."""
+MOST_MISFIT, MOST_FUZZ, RESOLVED = 0.008, 0.0105, 6.0
+"""Misfit common to all pores, a share of the light, is refused beyond the first; beyond the second
+where more blurs than the third fit into a pore: fuzz on well resolved yarns shows up to 0.0100, and
+the cover was still within 0.5 points (sweep_cover.py)."""
+MOST_APART = 0.004
+"""Misfit that one part of the field has and another has not, a share of the light: even cloth shows
+up to 0.002, a field with a third out of focus by 1.2 px 0.0085, and cover was 3 points off."""
+PARTS_A_SIDE, FEWEST_IN_PART = 3, 9
+"""Parts of the field each way that misfit is looked at in, and pores that tell it."""
 MOST_BIAS = 0.25
 """Where blur makes the half-level edge miss more of the open area, the edge is no witness."""
 APART = 0.015
@@ -78,6 +84,7 @@ class _Witnessed:
     u_fit: float
     u_windows: float
     u_misfit: float
+    apart: float
     u_guessed: float
     u_lossy: float
 
@@ -94,7 +101,13 @@ class _Witnessed:
     @property
     def sure(self) -> bool:
         """Whether this is sure enough to be told."""
-        return self._u_read <= LEAST_SURE and self.u_misfit <= MOST_MISFIT
+        most = MOST_MISFIT if self.blurs < RESOLVED else MOST_FUZZ
+        return self._u_read <= LEAST_SURE and self.u_misfit <= most and self.even
+
+    @property
+    def even(self) -> bool:
+        """Whether one blur and one light explain every part of the field alike."""
+        return self.apart <= MOST_APART
 
     @property
     def _u_read(self) -> float:
@@ -164,13 +177,15 @@ def by_openings(
         return replace(reading, upper_bound_open=bound, findings=(refused,))
     bias = edge_bias(places, fitted, bare, middle)
     edge = 1 - weighted(maps, weights) / (1 + bias) if abs(bias) < MOST_BIAS else None
+    misfit, apart = _misfits(places, fitted, bare)
     witnessed = _Witnessed(
         threshold=edge,
         two_level=(1 - weighted(shares, weights)) / (1 - cells.yarn_level),
         blurs=blurs,
         u_fit=fitted.u_open_share(lattice) * (ANY_SECTION if cells.unevenness < WIRE else 1),
         u_windows=between_windows(shares, weights) / (1 - cells.yarn_level),
-        u_misfit=_common_misfit(places, fitted, bare),
+        u_misfit=misfit,
+        apart=apart,
         u_guessed=GUESSED * guessed,
         u_lossy=LOSSY_U if lossy else 0.0,
     )
@@ -221,16 +236,29 @@ def _answered(
     )
 
 
-def _common_misfit(places: Places, fitted: Fitted, bare: NDArray[np.float64]) -> float:
-    """What all pores are misfitted by alike, beyond what noise leaves, as a share of the light.
+def _misfits(places: Places, fitted: Fitted, bare: NDArray[np.float64]) -> tuple[float, float]:
+    """What pores are misfitted by alike, beyond what noise leaves, as a share of the light.
 
-    A field blurred in part, or a sharpened picture, cannot be explained by one blur: the cover was
-    found to be off by about this share.
+    A sharpened picture cannot be explained by one blur: the cover was found to be off by about
+    the first. In a field blurred in part the parts are misfitted each in its own way: the second.
     """
     off = (places.patch - fitted.light) * places.sound / bare[:, None, None]
-    alike = float(np.mean(off.mean(axis=0, dtype=np.float64) ** 2))
+    part = np.zeros(len(off), np.int64)
+    for place in (places.row, places.column):
+        limits = np.quantile(place, np.arange(1, PARTS_A_SIDE) / PARTS_A_SIDE)
+        part = part * PARTS_A_SIDE + np.searchsorted(limits, place)
+    counts = np.bincount(part)
+    told = np.flatnonzero(counts >= FEWEST_IN_PART)
+    squares = [_alike(off[part == each]) for each in told]
+    everywhere = _alike(off)
+    by_part = float(np.average(squares, weights=counts[told])) if len(told) else everywhere
+    return math.sqrt(max(0.0, everywhere)), math.sqrt(max(0.0, by_part - max(0.0, everywhere)))
+
+
+def _alike(off: NDArray[np.float64]) -> float:
+    """Mean square of what the patches have in common, less what noise leaves of it."""
     noise = float(np.mean(off**2, dtype=np.float64)) / len(off)
-    return math.sqrt(max(0.0, alike - noise))
+    return float(np.mean(off.mean(axis=0, dtype=np.float64) ** 2)) - noise
 
 
 def _guessed(places: Places, fitted: Fitted, bare: NDArray[np.float64]) -> float:
@@ -262,8 +290,9 @@ def _not_resolved(
     """Refuse the cover, and bound the open area."""
     bound = most_open(windows, light_known=light_known)
     worst = max(witnessed.u_misfit, witnessed.u_guessed)
-    if worst > witnessed.u / 2:
-        why = Flag.COVER_UNEVEN if worst == witnessed.u_misfit else Flag.COVER_CLIPPED
+    if worst > witnessed.u / 2 or not witnessed.even:
+        clipped = witnessed.even and worst == witnessed.u_guessed
+        why = Flag.COVER_CLIPPED if clipped else Flag.COVER_UNEVEN
         return replace(reading, upper_bound_open=bound, findings=(found(why),))
     message = (
         "optical cover was not measured: the pores are too small for this picture, its "

@@ -22,7 +22,7 @@ from imgcover.scale.rule_area import rule_corners
 from imgcover.scale.rule_band import follow_row
 from imgcover.scale.rule_class import RuleClass, rule_u
 from imgcover.scale.rule_fit import fit_row
-from imgcover.scale.rule_hierarchy import Graduation
+from imgcover.scale.rule_hierarchy import Graduation, bend_of
 from imgcover.scale.rule_levels import Level, Pictured, levels_of
 from imgcover.scale.rule_lines import Row, goes_on, measure_lines
 from imgcover.scale.rule_proof import UNMISTAKABLE, Proof, prove
@@ -221,7 +221,8 @@ def _read(
     comb, graduation = fitted.comb, proof.graduations[0]
     if comb.scatter > LARGEST_SCATTER * comb.pitch:
         return "its lines stray from equal distances: it is bent, or not flat on the cloth"
-    view = view_of(fitted, finest.tone.shape)
+    bend = bend_of(row, proof.pattern) * finest.factor / level.factor
+    view = view_of(fitted, finest.tone.shape, bend=bend)
     if view.change > LARGEST_CHANGE:
         return "it lies too much aslant to the camera"
     middle = np.array([picture.columns - 1, picture.rows - 1]) / 2

@@ -72,6 +72,8 @@ LOST = 4.0
 (dust, a digit, a scratch): a straight line fit's usual bound."""
 SHORTEST_SHARE = 0.4
 """Share of the lines that must be of one length: half of them, less a fifth for accidents."""
+BEND_SEEN = 4.0
+"""Standard uncertainties of a bend that stands out from how unevenly lines end."""
 A_LEVEL = 4.0
 """Cost of one more length: near half the logarithm of the number of lines, twice (BIC)."""
 
@@ -122,6 +124,24 @@ def misfit(row: Row, pattern_lengths: NDArray[np.float64]) -> NDArray[np.float64
     """Return how far, in pitches, each line ends from the length that its level has."""
     first = np.abs(row.reach / row.pitch - pattern_lengths)
     return np.minimum(first, np.abs(row.beyond / row.pitch - pattern_lengths))
+
+
+def bend_of(row: Row, pattern: Pattern) -> float:
+    """Return how strongly the ends of a row's shortest lines bend, 1 over the radius in pixels.
+
+    No tilt bends a straight row; a bent tape or a lens does. 0 where it does not stand out.
+    """
+    shortest = levels(row.numbers - pattern.phase, pattern.steps) == 0
+    kept = shortest & (np.abs(row.reach / row.pitch - pattern.lengths[0]) < 1.0)
+    along = (row.numbers[kept] - row.numbers[kept].mean()) * row.pitch
+    square = along**2
+    design = np.stack([np.ones_like(along), along, square - square.mean()], axis=1)
+    if kept.sum() < 8:
+        return 0.0
+    terms, *_ = np.linalg.lstsq(design, row.reach[kept], rcond=None)
+    rest = row.reach[kept] - design @ terms
+    u = math.sqrt((rest**2).sum() / (kept.sum() - 3) / (design[:, 2] ** 2).sum())
+    return 2 * abs(float(terms[2])) if abs(terms[2]) > BEND_SEEN * u else 0.0
 
 
 def _crowded(reach: NDArray[np.float64], scatter: float) -> bool:
@@ -193,6 +213,7 @@ __all__ = [
     "INCH_MM",
     "Graduation",
     "Pattern",
+    "bend_of",
     "levels",
     "match_patterns",
     "misfit",

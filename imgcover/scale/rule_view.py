@@ -81,7 +81,7 @@ class View:
         return pitch, relative
 
 
-def view_of(fitted: FittedRow, size: tuple[int, int]) -> View:
+def view_of(fitted: FittedRow, size: tuple[int, int], *, bend: float = 0.0) -> View:
     """Judge from a row whether the picture was taken aslant, and how much.
 
     Parameters
@@ -89,6 +89,8 @@ def view_of(fitted: FittedRow, size: tuple[int, int]) -> View:
     fitted : FittedRow
     size : (int, int)
         Rows and columns of the level.
+    bend : float
+        Of the row, 1 over its radius in pixels (`rule_hierarchy.bend_of`).
 
     Returns
     -------
@@ -99,7 +101,9 @@ def view_of(fitted: FittedRow, size: tuple[int, int]) -> View:
     Held against each other are a scanner, which has no tilt, and a camera, whose tilt is normal
     about none with `USUAL_LEAN`, as likely beforehand. Where the scanner stays the likelier, the
     tilt that the camera would have had is left to the uncertainty, by the camera's share. A row
-    that does not tell foot from tip (infinite u) leaves the usual tilt.
+    that does not tell foot from tip (infinite u) leaves the usual tilt. On a bent row foot and tip
+    differ by the bend as well, and nothing tells how it goes on beside the row: all of it is left
+    to the uncertainty.
     """
     comb = fitted.comb
     usual = USUAL_LEAN / max(size)
@@ -120,6 +124,9 @@ def view_of(fitted: FittedRow, size: tuple[int, int]) -> View:
     else:
         along = across = 0.0
         u_along, u_across = (math.sqrt(share) * math.hypot(*each) for each in leans)
+    if bend:
+        u_across = math.hypot(u_across, fitted.across, bend)
+        across = 0.0
     return View(
         fitted.frame,
         comb.origin,

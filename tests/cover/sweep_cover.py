@@ -33,8 +33,8 @@ from imgcover.loom.camera import CameraSpec
 from imgcover.loom.cases import COVER, Case, ordinary
 from imgcover.loom.truth import Truth
 
-SEED = 40417
-"""Of the cloths whose figures DEVELOPERS.md reports; cloths to tune on come from other seeds."""
+SEED = 61803
+"""Of the cloths whose figures DEVELOPERS.md reports; 40417 has been tuned on."""
 METHODS = ("this room", "Otsu, stored grey", "Otsu, linear light", "half level")
 
 

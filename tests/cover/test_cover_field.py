@@ -35,6 +35,7 @@ def drawn(
     bits: int = 8,
     exposure: float = 0.85,
     px_per_mm: float = 20.0,
+    blurred_third: float = 0.0,
 ) -> tuple[Light, float, Lattice]:
     """Linear light, counted cover, and the lattice in cycles a pixel."""
     cloth = ClothSpec(
@@ -47,7 +48,14 @@ def drawn(
         pick_lightness=(shade,),
     )
     camera = CameraSpec(
-        px_per_mm, blur_px=0.7, light=light, bed=bed, tone=tone, bits=bits, exposure=exposure
+        px_per_mm,
+        blur_px=0.7,
+        light=light,
+        bed=bed,
+        tone=tone,
+        bits=bits,
+        exposure=exposure,
+        blurred_third=blurred_third,
     )
     picture = draw(cloth, camera, SIDE, SIDE, np.random.default_rng(21))
     stored = picture.stored.astype(np.float32) / np.iinfo(picture.stored.dtype).max
@@ -91,6 +99,14 @@ def test_bare_light_beside_the_cloth_is_not_open_cloth():
         reading = read(other, lattice)
         assert abs(value(reading) - cover) < WITHIN
         assert any(not seen.inside.all() for seen in reading.seen), "what is masked is shown"
+
+
+def test_a_third_out_of_focus_is_refused():
+    """Truth is drawn: loom, seed 21; one blur for the whole field would be 3 points off."""
+    light, _, lattice = drawn(blurred_third=1.2)
+    reading = read(light, lattice)
+    assert reading.optical is None
+    assert [f.flag for f in reading.findings] == [Flag.COVER_UNEVEN]
 
 
 def test_nearly_shut_cloth_has_a_bound_and_is_never_shut_by_default():

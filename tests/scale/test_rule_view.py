@@ -11,6 +11,8 @@ from numpy.typing import NDArray
 from imgcover.repeat.comb import fit_comb
 from imgcover.scale.rule_fit import FittedRow
 from imgcover.scale.rule_frame import Frame
+from imgcover.scale.rule_hierarchy import Graduation, Pattern, bend_of
+from imgcover.scale.rule_lines import Row
 from imgcover.scale.rule_view import View, view_of
 
 SIZE = (1000, 1400)
@@ -87,3 +89,38 @@ def test_what_a_poor_row_cannot_see_is_left_uncertain() -> None:
     assert u_at(poor, 200.0) < u_at(poor, 950.0) / 4
     blind = view_of(row((0.0, 0.0), noise=0.05, u_across=math.inf), SIZE)
     assert u_at(blind, 950.0) > u_at(sure, 950.0)
+
+
+def test_a_bent_row_says_nothing_of_what_lies_beside_it() -> None:
+    """Truth is theory: on a bend of radius R the pitch grows by 1/R a pixel from foot to tip, as
+    under a tilt; beside the row it may go on so or not."""
+    fitted = row((0.0, 2e-5), noise=0.02)
+    view = view_of(fitted, SIZE, bend=2e-5)
+    beside, far = (view.pitch_at(np.array([200.0, y])) for y in (180.0, 950.0))
+    assert far[0] == pytest.approx(beside[0], rel=1e-6)
+    assert far[1] == pytest.approx(770 * math.hypot(2e-5, 2e-5), rel=0.1)
+
+
+def test_a_bend_is_seen_in_the_lines_ends() -> None:
+    """Truth is theory: a row of radius 20 000 px, its lines' ends uneven by half a pixel, against
+    a straight one."""
+    numbers = np.arange(100)
+    long = numbers % 5 == 0
+    uneven = np.random.default_rng(4).normal(0, 0.5, 100)
+    for radius, seen_bend in ((20_000.0, 1 / 20_000.0), (math.inf, 0.0)):
+        ends = np.where(long, 50.0, 35.0) + uneven + ((numbers - 50) * PITCH) ** 2 / 2 / radius
+        held = Row(
+            Frame(0, 0, 0, math.pi / 2),
+            PITCH,
+            numbers,
+            numbers * PITCH,
+            ends,
+            ends,
+            tip=np.ones(100),
+            wide=np.zeros(100),
+            strength=np.ones(100),
+            light=False,
+            zone=30.0,
+        )
+        pattern = Pattern((1, 5), (Graduation.MM,), 0, (float(np.median(ends)) / PITCH, 5.0), 0, 1)
+        assert bend_of(held, pattern) == pytest.approx(seen_bend, rel=0.15)
