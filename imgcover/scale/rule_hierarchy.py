@@ -74,6 +74,8 @@ SHORTEST_SHARE = 0.4
 """Share of the lines that must be of one length: half of them, less a fifth for accidents."""
 BEND_SEEN = 4.0
 """Standard uncertainties of a bend that stands out from how unevenly lines end."""
+LEAST_SAG = 0.45
+"""Pixels by which both outer thirds must lie off the middle one: ends are told to whole pixels."""
 A_LEVEL = 4.0
 """Cost of one more length: near half the logarithm of the number of lines, twice (BIC)."""
 
@@ -141,7 +143,10 @@ def bend_of(row: Row, pattern: Pattern) -> float:
     terms, *_ = np.linalg.lstsq(design, row.reach[kept], rcond=None)
     rest = row.reach[kept] - design @ terms
     u = math.sqrt((rest**2).sum() / (kept.sum() - 3) / (design[:, 2] ** 2).sum())
-    return 2 * abs(float(terms[2])) if abs(terms[2]) > BEND_SEEN * u else 0.0
+    first, middle, last = (float(np.median(p)) for p in np.array_split(row.reach[kept], 3))
+    # lines cut short at one end of a row are no bend
+    sag = min(abs(first - middle), abs(last - middle)) if (first > middle) == (last > middle) else 0
+    return 2 * abs(float(terms[2])) if sag > LEAST_SAG and abs(terms[2]) > BEND_SEEN * u else 0.0
 
 
 def _crowded(reach: NDArray[np.float64], scatter: float) -> bool:
