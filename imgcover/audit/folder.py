@@ -159,6 +159,7 @@ def _not_empty(folder: Path, listing: Listing) -> Listing:
 
 def _by_sheet(rows: Sequence[SheetRow], grounds: Grounds, shelf: ArticleShelf) -> Iterator[Listed]:
     seen: dict[str | Path, str] = {}
+    meant: dict[str, Path] = {}
     for row in rows:
         picture = row.cells["picture"]
         path, fault = _reached(grounds, picture)
@@ -168,7 +169,8 @@ def _by_sheet(rows: Sequence[SheetRow], grounds: Grounds, shelf: ArticleShelf) -
                 f"{row.where}, picture", f"{earlier} lists it too", "keep one row a picture"
             )
         named = row.get("article")
-        article = shelf.by_folder(path) if named is None else shelf.find(named, row.where)
+        if named is not None and named not in meant:
+            meant[named] = shelf.find(named, row.where)
         yield Listed(
             name=plain(picture),
             path=path,
@@ -176,7 +178,7 @@ def _by_sheet(rows: Sequence[SheetRow], grounds: Grounds, shelf: ArticleShelf) -
             where=row.where,
             sample={column: row.cells[column] for column in SAMPLE_COLUMNS if row.get(column)},
             options={column: row.cells[column] for column in OPTION_COLUMNS if row.get(column)},
-            article=article,
+            article=shelf.by_folder(path) if named is None else meant[named],
         )
 
 

@@ -8,7 +8,7 @@ from typing import Any
 
 from imgcover.audit.evidence import observed_from
 from imgcover.cloth.declaration import Declaration
-from imgcover.cloth.prediction import predict
+from imgcover.cloth.prediction import Prediction, predict
 from imgcover.findings import Flag, found
 from imgcover.ledger.chain import Row
 from imgcover.ledger.sections import findings_section, tidied
@@ -49,6 +49,7 @@ def sum_lot(
     *,
     lot: str,
     declaration: Declaration | None,
+    prediction: Prediction | None = None,
     risk: float | None,
 ) -> dict[str, Any]:
     """Sum a lot's pictures by place.
@@ -64,6 +65,8 @@ def sum_lot(
         Its name.
     declaration : Declaration or None
         Of its article.
+    prediction : Prediction or None
+        What the declaration implies, where that is known already.
     risk : float or None
         As in `imgcover.verdict.lot.judge_lot`.
 
@@ -78,8 +81,8 @@ def sum_lot(
     if declaration is None:
         record = measured_lot(observed, lot=lot)
     else:
-        prediction = predict(declaration)
-        record = judge_lot(declaration, prediction, observed, lot=lot, risk=risk).record()
+        expected = predict(declaration) if prediction is None else prediction
+        record = judge_lot(declaration, expected, observed, lot=lot, risk=risk).record()
     record["findings"] += findings_section(
         found(
             Flag.SAME_PICTURE_TWICE,

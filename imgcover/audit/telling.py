@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import hashlib
 import json
-import os
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 from datetime import UTC, datetime
@@ -17,6 +16,7 @@ from imgcover.audit.out_folder import page_name
 from imgcover.audit.outcome import Crew, Lost
 from imgcover.audit.run import Round, record_in
 from imgcover.cloth.declaration import Declaration
+from imgcover.cloth.prediction import Prediction, predict
 from imgcover.errors import DeclarationError
 from imgcover.ledger.canonical import canonical
 from imgcover.ledger.chain import Entry, Head, Row
@@ -87,14 +87,11 @@ class PageOrder:
         Of the lot.
     glances : tuple of Glance
     about : About
-    scratch : Path
-        Where the drawing library may keep what it found out about fonts.
     """
 
     record: Mapping[str, Any]
     glances: tuple[Glance, ...]
     about: About
-    scratch: Path
 
 
 def sum_lots(round_: Round, *, risk: float | None) -> Iterator[ToldLot]:
@@ -106,6 +103,7 @@ def sum_lots(round_: Round, *, risk: float | None) -> Iterator[ToldLot]:
         Once it is on the disk.
     """
     pages: set[str] = set()
+    predicted: dict[Path | None, Prediction] = {}
     for name, indices in round_.listing.lots().items():
         declared = round_.book.declared(name.article)
         declaration = None if isinstance(declared, DeclarationError) else declared
@@ -115,7 +113,15 @@ def sum_lots(round_: Round, *, risk: float | None) -> Iterator[ToldLot]:
         key = _lot_key(round_, rows, declaration, risk)
         kept = round_.ledger.last(subject)
         if kept is None or kept.entry.key != key:
-            summed = sum_lot(members, lot=name.lot, declaration=declaration, risk=risk)
+            if declaration is not None and name.article not in predicted:
+                predicted[name.article] = predict(declaration)
+            summed = sum_lot(
+                members,
+                lot=name.lot,
+                declaration=declaration,
+                prediction=predicted.get(name.article),
+                risk=risk,
+            )
             round_.ledger.append([Entry(LOT_SCHEMA, subject, key, canonical(summed), _now())])
             kept = round_.ledger.last(subject)
             assert kept is not None
@@ -184,9 +190,7 @@ def write_reports(
 
 
 def made_page(order: PageOrder) -> str:
-    """Write a lot's page; called in a worker, where drawing it costs the parent nothing."""
-    # matplotlib would write into the home folder, and an audit writes nowhere but where it was told
-    os.environ["MPLCONFIGDIR"] = str(order.scratch)
+    """Write a lot's page; called in a worker, so that it costs the parent nothing."""
     return lot_page(order.record, order.glances, about=order.about)
 
 
@@ -262,9 +266,7 @@ def _page_order(round_: Round, lot: ToldLot, about: About) -> PageOrder:
         description=declared.article.description if isinstance(declared, Declaration) else "",
         article_sha256=declared.sha256 if isinstance(declared, Declaration) else "",
     )
-    return PageOrder(
-        record=lot.record(round_.ledger), glances=glances, about=told, scratch=round_.out.scratch
-    )
+    return PageOrder(record=lot.record(round_.ledger), glances=glances, about=told)
 
 
 def _first_page(round_: Round, lots: list[ToldLot], about: About) -> str:

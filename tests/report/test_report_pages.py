@@ -6,14 +6,16 @@ and nothing is fetched from anywhere.
 
 import re
 from html.parser import HTMLParser
+from xml.etree import ElementTree
 
+import numpy as np
 import pytest
 from lot_example import ABOUT, HOSTILE, glances_of, lot_record
 
 from imgcover.report.index_page import LotLine, index_page
 from imgcover.report.layout import near
 from imgcover.report.lot_page import lot_page
-from imgcover.report.plot import Panel, Point, places_drawing
+from imgcover.report.plot import LIMIT, Panel, Point, places_drawing
 
 
 class Seen(HTMLParser):
@@ -135,7 +137,8 @@ def test_the_first_page_lists_lots_and_counts_decisions():
     ]
 
 
-def test_the_drawing_is_the_same_to_the_byte_and_one_element():
+def test_the_drawing_is_the_same_to_the_byte_and_true_to_its_own_axis():
+    """Truth is geometry: every mark, read off against the axis's figures, is its value again."""
     panel = Panel(
         title="Ends",
         unit="/in",
@@ -148,9 +151,21 @@ def test_the_drawing_is_the_same_to_the_byte_and_one_element():
         accept_lower=66.9,
         accept_upper=None,
     )
-    drawn = places_drawing([panel, panel], places=2)
-    assert drawn == places_drawing([panel, panel], places=2)
-    assert drawn.startswith("<svg") and drawn.rstrip().endswith("</svg>")
+    drawn = places_drawing([panel], places=2)
+    assert drawn == places_drawing([panel], places=2)
+    sheet = ElementTree.fromstring(drawn)
+    figures = [
+        (float(each.get("y")), float(each.text))
+        for each in sheet.iter("text")
+        if each.get("text-anchor") == "end"
+    ]
+    slope, start = np.polyfit(*zip(*figures, strict=True), 1)
+    marked = [start + slope * float(each.get("cy")) for each in sheet.iter("circle")]
+    # places are written to 0.01 points, some 0.0004 ends here
+    assert marked == pytest.approx([68.0, 68.4], abs=0.001)
+    red = [each.get("d") for each in sheet.iter("path") if each.get("stroke") == LIMIT]
+    heights = [float(d.split()[1].split("L")[0]) for d in red]
+    assert [start + slope * y for y in heights] == pytest.approx([66.6], abs=0.001)
 
 
 def test_many_pictures_leave_a_page_of_bounded_size(tmp_path):
