@@ -23,6 +23,7 @@ from numpy.typing import NDArray
 from imgcover.cover.reading import CoverReading, Lattice, Pitch
 from imgcover.errors import OptionError, PictureError
 from imgcover.findings import Finding, Flag, found, has
+from imgcover.ledger.provenance import library_versions
 from imgcover.picture.picture import Picture
 from imgcover.picture.reader import read_picture
 from imgcover.request import Enclosed, Options
@@ -52,9 +53,10 @@ ALWAYS_ASKED = ("imgcover.threads.reader", "imgcover.cover.reader")
 
 @contextmanager
 def getting_ready() -> Iterator[None]:
-    """Load the rooms that every picture comes to beside what is done meanwhile."""
+    """Load the rooms that every picture comes to, and ask for versions, beside what is done."""
 
     def load() -> None:
+        library_versions()
         for room in ALWAYS_ASKED:
             import_module(room)
 

@@ -75,19 +75,18 @@ def inspect(request: Request) -> Inspection:
         When a file that an option names cannot be used.
     """
     options, declaration = request.options, request.declaration
-    answers = _asked(request)
     try:
         with getting_ready():
             picture = read_picture(request.source, name=request.name, tone=options.tone)
     except PictureError as fault:
-        return _judged(_unread(answers, request, fault), request)
+        return _judged(_unread(_asked(request), request, fault), request)
     scale = find_scale(picture, options)
     weave = None if declaration is None else declaration.article.weave
     threads = count_threads(picture, options, scale, declared_weave=weave)
     density = density_in(threads, scale.scale, options)
     cover = measure_cover(picture, threads, scale.scale, options)
     measured = replace(
-        answers,
+        _asked(request),
         sha256=picture.sha256,
         picture=picture,
         scale=scale.scale,
@@ -144,7 +143,7 @@ def _judged(answers: Answers, request: Request) -> Inspection:
 
 
 def _asked(request: Request) -> Answers:
-    """What is known of a picture before it is opened."""
+    """What is known of a picture without looking at it."""
     options, declaration = request.options, request.declaration
     blank, dark = (exposure(path, options.tone) for path in (options.blank, options.dark))
     device = certificate(options.device)

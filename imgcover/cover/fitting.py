@@ -9,6 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from imgcover.cover.before import BLUR, DEPTH, FINEST, ROUNDNESS, Before
+from imgcover.cover.limits import MOST, bounded, limits, stepped
 from imgcover.cover.normal import Meets, Normal, by_terms, multiply
 from imgcover.cover.openings import FAR, LOCAL, TERMS, Optics, expect
 from imgcover.cover.places import Places
@@ -20,13 +21,6 @@ Floats = NDArray[np.float64]
 
 MOST_LEAN = 0.4
 """Neither leans nor densities can be followed further than this."""
-FLATTEST, ROUNDEST = 0.05, 0.5
-"""Limits of the roundness: a ribbon with steep edges, and a round yarn; what fades more slowly than
-that towards its rim is hairs, which are not counted as cover."""
-THINNEST, DENSEST = 0.2, 9.0
-"""Limits of a yarn's depth: one lets 82 % of the light through, the other nothing."""
-SHARPEST = 0.05
-"""The least blur, px: below it the pixel's own aperture is all that is seen."""
 CLEANEST = 5e-4
 """The least misfit that a pixel may be trusted to: no file of 8 bits is truer in linear light."""
 OUTLYING = 6.0
@@ -35,16 +29,36 @@ STARTS = (1.4, 1.0)
 """Bare light over the brightest pores that the fit starts from: small pores never reach it."""
 FAIR = 0.02
 """Misfit over the light of an explanation that is fair: no other start need be tried."""
-FIRST_ROUNDS, ROUNDS = 6, 18
-"""Steps while edges keep together, and steps at most after that: six or seven settle."""
-HELD = 0.1
+FIRST_ROUNDS, HELD = 6, 0.1
 """At first edges keep together and the section is held: light, blur and depth come first."""
+NEXT_ROUNDS = (math.sqrt(HELD), 1.0, 1.0)
+"""How loosely edges and section are then held, step by step."""
+EDGE_ROUNDS, ROUNDS = 2, 18
+"""Steps of the edges of all pores towards light and yarns found in some; and then of all that is
+sought at most: three to six settle."""
 SETTLED = 3e-4
-"""Change of the logarithm of light and blur below which the fit has settled."""
+"""Change of the logarithm of light and blur below which the fit has settled. A change that does not
+shrink goes to and fro, and is halved from then on."""
 DAMPING = 1e-3
 """Share added to each pore's own curvature: an edge that nothing shows does not run away."""
-MOST = np.array([0.2] * TERMS + [0.25, 0.15, 0.15, 0.1, 0.01])
-"""Largest step of what is shared: beyond it the derivatives no longer hold."""
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Begun:
+    """Where a fit may start.
+
+    Parameters
+    ----------
+    optics : Optics
+    edges : ndarray, shape (n, 12)
+        Of the pores that were looked at.
+    usual : float
+        Their median misfit, linear light.
+    """
+
+    optics: Optics
+    edges: Floats
+    usual: float
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -127,28 +141,41 @@ class Fit:
         self._leans = (-lattice.ends[1] / lattice.ends[0], -lattice.picks[0] / lattice.picks[1])
         self._before = Before(places, self._pitch, self._leans, known_light_u, finest)
 
-    def solve(self) -> Fitted:
-        """Start from as many lights as it takes to explain the picture fairly."""
-        tried: list[Fitted] = []
+    def begin(self) -> Begun:
+        """Find light, blur and yarns roughly, from as many lights as explain the picture fairly."""
+        tried: list[Begun] = []
         for brighter in STARTS[:1] if self._light_known else STARTS:
-            tried.append(self._from(*self._start(brighter)))
-            if tried[-1].usual < FAIR * float(np.exp(tried[-1].optics.light[0])):
+            edges, optics = self._start(brighter)
+            for _ in range(FIRST_ROUNDS):
+                edges, optics, _ = self._step(edges, optics, HELD)
+            optics = self._told_by_usual(edges, optics)
+            for loose in NEXT_ROUNDS:
+                edges, optics, _ = self._step(edges, optics, loose)
+            usual = math.sqrt(self._normal(edges, optics).usual)
+            tried.append(Begun(optics, edges, usual))
+            if usual < FAIR * float(np.exp(optics.light[0])):
                 break
         return min(tried, key=lambda each: each.usual)
 
-    def _from(self, edges: Floats, optics: Optics) -> Fitted:
-        for _ in range(FIRST_ROUNDS):
-            edges, optics, _ = self._step(edges, optics, HELD)
-        optics = self._told_by_usual(edges, optics)
+    def solve(self, begun: Begun) -> Fitted:
+        """Move edges, light, blur and yarns until they have settled."""
+        edges, optics = begun.edges, begun.optics
+        if len(edges) != len(self._places.row):
+            gaps = np.median(edges[:, [1, 3]] - edges[:, [0, 2]], axis=0)
+            edges = self._alike(float(gaps[0]), float(gaps[1]))
+            for _ in range(EDGE_ROUNDS):
+                edges = self._shifted(edges, self._normal(edges, optics).alone(DAMPING))
+        relaxed, last = 1.0, math.inf
         for k in range(ROUNDS):
-            edges, optics, change = self._step(edges, optics, math.sqrt(HELD) if k == 0 else 1.0)
-            if k > 2 and change < SETTLED:
+            edges, optics, change = self._step(edges, optics, relaxed=relaxed)
+            if k > 1 and change < SETTLED:
                 break
+            relaxed, last = relaxed if change < last else relaxed / 2, change
         return self._fitted(edges, optics)
 
     def _start(self, brighter: float) -> tuple[Floats, Optics]:
         """Guess light and yarn from the extremes, edges from the half level."""
-        places, patch = self._places, self._places.patch
+        patch = self._places.patch
         high = float(np.quantile(patch, 0.98))
         low = max(float(np.quantile(patch, 0.05)), 1e-3 * high)
         middle = patch.shape[1] // 2, patch.shape[2] // 2
@@ -158,21 +185,22 @@ class Fit:
         height = np.clip(np.median(seen[:, :, middle[1]].sum(axis=1)), 0.15 * down, 0.8 * down)
         # What comes through stays the same: pores that are brighter than they look are smaller.
         width, height = width / np.sqrt(brighter), height / np.sqrt(brighter)
-        edges = np.empty((len(patch), LOCAL))
-        for k, place, gap, lean in (
-            (0, places.x, width, self._leans[0]),
-            (2, places.y, height, self._leans[1]),
-        ):
-            edges[:, k], edges[:, k + 1] = place - gap / 2, place + gap / 2
-            edges[:, 4 + k : 6 + k] = lean
-        edges[:, 8:] = 0
         light = np.zeros(TERMS)
         bare = 1.0 if self._light_known else high * brighter
         light[0] = np.log(bare)
         depth = 0.7 * float(np.log(bare / low)) if bare > low else DEPTH
         ends = Yarn(float(across - width) / 2, depth, ROUNDNESS)
         picks = Yarn(float(down - height) / 2, depth, ROUNDNESS)
-        return edges, Optics(light, BLUR, ends, picks, 0.1 * low)
+        optics = Optics(light, BLUR, ends, picks, 0.1 * low)
+        return self._alike(float(width), float(height)), optics
+
+    def _alike(self, width: float, height: float) -> Floats:
+        """Edges of gaps that are all alike, where the repeats put them."""
+        edges = np.zeros((len(self._places.row), LOCAL))
+        for k, place, gap in ((0, self._places.x, width), (2, self._places.y, height)):
+            edges[:, k], edges[:, k + 1] = place - gap / 2, place + gap / 2
+            edges[:, 4 + k : 6 + k] = self._leans[k // 2]
+        return edges
 
     def _normal(self, edges: Floats, optics: Optics, loose: float = 1.0) -> Normal:
         expected = expect(self._places, edges, optics, self._terms)
@@ -208,23 +236,27 @@ class Fit:
         )
 
     def _step(
-        self, edges: Floats, optics: Optics, loose: float = 1.0
+        self, edges: Floats, optics: Optics, loose: float = 1.0, relaxed: float = 1.0
     ) -> tuple[Floats, Optics, float]:
         """Move everything once; the third value says how far light and blur have moved."""
         normal = self._normal(edges, optics, loose)
         alone, carried, matrix, toward = normal.solved(DAMPING)
         stiff = matrix + 1e-7 * np.diag(np.diag(matrix))
-        change = _bounded(stiff, toward, *_limits(optics))
-        change = change * min(1.0, 1 / float(np.max(np.abs(change) / MOST)))
-        moved = alone - carried @ change
+        change = bounded(stiff, toward, *limits(optics))
+        change = change * min(relaxed, 1 / float(np.max(np.abs(change) / MOST)))
+        edges = self._shifted(edges, alone - carried @ change)
+        moved_by = max(abs(float(change[0])), abs(float(change[TERMS])) / optics.blur_px)
+        return edges, stepped(optics, change), moved_by
+
+    def _shifted(self, edges: Floats, change: Floats) -> Floats:
+        """Step the edges; none passes another."""
         reach = 0.12 * min(self._pitch)
-        edges = edges + np.clip(moved, -reach, reach)
+        edges = edges + np.clip(change, -reach, reach)
         edges[:, 4:] = np.clip(edges[:, 4:], -MOST_LEAN, MOST_LEAN)
         for k in (0, 2):
             crossed = edges[:, k] > edges[:, k + 1]
             edges[crossed, k : k + 2] = edges[crossed, k : k + 2].mean(axis=1)[:, None]
-        moved_by = max(abs(float(change[0])), abs(float(change[TERMS])) / optics.blur_px)
-        return edges, _moved(optics, change), moved_by
+        return edges
 
     def _told_by_usual(self, edges: Floats, optics: Optics) -> Optics:
         """Tell the yarns' depth for the width that is usual now; their shadows stay the same."""
@@ -262,50 +294,6 @@ def _at_least(matrix: Floats, before: Floats) -> Floats:
     values, vectors = np.linalg.eigh((told + told.T) / 2)
     kept = (vectors * np.maximum(values, 0)) @ vectors.T
     return np.asarray(kept * np.outer(scale, scale) + before)
-
-
-def _bounded(matrix: Floats, toward: Floats, low: Floats, high: Floats) -> Floats:
-    """Solve for steps between limits; what would leave them is held there, and the rest follows."""
-    change, held = np.zeros(len(toward)), np.zeros(len(toward), np.bool_)
-    while not held.all():
-        free = ~held
-        rest = toward - matrix[:, held] @ change[held]
-        change[free] = np.linalg.solve(matrix[np.ix_(free, free)], rest[free])
-        beyond = (change < low) | (change > high)
-        if not beyond.any():
-            break
-        change = np.clip(change, low, high)
-        held |= beyond
-    return change
-
-
-def _limits(optics: Optics) -> tuple[Floats, Floats]:
-    """Say how far what is shared may move down and up."""
-    free = np.full(TERMS, np.inf)
-    depths = np.array([optics.ends.depth, optics.picks.depth])
-    here = np.array([optics.blur_px, optics.ends.roundness, optics.glare])
-    low, high = np.array([SHARPEST, FLATTEST, 0.0]) - here, np.array([np.inf, ROUNDEST, np.inf])
-    thinner, denser = THINNEST / depths - 1, DENSEST / depths - 1
-    return (
-        np.concatenate([-free, low[:1], thinner, low[1:]]),
-        np.concatenate([free, high[:1], denser, high[1:] - here[1:]]),
-    )
-
-
-def _moved(optics: Optics, change: Floats) -> Optics:
-    """Step what is shared."""
-    blur, ends, picks, rounder, glare = (float(each) for each in change[TERMS:])
-    yarns = [
-        replace(yarn, depth=yarn.depth * (1 + deeper), roundness=yarn.roundness + rounder)
-        for yarn, deeper in ((optics.ends, ends), (optics.picks, picks))
-    ]
-    return Optics(
-        light=optics.light + change[:TERMS],
-        blur_px=optics.blur_px + blur,
-        ends=yarns[0],
-        picks=yarns[1],
-        glare=max(0.0, optics.glare + glare),
-    )
 
 
 def light_terms(row: Floats, column: Floats, rows: int, columns: int) -> Floats:

@@ -67,6 +67,8 @@ yarns are, and what the picture cannot tell of it counts so many times more."""
 LOSSY_U, LOSSY_FINEST = 0.005, 0.004
 """Cover from a file stored with losses is uncertain by the first, and its profiles are true to the
 second, a share of the light (24 cloths of 6 to 22 px stored as JPEG of quality 80 and 90)."""
+WINDOWS_FIRST = 6
+"""Windows in which light, blur and yarns are first looked for: the light has six coefficients."""
 BLANK_U = 0.003
 """Relative standard uncertainty of a blank exposure: lamps drift between two pictures."""
 
@@ -146,15 +148,19 @@ def by_openings(
         Whether the picture was stored with losses.
     """
     rows, columns = size
-    fit = Fit(
-        places,
-        lattice,
-        rows=rows,
-        columns=columns,
-        known_light_u=BLANK_U if light_known else None,
-        finest=LOSSY_FINEST if lossy else FINEST,
-    )
-    fitted = fit.solve()
+
+    def fit(some: Places) -> Fit:
+        return Fit(
+            some,
+            lattice,
+            rows=rows,
+            columns=columns,
+            known_light_u=BLANK_U if light_known else None,
+            finest=LOSSY_FINEST if lossy else FINEST,
+        )
+
+    # Light, blur and yarns are all but told by a few of the windows.
+    fitted = fit(places).solve(fit(places.thinned(WINDOWS_FIRST)).begin())
     surface = Surface(rows, columns, tuple(float(c) for c in fitted.optics.light))
     bare = np.exp(light_terms(places.row, places.column, rows, columns) @ fitted.optics.light)
     cells = cells_of(places, fitted)

@@ -12,8 +12,9 @@ from imgcover.cover.places import Places
 
 Floats = NDArray[np.float64]
 
-CONJUGATES, CLOSE = 40, 1e-6
-"""Conjugate gradient steps at most, and the remaining error (squared) at which they may stop."""
+CONJUGATES, CLOSE, ROUGH = 40, 1e-6, 1e-4
+"""Conjugate gradient steps at most, and the remaining error (squared) at which they may stop; the
+last where nothing shared is told by it."""
 
 
 ATOMS = (
@@ -126,6 +127,11 @@ class Normal:
     def solved(self, damping: float) -> tuple[Floats, Floats, Floats, Floats]:
         """Eliminate the pores' own unknowns.
 
+        Parameters
+        ----------
+        damping : float
+            Share added to each pore's own curvature.
+
         Returns
         -------
         alone : ndarray, shape (n, 12)
@@ -135,18 +141,24 @@ class Normal:
         matrix, toward : ndarray, shapes (11, 11) and (11,)
         """
         wanted = np.concatenate([self.cross, self.toward_own[..., None]], axis=2)
-        found = self._conjugate(wanted, damping)
+        found = self._conjugate(wanted, damping, CLOSE)
         carried, alone = found[..., :-1], found[..., -1]
         matrix = self.shared - np.einsum("nak,nal->kl", self.cross, carried)
         toward = self.toward_shared - np.einsum("nak,na->k", carried, self.toward_own)
         return alone, carried, matrix, toward
 
-    def _conjugate(self, wanted: Floats, damping: float) -> Floats:
+    def alone(self, damping: float) -> Floats:
+        """Give the steps of the pores' own unknowns were the shared ones to stay: (n, 12)."""
+        return self._conjugate(self.toward_own[..., None], damping, ROUGH)[..., 0]
+
+    def _conjugate(self, wanted: Floats, damping: float, close: float) -> Floats:
         """Solve for the pores' own unknowns by conjugate gradients, each pore's block first."""
         block = self.gram[:, :LOCAL, :LOCAL] + self.expected
         block = block + self.meets.gather_diagonal(self.gram)[..., None] * np.eye(LOCAL)
         stiff = damping * np.einsum("naa->na", block)[..., None]
-        inverse = np.linalg.inv(block + stiff * np.eye(LOCAL))
+        # It only has to lead the right way: single precision takes half the time.
+        inverse = np.linalg.inv((block + stiff * np.eye(LOCAL)).astype(np.float32))
+        inverse = inverse.astype(np.float64)
         gram = self.gram.copy()
         gram[:, :LOCAL, :LOCAL] += self.expected + stiff * np.eye(LOCAL)
 
@@ -154,19 +166,22 @@ class Normal:
             return self.meets.gather(gram @ self.meets.spread(own))
 
         answer = inverse @ wanted
+        least = close * np.einsum("nak,nak->k", wanted, answer) + 1e-300
         rest = wanted - apply(answer)
         towards = inverse @ rest
         heading, size = towards, np.einsum("nak,nak->k", rest, towards)
-        least = CLOSE * np.einsum("nak,nak->k", wanted, inverse @ wanted) + 1e-300
         for _ in range(CONJUGATES):
             if np.all(size < least):
                 break
             pushed = apply(heading)
             far = size / np.maximum(np.einsum("nak,nak->k", heading, pushed), 1e-300)
-            answer, rest = answer + far * heading, rest - far * pushed
+            answer = answer + far * heading
+            pushed *= far
+            rest -= pushed
             towards = inverse @ rest
             before, size = size, np.einsum("nak,nak->k", rest, towards)
-            heading = towards + size / np.maximum(before, 1e-300) * heading
+            heading = heading * (size / np.maximum(before, 1e-300))
+            heading += towards
         return answer
 
 

@@ -209,20 +209,25 @@ def _profile(
 
     offset, half = threads(edges)
     near = shadow.change(offset[:, 1:3], half[:, 1:3])
-    here = near[..., 0].sum(axis=1) + shadow.dark(offset[:, ::3], half[:, ::3]).sum(axis=1)
     lean = np.float32(reach) * leans
-    less, more = (shadow.dark(*threads(edges + side * lean)).sum(axis=1) for side in (-1, 1))
+    # What the two threads farther off lean by does not reach the patch.
+    close = near[..., 0].sum(axis=1)
+    less, more = (
+        shadow.dark(*(each[:, 1:3] for each in threads(edges + side * lean))).sum(axis=1) - close
+        for side in (-1, 1)
+    )
     # A thread's edge that moves by one moves its middle, and half its width, by a half.
     first, second = -(near[..., 4] + near[..., 5]) / 2, (near[..., 5] - near[..., 4]) / 2
     by_blur, by_roundness = near[..., 1].sum(axis=1), near[..., 3].sum(axis=1)
     dense = near[..., 2] * np.float32(yarn.depth)
+    here = close + shadow.dark(offset[:, ::3], half[:, ::3]).sum(axis=1)
     light = 1 - here - np.einsum("nk,nkx->nx", denser, dense)
     rows = [light, -second[:, 0], -first[:, 1], -first[:, 0], -second[:, 1]]
     rows += [-by_blur, -dense[:, 0], -dense[:, 1], -by_roundness]
     return _Profile(
         rows=np.stack(rows, axis=1).astype(np.float32),
         lean=(less - more) / np.float32(2 * reach),
-        bend=(2 * here - less - more) / np.float32(2 * reach**2),
+        bend=-(less + more) / np.float32(2 * reach**2),
     )
 
 

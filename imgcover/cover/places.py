@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, fields
 
 import cv2
 import numpy as np
@@ -14,6 +14,8 @@ from imgcover.repeat.between import between
 
 ALONE = 0.3
 """Share of the pitch that is still seen on a side where the next pore is not known."""
+TURNS, CLOSE_PX = 10, 0.002
+"""Steps towards a pore's place at most, and the step that ends them: the fit starts there."""
 NEIGHBOURS = (-2, -1, 0, 1, 2)
 """Gaps on either side whose threads can blur into a pore's patch."""
 
@@ -37,6 +39,8 @@ class Places:
     beside, above : ndarray, shape (n, 5), int64
         The pores 2 and 1 before, itself, and 1 and 2 after, along the row and down the column;
         the nearest one where there is none.
+    window : ndarray, shape (n,), int64
+        The number of the window it lies in; so do all its neighbours.
     beside_lacks, above_lacks : ndarray, shape (n, 5), float64
         How many px to add to that pore's own edges to stand for the one that is lacking, beyond
         what its place tells: pitches off the end of the grid.
@@ -51,8 +55,18 @@ class Places:
     y: NDArray[np.float64]
     beside: NDArray[np.int64]
     above: NDArray[np.int64]
+    window: NDArray[np.int64]
     beside_lacks: NDArray[np.float64]
     above_lacks: NDArray[np.float64]
+
+    def thinned(self, windows: int) -> Places:
+        """Keep so many windows or more, evenly spread; all where there are not twice as many."""
+        there, number = np.unique(self.window, return_inverse=True)
+        kept = number % max(1, len(there) // windows) == 0
+        told = {each.name: getattr(self, each.name)[kept] for each in fields(self)}
+        renumbered = np.cumsum(kept) - 1
+        told |= {name: renumbered[told[name]] for name in ("beside", "above")}
+        return Places(**told)
 
     @property
     def whole(self) -> NDArray[np.bool_]:
@@ -79,38 +93,27 @@ def pore_places(windows: list[Window], lattice: Lattice) -> Places:
     reach = (round(down / 2), round(across / 2))
     parts: list[Places] = []
     first = 0
-    for window in windows:
-        part = _in_window(window, lattice, reach, first)
+    for number, window in enumerate(windows):
+        part = _in_window(window, lattice, reach, first, number)
         if part is not None:
             parts.append(part)
             first += len(part.row)
     if not parts:
         empty, none = np.zeros(0), np.zeros((0, 5))
         patch = np.zeros((0, 2 * reach[0] + 1, 2 * reach[1] + 1), np.float32)
-        index = np.zeros((0, 5), np.int64)
+        index, which = np.zeros((0, 5), np.int64), np.zeros(0, np.int64)
         return Places(
-            patch, patch > 0, patch > 0, empty, empty, empty, empty, index, index, none, none
+            *(patch, patch > 0, patch > 0, empty, empty, empty, empty),
+            *(index, index, which, none, none),
         )
-    names = (
-        "patch",
-        "sound",
-        "clipped",
-        "row",
-        "column",
-        "x",
-        "y",
-        "beside",
-        "above",
-        "beside_lacks",
-        "above_lacks",
-    )
+    names = [each.name for each in fields(Places)]
     return Places(*(np.concatenate([getattr(part, name) for part in parts]) for name in names))
 
 
 def _in_window(
-    window: Window, lattice: Lattice, reach: tuple[int, int], first: int
+    window: Window, lattice: Lattice, reach: tuple[int, int], first: int, which: int
 ) -> Places | None:
-    """The pores of one window; their numbers start at `first`."""
+    """The pores of one window, its number `which`; their numbers start at `first`."""
     x, y = _grid(window.light, lattice)
     rows, columns = window.light.shape
     row, column = np.rint(y).astype(int), np.rint(x).astype(int)
@@ -145,6 +148,7 @@ def _in_window(
         y=y[fits] - row[fits],
         beside=beside,
         above=above,
+        window=np.full(len(patch), which),
         beside_lacks=beside_lacks,
         above_lacks=above_lacks,
     )
@@ -196,13 +200,15 @@ def _grid(
     y = np.full(wanted_end.shape, float(step * middle[0]))
     at_end = np.full(x.shape, ends[middle])
     at_pick = np.full(x.shape, picks[middle])
-    for _ in range(10):
+    for _ in range(TURNS):
         off = np.stack([wanted_end - at_end, wanted_pick - at_pick], axis=-1) @ back.T
         x, y = x + off[..., 0], y + off[..., 1]
         at_end, at_pick = (
             _look(turns, x, y, frequency, step)
             for turns, frequency in ((ends, lattice.ends), (picks, lattice.picks))
         )
+        if float(np.abs(off).max()) < CLOSE_PX:
+            break
     return x, y
 
 

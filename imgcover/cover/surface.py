@@ -41,14 +41,27 @@ class Surface:
         rows, columns = window.light.shape
         row = window.row + np.arange(rows, dtype=float)[:, None]
         column = window.column + np.arange(columns, dtype=float)[None, :]
-        return self.at(row, column).astype(np.float32)
+        # All terms but that of xy belong to a row or to a column: a quarter of the work.
+        c = self.coefficients
+        x, y = self._sides(row, column)
+        along = (c[0] + c[1] * x + c[3] * x * x).astype(np.float32)
+        down = (c[2] * y + c[5] * y * y).astype(np.float32)
+        tilted = (c[4] * y).astype(np.float32) * x.astype(np.float32)
+        return np.asarray(np.exp(tilted + (along + down)), np.float32)
 
     def _terms(
         self, row: NDArray[np.float64], column: NDArray[np.float64]
     ) -> tuple[NDArray[np.float64], ...]:
-        y = 2 * row / max(1, self.rows - 1) - 1
-        x = 2 * column / max(1, self.columns - 1) - 1
+        x, y = self._sides(row, column)
         return np.ones_like(x * y), x, y, x * x, x * y, y * y
+
+    def _sides(
+        self, row: NDArray[np.float64], column: NDArray[np.float64]
+    ) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+        """Places as x and y from -1 to 1."""
+        x = 2 * column / max(1, self.columns - 1) - 1
+        y = 2 * row / max(1, self.rows - 1) - 1
+        return x, y
 
 
 def open_pore_light(
@@ -80,8 +93,18 @@ def open_pore_light(
                     places.append(
                         (window.row + row + block / 2, window.column + column + block / 2)
                     )
-                    lights.append(float(np.quantile(part, BRIGHT_SHARE)))
+                    lights.append(_bright(part))
     return _fit(np.array(places), np.array(lights), rows, columns)
+
+
+def _bright(part: NDArray[np.float32]) -> float:
+    """Quantile `BRIGHT_SHARE`, as NumPy's own, which takes five times as long for so few."""
+    place = BRIGHT_SHARE * (part.size - 1)
+    below = int(place)
+    above = min(below + 1, part.size - 1)
+    sorted_there = np.partition(part, (below, above))
+    low, high = float(sorted_there[below]), float(sorted_there[above])
+    return low + (high - low) * (place - below)
 
 
 def _fit(
