@@ -212,9 +212,9 @@ class Flag(Enum):
         than their uncertainties
         → see whether they show the same place and have the right scale"""
     # audit
-    PICTURE_OUT_OF_REACH = """refusal: the picture lies outside the audited folder, or is no
-        ordinary file
-        → copy the picture itself into the folder"""
+    PICTURE_OUT_OF_REACH = """refusal: the picture is not there, lies outside the audited folder, or
+        is no ordinary file
+        → check its name in the lot sheet, or copy the picture itself into the folder"""
     MEASURING_DIED = """refusal: measuring ended its process twice, the second time alone on the
         machine
         → export the picture again; if it is sound, give the machine more memory"""

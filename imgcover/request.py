@@ -34,8 +34,9 @@ STATED_GSM_U = 0.01
 moisture moves cotton as much again."""
 STATED_BARS_U_MM = 0.15
 """Reading both ends of a bar on a steel rule to a tenth of a millimetre or so."""
-MOST_GSM = 5_000.0
-"""g/m²: the heaviest belting; more is a figure in another unit."""
+LEAST_GSM, MOST_GSM = 1.0, 5_000.0
+"""g/m²: the finest silk veil weighs some 10, the heaviest belting 4,000; anything else is a figure
+in another unit, such as 0.118 kg/m²."""
 HIGHEST_RISK = 0.5
 """A risk of one half or more would let anything through."""
 
@@ -212,6 +213,8 @@ def _tone(text: str | None) -> Tone | None:
 
 def _number(name: str, text: str, *, low: float, high: float, example: str) -> float:
     """Read a number strictly between two limits."""
+    if "," in text:
+        raise OptionError(f"--{name}", f"{text!r} has a comma instead of a decimal point", example)
     try:
         value = float(text)
     except ValueError:
@@ -242,7 +245,7 @@ def _gsm(text: str | None, u_text: str | None) -> Measured | None:
         if u_text is not None:
             raise OptionError("--gsm-u", "there is no --gsm that it belongs to", "give --gsm")
         return None
-    value = _number("gsm", text, low=0.0, high=MOST_GSM, example="write g/m2: --gsm 118")
+    value = _number("gsm", text, low=LEAST_GSM, high=MOST_GSM, example="write g/m2: --gsm 118")
     u = STATED_GSM_U * value
     if u_text is not None:
         u = _number("gsm-u", u_text, low=0.0, high=value, example="write g/m2: --gsm-u 1")

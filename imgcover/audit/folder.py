@@ -18,7 +18,9 @@ from imgcover.audit.lot_sheet import (
     SheetRow,
     find_sheet,
     read_sheet,
+    tables,
 )
+from imgcover.audit.out_folder import REPORTS
 from imgcover.errors import LotSheetError
 from imgcover.report.plain import plain
 
@@ -33,6 +35,8 @@ picture under a wrong name must end as a finding, not be passed over."""
 LITTER = frozenset({"thumbs.db", "desktop.ini", "ehthumbs.db"})
 """What file browsers leave behind; names that begin with a dot are passed over too."""
 
+MOST_NAMED = 12
+"""Names of pictures that the lot sheet leaves out, in one sentence."""
 DEEPEST = 30
 """Folders inside folders; nobody files swatches deeper, and a trap is not followed for ever."""
 
@@ -92,11 +96,31 @@ class Listing:
         Pictures that lie in the folder but not in its lot sheet.
     sheet : str
         The lot sheet's name; empty where sub-folders are the lots.
+    strays : tuple of str
+        Tables that lie in a folder without a lot sheet: none has its name.
     """
 
     pictures: tuple[Listed, ...]
     unlisted: tuple[str, ...]
     sheet: str
+    strays: tuple[str, ...] = ()
+
+    @property
+    def notes(self) -> list[str]:
+        """What lies in the folder and was passed over."""
+        said = []
+        if self.strays:
+            names = ", ".join(self.strays)
+            said.append(
+                f"sub-folders were taken for lots; not read, for a lot sheet is called"
+                f" {' or '.join(SHEET_NAMES)}: {names}"
+            )
+        if self.unlisted:
+            names = ", ".join(self.unlisted[:MOST_NAMED])
+            more = len(self.unlisted) - MOST_NAMED
+            left = f" and {more} more" if more > 0 else ""
+            said.append(f"in the folder but not in {self.sheet}: {names}{left}")
+        return said
 
     def lots(self) -> dict[LotName, list[int]]:
         """Group the pictures, by their place in the list, under their lots."""
@@ -131,7 +155,8 @@ def list_folder(folder: Path, *, articles: Path | None, left_out: Sequence[Path]
     lain = list(_walk(grounds.bases[0], {path.resolve() for path in left_out}))
     if sheet is None:
         pictures = tuple(_by_folder(grounds, lain))
-        return _not_empty(folder, Listing(pictures, (), ""))
+        strays = tuple(_told(path, folder) for path in tables(folder))
+        return _not_empty(folder, Listing(pictures, (), "", strays))
     pictures = tuple(_by_sheet(read_sheet(sheet), grounds, shelf))
     listed = {picture.path for picture in pictures}
     listed |= {_reached(grounds, name)[0] for name in _light_frames(pictures)}
@@ -225,6 +250,8 @@ def _walk(folder: Path, left_out: set[Path], depth: int = 0) -> Iterator[Path]:
     except OSError:
         yield folder
         return
+    if depth and {entry.name for entry in found} >= REPORTS:
+        return  # an audit wrote here: its small pictures are no goods
     for entry in found:
         path = Path(entry.path)
         if entry.name.startswith("."):

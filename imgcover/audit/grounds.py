@@ -90,6 +90,8 @@ def read_file(path: Path, *, most: int = LARGEST_FILE) -> bytes:
         if not stat.S_ISREG(kind.st_mode):
             raise OffGroundsError(f"it is {kind_of(kind.st_mode)}, not a file")
         handle = os.open(path, flags)
+    except FileNotFoundError:
+        raise OffGroundsError("there is no such file") from None
     except OSError as fault:
         raise OffGroundsError(f"it cannot be opened ({fault.strerror})") from None
     with os.fdopen(handle, "rb") as file:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import csv
 import io
+import re
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from difflib import get_close_matches
@@ -13,6 +14,8 @@ from imgcover.audit.workbook import read_workbook
 from imgcover.errors import LotSheetError
 
 SHEET_NAMES = ("lots.csv", "lots.xlsx")
+TABLES = frozenset({".csv", ".xlsx", ".xls", ".xlsm", ".ods", ".tsv"})
+"""Endings of tables; of one under another name it is said that it was not read."""
 LARGEST_FILE = 50_000_000
 """Bytes: a hundred thousand pictures with long notes; anything larger is another file."""
 
@@ -60,12 +63,21 @@ def find_sheet(folder: Path) -> Path | None:
     LotSheetError
         When there are two: which one holds cannot be guessed.
     """
-    found = [folder / name for name in SHEET_NAMES if (folder / name).exists()]
+    found = [path for path in tables(folder) if path.name.lower() in SHEET_NAMES]
     if len(found) > 1:
-        raise LotSheetError(
-            str(folder), "holds both lots.csv and lots.xlsx", "keep the one that holds"
-        )
+        both = " and ".join(path.name for path in found)
+        raise LotSheetError(str(folder), f"holds both {both}", "keep the one that holds")
     return found[0] if found else None
+
+
+def tables(folder: Path) -> list[Path]:
+    """List everything in a folder that may be a lot sheet by its ending, whatever its name."""
+    try:
+        return sorted(path for path in folder.iterdir() if path.suffix.lower() in TABLES)
+    except OSError as fault:
+        raise LotSheetError(
+            str(folder), f"cannot be read ({fault.strerror})", "check its permissions"
+        ) from None
 
 
 def read_sheet(path: Path) -> tuple[SheetRow, ...]:
@@ -92,7 +104,7 @@ def read_sheet(path: Path) -> tuple[SheetRow, ...]:
             raise LotSheetError(path.name, "is not a file", "save the lot sheet there")
         if path.stat().st_size > LARGEST_FILE:
             raise LotSheetError(path.name, "too large for a lot sheet", "split the lots")
-        lines = read_workbook(path) if path.suffix == ".xlsx" else _read_csv(path)
+        lines = read_workbook(path) if path.suffix.lower() == ".xlsx" else _read_csv(path)
         return tuple(_rows(path.name, lines))
     except OSError as fault:
         raise LotSheetError(
@@ -139,7 +151,10 @@ def _checked(row: SheetRow) -> SheetRow:
             raise LotSheetError(f"{row.where}, {column}", "is empty", "fill it in")
     for column, valid in CHOICES.items():
         cell = row.get(column)
-        if cell is not None and cell not in valid:
+        if cell is not None and cell.lower() in valid:
+            # spreadsheets begin a cell with a capital by themselves
+            row.cells[column] = cell.lower()
+        elif cell is not None:
             raise LotSheetError(
                 f"{row.where}, {column}",
                 f'expected {" or ".join(valid)}, got "{cell}"',
@@ -152,8 +167,12 @@ def _read_csv(path: Path) -> list[list[str]]:
     text = _decoded(path)
     if "\0" in text:
         raise LotSheetError(path.name, "is not text", "save it as CSV (UTF-8)")
+    stated = re.match(r"sep=([,;\t])\r?\n", text, re.IGNORECASE)
+    if stated is not None:
+        # some spreadsheets write this line before all others, and do not show it as a row
+        text = text[stated.end() :]
     first = next((line for line in text.splitlines() if line.strip()), "")
-    mark = max(",;\t", key=first.count)
+    mark = stated[1] if stated is not None else max(",;\t", key=first.count)
     try:
         # "\n" inside quotes belongs to a cell, so the text is not split into lines first
         reader = csv.reader(io.StringIO(text, newline=""), delimiter=mark, strict=True)
@@ -182,4 +201,5 @@ __all__ = [
     "SheetRow",
     "find_sheet",
     "read_sheet",
+    "tables",
 ]

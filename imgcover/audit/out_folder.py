@@ -16,6 +16,17 @@ LONGEST_STEM = 40
 """Letters of a lot's name in its page's name; the whole name stands in the page."""
 
 
+REPORTS = frozenset({"records.jsonl", "small"})
+"""Where both lie an audit has written before, also one that was stopped: they come first."""
+
+
+def holds_foreign_sheet(folder: Path) -> bool:
+    """Whether a folder holds a lot sheet that an audit's own table would overwrite."""
+    sheets = (folder / "lots.csv", folder / "lots.xlsx")
+    written = all((folder / name).exists() for name in REPORTS)
+    return any(sheet.exists() for sheet in sheets) and not written
+
+
 class OutFolder:
     """The folder of an audit's reports.
 
@@ -128,4 +139,4 @@ def _told(place: Path) -> Iterator[None]:
         ) from fault
 
 
-__all__ = ["OutFolder", "page_name"]
+__all__ = ["REPORTS", "OutFolder", "holds_foreign_sheet", "page_name"]

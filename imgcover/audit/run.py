@@ -32,6 +32,8 @@ class How(StrEnum):
     MEASURED = "measured"
     KNOWN = "known"
     """Nothing had changed since it was measured; the ledger had it."""
+    UNREAD = "unread"
+    """The picture could not be read; the record says why."""
     REFUSED = "refused"
     """A file that its options name cannot be used; the record says so."""
     LOST = "lost"
@@ -50,7 +52,7 @@ class Told:
     entry : Entry or None
         On the disk; None where it was known.
     said : str
-        How it was lost, for the developer, or why it was refused; else empty.
+        How it was lost, for the developer, or why it was refused or could not be read; else empty.
     is_bug : bool
         Whether the program itself failed on it.
     """
@@ -92,8 +94,12 @@ class Round:
     send: bool = False
 
     def subject(self, index: int) -> str:
-        """What the ledger calls a picture of the list."""
-        return f"picture:{self.folder}/{self.listing.pictures[index].name}"
+        """What the ledger calls a picture of the list.
+
+        Its lot belongs to it: scanners number each day from 1, into folders of the same name.
+        """
+        listed = self.listing.pictures[index]
+        return f"picture:{self.folder}/{listed.lot}/{listed.name}"
 
 
 def measure_all(round_: Round, crew: Crew, *, work: Callable[[Order], Answer]) -> Iterator[Told]:
@@ -141,10 +147,13 @@ def _kept(round_: Round, order: Order, outcome: Done[Answer] | Lost) -> tuple[En
         answer, how, said = lost_answer(order, outcome), How.LOST, outcome.said
     elif outcome.answer.refused:
         answer, how, said = outcome.answer, How.REFUSED, outcome.answer.refused
+    elif outcome.answer.unread:
+        answer, how, said = outcome.answer, How.UNREAD, outcome.answer.unread
     else:
         answer, how, said = outcome.answer, How.MEASURED, ""
-    # what was not measured is tried again next time, though nothing changed
-    key = round_.book.key(order, answer.picture_sha256) if how is How.MEASURED else ""
+    # what was lost or refused is tried again next time, though nothing changed
+    is_final = how in (How.MEASURED, How.UNREAD)
+    key = round_.book.key(order, answer.picture_sha256) if is_final else ""
     if answer.small is not None:
         round_.out.keep_small(key, answer.small)
     subject = round_.subject(outcome.index)

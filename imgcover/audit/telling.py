@@ -29,8 +29,6 @@ from imgcover.report.lots_csv import lots_csv_lines
 from imgcover.report.workbook import AuditWorkbook
 
 LOT_SCHEMA = "imgcover/lot/1"
-MOST_UNLISTED_NAMED = 12
-"""Names of pictures that the lot sheet leaves out, on the first page."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -272,12 +270,7 @@ def _page_order(round_: Round, lot: ToldLot, about: About) -> PageOrder:
 def _first_page(round_: Round, lots: list[ToldLot], about: About) -> str:
     lines = (LotLine(lot=lot.record(round_.ledger), units=lot.units, link=lot.page) for lot in lots)
     notes = [f"declaration {fault}" for fault in round_.book.faults]
-    unlisted = round_.listing.unlisted
-    if unlisted:
-        shown = ", ".join(unlisted[:MOST_UNLISTED_NAMED])
-        more = len(unlisted) - MOST_UNLISTED_NAMED
-        left = f" and {more} more" if more > 0 else ""
-        notes.append(f"in the folder but not in {round_.listing.sheet}: {shown}{left}")
+    notes += round_.listing.notes
     return index_page(
         lines,
         title=round_.folder,

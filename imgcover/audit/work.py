@@ -57,6 +57,8 @@ class Answer:
         Of the file's bytes, as they were measured.
     small : bytes or None
         A small JPEG of what was counted; None of a picture that could not be read.
+    unread : str
+        Empty, or why the picture itself could not be read.
     refused : str
         Empty, or what is wrong with a file that an option names.
     """
@@ -66,6 +68,7 @@ class Answer:
     evidence: str
     picture_sha256: str | None
     small: bytes | None = None
+    unread: str = ""
     refused: str = ""
 
 
@@ -127,6 +130,7 @@ def _refused(order: Order, finding: Finding) -> Answer:
 def _answer(order: Order, inspection: Inspection, *, small: bytes | None = None) -> Answer:
     record: dict[str, Any] = dict(inspection.record)
     made_at = record.pop(UNHASHED)["made_at"]
+    told = "" if inspection.answers.picture is not None else record["findings"][0]["message"]
     record["findings"] = [*findings_section(order.notes), *record["findings"]]
     return Answer(
         body=canonical(record),
@@ -134,6 +138,7 @@ def _answer(order: Order, inspection: Inspection, *, small: bytes | None = None)
         evidence=evidence_text(inspection.observed),
         picture_sha256=record["picture"]["sha256"],
         small=small,
+        unread=told,
     )
 
 

@@ -6,7 +6,9 @@ import datetime
 import math
 import warnings
 import zipfile
+from collections.abc import Callable
 from pathlib import Path
+from typing import Any
 
 from imgcover.errors import LotSheetError
 
@@ -41,25 +43,38 @@ def read_workbook(path: Path) -> list[list[str]]:
         with warnings.catch_warnings():
             # it warns of styles and drop-downs that it does not keep; nothing of them is read
             warnings.simplefilter("ignore")
-            book = load_workbook(path, read_only=True, data_only=True)
-            names = book.sheetnames
-            if len(names) > 1 and SHEET not in names:
-                raise LotSheetError(
-                    path.name, f"holds {len(names)} sheets", f'name the one that lists "{SHEET}"'
-                )
-            sheet = book[SHEET if SHEET in names else names[0]]
-            lines = [
-                [_written(cell, f"{path.name} row {n}") for cell in line]
-                for n, line in enumerate(sheet.iter_rows(values_only=True), start=1)
+            # once for what cells show and once for what they hold: a formula that no spreadsheet
+            # program has worked out yet shows nothing, and must not pass for an empty cell
+            shown, held = (_lines(load_workbook, path, data_only=each) for each in (True, False))
+            return [
+                [
+                    _written(cell, held_cell, f"{path.name} row {n}")
+                    for cell, held_cell in zip(line, held_line, strict=True)
+                ]
+                for n, (line, held_line) in enumerate(zip(shown, held, strict=True), start=1)
             ]
-            book.close()
-            return lines
     except LotSheetError:
         raise
     except Exception as fault:  # openpyxl meets damage with whatever its parsers raise
         raise LotSheetError(
             path.name, f"is not a readable workbook ({type(fault).__name__})", "save it again"
         ) from None
+
+
+def _lines(
+    load_workbook: Callable[..., Any], path: Path, *, data_only: bool
+) -> list[tuple[Any, ...]]:
+    book = load_workbook(path, read_only=True, data_only=data_only)
+    names = book.sheetnames
+    named = [name for name in names if name.lower() == SHEET]
+    if len(names) > 1 and not named:
+        raise LotSheetError(
+            path.name, f"holds {len(names)} sheets", f'name the one that lists "{SHEET}"'
+        )
+    sheet = book[(named or names)[0]]
+    lines = list(sheet.iter_rows())
+    book.close()
+    return lines
 
 
 def _check_size(path: Path) -> None:
@@ -74,8 +89,16 @@ def _check_size(path: Path) -> None:
         raise LotSheetError(path.name, "unpacks to more than a lot sheet can be", "save it again")
 
 
-def _written(cell: object, where: str) -> str:
-    """Write a cell as its reader sees it."""
+def _written(shown: Any, held: Any, where: str) -> str:
+    """Write a cell as its reader sees it: what it shows, and what it holds."""
+    cell = shown.value
+    # the result of a formula that is an empty text is marked as text
+    if cell is None and held.value is not None and shown.data_type != "str":
+        raise LotSheetError(
+            where,
+            "a formula has no value yet",
+            "open the sheet in a spreadsheet program and save it, or write the value itself",
+        )
     if cell is None:
         return ""
     if isinstance(cell, bool):

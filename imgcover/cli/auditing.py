@@ -16,7 +16,7 @@ from imgcover.audit.folder import Listing, list_folder
 from imgcover.audit.grounds import Grounds
 from imgcover.audit.machine import jobs_that_fit
 from imgcover.audit.orders import OrderBook
-from imgcover.audit.out_folder import OutFolder
+from imgcover.audit.out_folder import OutFolder, holds_foreign_sheet
 from imgcover.audit.outcome import Crew
 from imgcover.audit.run import How, Round, Told, measure_all
 from imgcover.audit.settling import Settling, looks, signature
@@ -70,10 +70,12 @@ class AuditAsked:
 def audited(asked: AuditAsked) -> ExitCode:
     """Audit the folder, once or for as long as it is watched, and say how it ended."""
     risk = read_options(asked.words).risk
-    out = OutFolder(asked.out or Path(f"{asked.folder.resolve().name or 'folder'}-audit"))
+    root = asked.out or Path(f"{asked.folder.resolve().name or 'folder'}-audit")
     if asked.articles is not None and not asked.articles.is_dir():
         raise OptionError("--articles", f"{asked.articles} is no folder", "name a folder")
-    listing = None if asked.watch else _listed(asked, out)
+    _refuse_goods(root, asked.folder)
+    listing = None if asked.watch else _listed(asked, root)
+    out = OutFolder(root)
     with ExitStack() as stack:
         ledger = stack.enter_context(Ledger.open(asked.ledger or out.ledger))
         if ledger.moved_from is not None:
@@ -164,11 +166,10 @@ class Audit:
         with opened(None, encoding=None) as write:
             for lot in lots:
                 write(headline(lot.record(round_.ledger), units=lot.units) + "\n")
-        unlisted = len(round_.listing.unlisted)
-        if unlisted:
-            tell(f"in the folder but not in {round_.listing.sheet}: {_pictures(unlisted)}")
+        for note in round_.listing.notes:
+            tell(note)
         counts = {How.MEASURED: "measured", How.KNOWN: "known from before"}
-        counts |= {How.LOST: "lost", How.REFUSED: "refused"}
+        counts |= {How.UNREAD: "could not be read", How.LOST: "lost", How.REFUSED: "refused"}
         said = ", ".join(f"{how[each]} {word}" for each, word in counts.items() if how[each])
         tell(f"{_pictures(len(round_.listing.pictures))}: {said}")
         tell(lead(Counter(lot.decision for lot in lots)))
@@ -184,7 +185,7 @@ def _watched(audit: Audit, asked: AuditAsked, out: OutFolder) -> ExitCode:
     tell(f"watching {asked.folder}; Ctrl-C ends it")
     for _ in looks(folders, left_out=own):
         try:
-            listing, waiting = settling.split(_listed(asked, out))
+            listing, waiting = settling.split(_listed(asked, out.root))
         except LotSheetError as fault:
             # an empty folder, or a sheet that is being edited: it may be right a moment later
             if str(fault) != complaint:
@@ -202,8 +203,18 @@ def _watched(audit: Audit, asked: AuditAsked, out: OutFolder) -> ExitCode:
     return ExitCode.CONFORMS
 
 
-def _listed(asked: AuditAsked, out: OutFolder) -> Listing:
-    return list_folder(asked.folder, articles=asked.articles, left_out=[out.root])
+def _listed(asked: AuditAsked, root: Path) -> Listing:
+    return list_folder(asked.folder, articles=asked.articles, left_out=[root])
+
+
+def _refuse_goods(root: Path, folder: Path) -> None:
+    """Keep reports out of a folder of goods: their lots.csv would take the place of its sheet."""
+    if root.resolve() == folder.resolve():
+        raise OptionError("--out", f"{root} is the audited folder itself", "name another folder")
+    if holds_foreign_sheet(root):
+        raise OptionError(
+            "--out", f"{root} holds a lot sheet that no audit wrote", "name another folder"
+        )
 
 
 def _cluster(asked: AuditAsked, stack: ExitStack) -> Crew:

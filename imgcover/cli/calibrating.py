@@ -10,7 +10,7 @@ from datetime import UTC, date, datetime, timedelta
 from pathlib import Path
 
 from imgcover.cli.exits import ExitCode
-from imgcover.cli.output import opened, tell
+from imgcover.cli.output import keep_apart, opened, tell
 from imgcover.errors import OutputError, PictureError, ScaleError
 from imgcover.picture.reader import read_picture
 from imgcover.scale.bars import parse_bars
@@ -76,6 +76,7 @@ def read_scans(
             "printers do not keep their scale: without measured bars the sheet says nothing",
             "measure bar A and bar B with a steel rule and give --bars A,B in mm",
         )
+    keep_apart("--output", output, scans)
     measured = parse_bars(bars, u=bars_u, rule_class=RuleClass(rule_class))
     taken = _take(scans, tone=tone)
     nominal = _nominal(taken.dpi, dpi)

@@ -11,7 +11,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Any, Literal
 
 from imgcover.cli.exits import ExitCode, gravest
-from imgcover.cli.output import opened, tell
+from imgcover.cli.output import keep_apart, opened, tell
 from imgcover.errors import OptionError
 from imgcover.inspection import Inspection, inspect
 from imgcover.ledger.canonical import Record, canonical, digest
@@ -229,10 +229,14 @@ def _check(asked: Asked) -> None:
             f"{len(asked.pictures)} pictures were given",
             "approve one swatch: name its picture alone",
         )
-    inputs = {Path(each).resolve() for each in (*asked.pictures, asked.article or STDIN)}
-    for option, path in (("--output", asked.output), ("--as-reference", asked.as_reference)):
-        if path is not None and path.resolve() in inputs:
-            raise OptionError(option, f"{path} is also read from", "write to another file")
+    named = (
+        *asked.pictures,
+        asked.article,
+        *(asked.words.get(each) for each in ("blank", "dark", "device")),
+    )
+    inputs = [Path(each) for each in named if each is not None]
+    keep_apart("--output", asked.output, inputs)
+    keep_apart("--as-reference", asked.as_reference, inputs)
 
 
 def _requests(asked: Asked, declaration: Declaration | None) -> Iterator[Request]:
@@ -268,8 +272,10 @@ def _entry(record: Record) -> Entry:
     body = {key: value for key, value in record.items() if key != "envelope"}
     made_at = record.get("envelope", {}).get("made_at", "")
     if "picture" in record:
-        lot = record["sample"]["lot"] or ""
-        subject = f"picture:{lot}/{record['picture']['name']}"
+        lot, picture = record["sample"]["lot"] or "", record["picture"]
+        # scanners number each folder from 1: another picture of the same name is another swatch
+        told = "" if picture["sha256"] is None else f" {picture['sha256'][:12]}"
+        subject = f"picture:{lot}/{picture['name']}{told}"
     else:
         subject = f"lot:{record['lot']}/{record['article'] or ''}"
     return Entry(record["schema"], subject, digest(record), canonical(body), made_at)

@@ -7,13 +7,15 @@ import io
 import os
 import shutil
 import sys
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterable, Iterator
 from pathlib import Path
 
-from imgcover.errors import OutputError
+from imgcover.errors import OptionError, OutputError
 from imgcover.report.plain import plain
 
 Write = Callable[[str], None]
+SQLITE = b"SQLite format 3\0"
+"""How every SQLite file begins (sqlite.org/fileformat2.html, section 1.3)."""
 
 
 def tell(line: str) -> None:
@@ -52,6 +54,7 @@ def opened(output: Path | None, *, encoding: str | None = "utf-8") -> Iterator[W
         yield _stdout(encoding)
         return
     place = output.resolve()
+    _refuse_ledger(place, output)
     # a device or pipe named as output is written to; renaming over it would destroy it
     beside = place.exists() and not place.is_file()
     path = place if beside else place.with_name(f".{place.name}.{os.getpid()}.part")
@@ -104,6 +107,27 @@ def silence() -> None:
         os.close(nowhere)
 
 
+def keep_apart(option: str, output: Path | None, inputs: Iterable[Path]) -> None:
+    """Refuse to write over a file that is read from, before anything is done.
+
+    Raises
+    ------
+    OptionError
+        When `output` is one of `inputs`.
+    """
+    if output is not None and output.resolve() in {path.resolve() for path in inputs}:
+        raise OptionError(option, f"{output} is also read from", "write to another file")
+
+
+def _refuse_ledger(place: Path, output: Path) -> None:
+    """Nothing is ever written over a ledger: it is the proof, and there is no other copy."""
+    with contextlib.suppress(OSError):
+        if place.is_file():
+            with place.open("rb") as file:
+                if file.read(len(SQLITE)) == SQLITE:
+                    raise OutputError(str(output), "it is a ledger", "write to another file")
+
+
 def _stdout(encoding: str | None) -> Write:
     if sys.stdout is None:
         raise OutputError("stdout", "it is closed", "redirect it, or write with -o FILE")
@@ -138,4 +162,4 @@ def _unwritten(name: str, fault: OSError) -> OutputError:
     return OutputError(name, f"cannot be written ({reason})", "choose another place, or make room")
 
 
-__all__ = ["Write", "finish", "opened", "silence", "tell"]
+__all__ = ["Write", "finish", "keep_apart", "opened", "silence", "tell"]

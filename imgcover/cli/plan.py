@@ -8,7 +8,7 @@ from typing import Annotated, Literal
 import typer
 
 from imgcover.cli.exits import ExitCode
-from imgcover.cli.output import opened
+from imgcover.cli.output import keep_apart, opened
 
 EXAMPLES = """\b
 Examples:
@@ -85,6 +85,7 @@ def plan(
         "risk": risk,
     }
     words = {name: word for name, word in said.items() if word is not None}
+    keep_apart("--output", output, [article])
     declaration = read_declaration(article)
     detail_mm = 1 / parse_pitch(detail, option="--detail").px_per_mm
     record = plan_record(

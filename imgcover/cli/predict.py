@@ -8,7 +8,7 @@ from typing import Annotated, Literal
 import typer
 
 from imgcover.cli.exits import ExitCode
-from imgcover.cli.output import opened
+from imgcover.cli.output import keep_apart, opened
 
 EXAMPLES = """\b
 Examples:
@@ -44,6 +44,7 @@ def predict(
         prediction_text,
     )
 
+    keep_apart("--output", output, articles)
     declarations = [read_declaration(path) for path in articles]
     predictions = [predicted(each) for each in declarations]
     comparison = compare(predictions) if len(predictions) > 1 else None

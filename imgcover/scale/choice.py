@@ -6,7 +6,9 @@ from collections.abc import Iterable
 from dataclasses import dataclass, replace
 
 from imgcover.findings import Finding, Flag, found
+from imgcover.quantity import Measured
 from imgcover.scale.metadata import metadata_fault, scale_from_metadata
+from imgcover.scale.pitch import INCH_MM
 from imgcover.scale.scale import ComparedScale, Scale, ScaleSource
 
 PRECEDENCE = tuple(ScaleSource)
@@ -34,6 +36,7 @@ def choose_scale(
     *,
     dpi: tuple[float, float] | None = None,
     use_metadata: bool = False,
+    nominal: bool = False,
 ) -> ScaleChoice:
     """Choose the scale by precedence: certificate, rule, sheet, stated pitch, metadata.
 
@@ -45,13 +48,16 @@ def choose_scale(
         What the file claims, along the shown axes (`Picture.dpi`).
     use_metadata : bool
         Whether the user lets that claim stand as a scale (`--metadata`).
+    nominal : bool
+        Whether the pitch was stated in dots an inch, which is a device's setting.
 
     Returns
     -------
     ScaleChoice
         Two given ways that disagree by more than twice their uncertainty leave
         `scales-disagree`, and the decision undecided. A claim of the file that nobody asked for
-        is only held against the scale used: it can warn, not undecide.
+        is only held against the scale used: it can warn, not undecide. But where the scale used is
+        itself no more than a device's setting, told from memory, the file's claim is as good.
     """
     given = sorted(
         (each for each in candidates if each is not None),
@@ -67,7 +73,10 @@ def choose_scale(
     findings += [_disagreement(used, each) for each in others if not used.agrees_with(each)]
     if claimed is not None and not use_metadata:
         others.append(claimed)
-        findings += _held_against(used, claimed)
+        if nominal and used.source == ScaleSource.STATED and not used.agrees_with(claimed):
+            findings.append(_other_setting(used, claimed))
+        else:
+            findings += _held_against(used, claimed)
     if used.source == ScaleSource.METADATA:
         findings.append(found(Flag.SCALE_FROM_METADATA))
     if use_metadata and claimed is None:
@@ -84,6 +93,20 @@ def _disagreement(used: Scale, other: Scale) -> Finding:
         "more than twice their uncertainty apart"
     )
     return found(Flag.SCALES_DISAGREE, message)
+
+
+def _other_setting(used: Scale, claimed: Scale) -> Finding:
+    stated, written = (f"{_dpi(each.x)} × {_dpi(each.y)} dpi" for each in (used, claimed))
+    message = f"the stated pitch is {stated}, but the file says it was taken at {written}"
+    return found(
+        Flag.SCALES_DISAGREE,
+        message,
+        "find out which is wrong; a pitch that was measured is stated in px/mm or um",
+    )
+
+
+def _dpi(pitch: Measured) -> str:
+    return f"{pitch.value * INCH_MM:.4g}"
 
 
 def _held_against(used: Scale, claimed: Scale) -> list[Finding]:

@@ -42,6 +42,11 @@ class StatedPitch:
     u_relative: float
     text: str
 
+    @property
+    def is_nominal(self) -> bool:
+        """Whether it is a device's setting, in dots an inch, and not a measured pitch."""
+        return self.u_relative > 0
+
 
 def parse_pitch(text: str, *, option: str = "--pitch") -> StatedPitch:
     """Read a pitch.

@@ -146,16 +146,9 @@ class NoPages:
             yield Done(index, "")
 
 
-def audit_inline(
-    folder: Path,
-    out: Path,
-    *,
-    fresh: bool = False,
-    crew: Crew | None = None,
-    send: bool = False,
-) -> ExitCode:
-    """Run an audit to its end in this process."""
-    asked = AuditAsked(
+def asked(folder: Path, out: Path, *, fresh: bool = False, send: bool = False) -> AuditAsked:
+    """What the command line asks for when it names nothing but folders."""
+    return AuditAsked(
         folder=folder,
         articles=None,
         out=out,
@@ -169,9 +162,27 @@ def audit_inline(
         watch=False,
         fresh=fresh,
     )
+
+
+def audit_inline(
+    folder: Path,
+    out: Path,
+    *,
+    fresh: bool = False,
+    crew: Crew | None = None,
+    send: bool = False,
+) -> ExitCode:
+    """Run an audit to its end in this process."""
     place = OutFolder(out)
     with Ledger.open(place.ledger) as ledger:
-        audit_ = Audit(asked, place, ledger, crew or Inline(), NoPages(), None)
+        audit_ = Audit(
+            asked(folder, out, fresh=fresh, send=send),
+            place,
+            ledger,
+            crew or Inline(),
+            NoPages(),
+            None,
+        )
         return audit_.round(list_folder(folder, articles=None, left_out=[out]))
 
 

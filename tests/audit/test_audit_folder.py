@@ -77,6 +77,15 @@ def test_a_sheet_says_what_is_measured_and_what_was_left_lying(tmp_path):
     assert picture.options == {"pitch": "600dpi", "blank": "scans/blank.png"}
     assert listing.unlisted == ("scans/2.png",)
     assert listing.sheet == "lots.csv"
+    assert listing.notes == ["in the folder but not in lots.csv: scans/2.png"]
+
+
+def test_a_table_that_is_no_lot_sheet_by_its_name_is_not_passed_over_in_silence(tmp_path):
+    lay(tmp_path, "scans/1.png", "Lot list.xlsx", "scans/inner.csv")
+    listing = list_folder(tmp_path, articles=None)
+    assert [picture.lot for picture in listing.pictures] == ["scans"]
+    (note,) = listing.notes
+    assert "sub-folders were taken for lots" in note and note.endswith(": Lot list.xlsx")
 
 
 def sheet(tmp_path, *rows, head="picture,lot,article"):
@@ -144,7 +153,7 @@ def test_pipes_folders_and_the_missing_are_refused_at_once(tmp_path):
     os.mkfifo(tmp_path / "pipe")
     (tmp_path / "folder").mkdir()
     begun = time.monotonic()
-    for name, said in (("pipe", "a pipe"), ("folder", "a folder"), ("none", "cannot be opened")):
+    for name, said in (("pipe", "a pipe"), ("folder", "a folder"), ("none", "no such file")):
         with pytest.raises(OffGroundsError, match=said):
             read_file(tmp_path / name)
     assert time.monotonic() - begun < 1

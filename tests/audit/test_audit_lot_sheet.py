@@ -125,3 +125,44 @@ def test_two_sheets_are_refused(tmp_path):
 
 def test_the_columns_are_those_of_the_design():
     assert len(COLUMNS) == 20 and len(set(COLUMNS)) == 20
+
+
+@pytest.mark.parametrize("stated", ["sep=;\r\n", "SEP=;\n"])
+def test_a_line_that_states_the_mark_is_no_row(tmp_path, stated):
+    (row,) = read_sheet(sheet(tmp_path, f"{stated}picture;lot;note\na;1;b,c,d\n"))
+    assert row.cells == {"picture": "a", "lot": "1", "note": "b,c,d"}
+    assert row.where == "lots.csv row 2"
+
+
+def test_a_capital_that_a_spreadsheet_put_there_changes_no_word(tmp_path):
+    (row,) = read_sheet(sheet(tmp_path, "picture,lot,light,Warp\na,1,Backlit,HORIZONTAL\n"))
+    assert row.cells["light"] == "backlit" and row.cells["warp"] == "horizontal"
+
+
+def test_a_formula_that_was_never_worked_out_is_no_empty_cell(tmp_path):
+    path = book(tmp_path, ("Lots", [["picture", "lot", "place"], ["a.png", 7, "=1+1"]]))
+    with pytest.raises(LotSheetError, match="row 2: a formula has no value yet"):
+        read_sheet(path)
+
+
+def test_a_formula_whose_value_is_an_empty_text_is_an_empty_cell(tmp_path):
+    """Truth is the format: ECMA-376 part 1, 18.18.11, cell type "str" is a formula's text."""
+    path = book(tmp_path, ("Lots", [["picture", "lot", "place"], ["a.png", 7, "=1+1"]]))
+    with zipfile.ZipFile(path) as archive:
+        parts = {name: archive.read(name) for name in archive.namelist()}
+    name = "xl/worksheets/sheet1.xml"
+    said = parts[name].replace(b'<c r="C2"', b'<c r="C2" t="str"')
+    assert said != parts[name]
+    with zipfile.ZipFile(path, "w") as archive:
+        for each, content in {**parts, name: said}.items():
+            archive.writestr(each, content)
+    (row,) = read_sheet(path)
+    assert row.get("place") is None
+
+
+def test_the_sheet_is_found_however_its_name_is_written(tmp_path):
+    (tmp_path / "Lots.CSV").write_text("picture,lot\na,1\n")
+    assert find_sheet(tmp_path) == tmp_path / "Lots.CSV"
+    (tmp_path / "lots.xlsx").write_bytes(b"")
+    with pytest.raises(LotSheetError, match=r"holds both Lots.CSV and lots.xlsx"):
+        find_sheet(tmp_path)

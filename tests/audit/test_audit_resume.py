@@ -13,8 +13,9 @@ from audit_rig import audit_inline, certified, lay, records, timeless
 
 from imgcover.audit.outcome import Loss, Lost
 from imgcover.audit.work import Answer
+from imgcover.cli.auditing import audited
 from imgcover.cli.exits import ExitCode
-from imgcover.errors import CertificateError, LotSheetError
+from imgcover.errors import CertificateError, LotSheetError, OptionError
 
 
 def rows(out):
@@ -38,7 +39,7 @@ def test_a_second_run_measures_only_what_changed(tmp_path, capsys):
     assert "3 pictures: 1 measured, 2 known from before" in capsys.readouterr().err
     assert records(out)[2]["threads"]["ends"]["value"] == pytest.approx(12.5, rel=0.01)
     assert [(subject, supersedes) for _, subject, supersedes in rows(out)[5:]] == [
-        ("picture:goods/B-2.png", 3),
+        ("picture:goods/B/B-2.png", 3),
         ("lot:goods/B/G-1.toml", 5),
     ]
     # put right again: the first measurement is still known, and holds once more
@@ -46,6 +47,18 @@ def test_a_second_run_measures_only_what_changed(tmp_path, capsys):
     audit_inline(goods, out)
     assert "3 known from before" in capsys.readouterr().err
     assert (out / "records.jsonl").read_bytes() == before
+
+
+def test_pictures_that_cannot_be_read_are_named_and_not_counted_as_measured(tmp_path, capsys):
+    goods, out = tmp_path / "goods", tmp_path / "out"
+    lay(goods, {"A": 3})
+    (goods / "A-2.png").write_bytes((goods / "A-2.png").read_bytes()[:400])
+    (goods / "A-3.png").unlink()
+    audit_inline(goods, out)
+    said = capsys.readouterr().err
+    assert "3 pictures: 1 measured, 2 could not be read" in said
+    assert "A-2.png: the PNG is truncated" in said
+    assert "A-3.png: there is no such file" in said
 
 
 @pytest.mark.parametrize("what", ["picture", "declaration", "sample"])
@@ -205,3 +218,24 @@ def test_a_certificate_that_is_none_is_refused_before_anything_is_measured(tmp_p
     (goods / "bench.toml").write_text("[device]\n")
     with pytest.raises(CertificateError, match=r"bench\.toml"):
         audit_inline(goods, tmp_path / "out")
+
+
+def test_reports_never_take_the_place_of_a_lot_sheet(tmp_path):
+    """Truth is the folder as it was laid: an audit's own table is called lots.csv, too."""
+    goods, other = tmp_path / "goods", tmp_path / "other"
+    lay(goods, {"A": 1})
+    lay(other, {"B": 1})
+    before = (goods / "lots.csv").read_bytes()
+    for folder in (goods, other):
+        with pytest.raises(OptionError, match="--out"):
+            audited(audit_rig.asked(folder, goods))
+    assert (goods / "lots.csv").read_bytes() == before
+    assert not (goods / "ledger.sqlite").exists()
+
+
+def test_reports_inside_the_goods_are_no_goods(tmp_path, capsys):
+    goods = tmp_path / "goods"
+    lay(goods, {"A": 1})
+    audit_inline(goods, goods / "reports")
+    audit_inline(goods, tmp_path / "out")
+    assert "in the folder" not in capsys.readouterr().err

@@ -14,6 +14,7 @@ from typing import Any
 import cv2
 import numpy as np
 import pytest
+from PIL import Image
 
 from imgcover.cli.exits import ExitCode
 from imgcover.cloth.declaration import read_declaration
@@ -40,6 +41,8 @@ def told(out: str) -> dict[str, Any]:
         (("--tone", "gamma:99"), "--tone"),
         (("--gsm", "a lot"), "--gsm"),
         (("--gsm", "nan"), "--gsm"),
+        (("--gsm", "118,5"), "comma"),
+        (("--gsm", "0.118"), "above 1"),
         (("--gsm-u", "1"), "--gsm-u"),
         (("--region", "1,2,3"), "--region"),
         (("--region", "0,0,0,5"), "--region"),
@@ -173,8 +176,26 @@ def test_records_are_remembered_once_and_sealed(ended: Call, tmp_path: Path) -> 
         ended("measure", "good-1.png", "torn.png", "--pitch", "1000dpi", "--ledger", str(ledger))
     with Ledger.read(ledger) as kept:
         rows = list(kept.rows())
-        assert [row.entry.subject for row in rows] == ["picture:/good-1.png", "picture:/torn.png"]
+        subjects = [row.entry.subject.rpartition(" ") for row in rows]
+        assert [name for name, _, _ in subjects] == ["picture:/good-1.png", "picture:/torn.png"]
         assert verify(rows, head=None).holds
+
+
+def test_another_swatch_under_the_same_name_supersedes_nothing(
+    ended: Call, goods: Path, tmp_path: Path
+) -> None:
+    """Truth is the contract: a correction supersedes, another swatch's proof still holds."""
+    ledger = tmp_path / "goods.ledger"
+    with Image.open(goods / "good-1.png") as first:
+        turned = first.rotate(180)
+    (tmp_path / "december").mkdir()
+    other = tmp_path / "december" / "good-1.png"
+    turned.save(other)
+    for picture, pitch in (("good-1.png", "900dpi"), (str(other), "1000dpi")):
+        ended("measure", picture, "--pitch", pitch, "--ledger", str(ledger))
+    ended("measure", "good-1.png", "--pitch", "1000dpi", "--ledger", str(ledger))
+    with Ledger.read(ledger) as kept:
+        assert [row.supersedes for row in kept.rows()] == [None, None, 1]
 
 
 def test_an_overlay_is_drawn_beside_every_readable_picture(ended: Call, tmp_path: Path) -> None:

@@ -110,3 +110,21 @@ def test_what_is_no_ledger_ends_with_74_and_what_is_no_head_with_2(ledger, tmp_p
         assert outcome(["ledger", "list", str(path)]) == ExitCode.OUTPUT
     assert outcome(["ledger", "verify", str(ledger), "--head", "3:xyz"]) == ExitCode.USAGE
     assert "foot of a report" in capsys.readouterr().err
+
+
+@pytest.mark.parametrize("command", [["ledger", "export"], ["predict"]])
+def test_a_ledger_and_what_is_read_from_are_never_written_over(command, ledger, tmp_path, capsys):
+    """Truth is the contract: a proof is only ever appended to."""
+    article = tmp_path / "article.toml"
+    article.write_text(
+        '[article]\ncode = "T"\n[warp]\nthreads = "68 /in"\ncount = "32 Ne"\n'
+        '[weft]\nthreads = "64 /in"\ncount = "32 Ne"\n'
+    )
+    read = article if command == ["predict"] else ledger
+    before = ledger.read_bytes(), article.read_bytes()
+    assert outcome([*command, str(read), "-o", str(ledger)]) == ExitCode.OUTPUT
+    assert "it is a ledger" in capsys.readouterr().err
+    if read == article:
+        assert outcome([*command, str(read), "-o", str(article)]) == ExitCode.USAGE
+        assert "also read from" in capsys.readouterr().err
+    assert before == (ledger.read_bytes(), article.read_bytes())

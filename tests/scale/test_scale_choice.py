@@ -133,6 +133,29 @@ def test_metadata_that_nobody_asked_for_is_compared_and_can_only_warn() -> None:
     assert not has(other.findings, Flag.SCALES_DISAGREE)
 
 
+@pytest.mark.parametrize(
+    ("pitch", "flag"),
+    [
+        ("600dpi", Flag.SCALES_DISAGREE),
+        ("23.62px/mm", Flag.METADATA_DISAGREES),
+        ("42.3um", Flag.METADATA_DISAGREES),
+    ],
+)
+def test_a_setting_told_from_memory_does_not_outweigh_the_file_s(pitch: str, flag: Flag) -> None:
+    """Truth is the contract: of two settings one is wrong, and nobody can say which; a pitch that
+    was measured stands against what the file claims."""
+    stated = parse_pitch(pitch)
+    for dpi in ((800, 800), (600, 800)):
+        choice = choose_scale([scale_from(stated)], dpi=dpi, nominal=stated.is_nominal)
+        both = {each.code for each in choice.findings} & {
+            Flag.SCALES_DISAGREE.code,
+            Flag.METADATA_DISAGREES.code,
+        }
+        assert both == {flag.code}
+    agreeing = choose_scale([scale_from(stated)], dpi=(599.9988, 600), nominal=stated.is_nominal)
+    assert not has(agreeing.findings, flag)
+
+
 def test_metadata_that_was_asked_for_can_undecide() -> None:
     """Truth is the contract: a given way that disagrees is a finding and leaves it open."""
     choice = choose_scale([_scale("rule", 600 / INCH)], dpi=(300, 300), use_metadata=True)
