@@ -153,13 +153,19 @@ class Audit:
     def _measured(self, round_: Round) -> Counter[How]:
         how: Counter[How] = Counter()
         self._bugs = 0
-        with Progress(len(round_.listing.pictures)) as progress:
-            for told in measure_all(round_, self._crew, work=measure_one):
-                how[told.how] += 1
-                self._bugs += told.is_bug
-                progress.step(measured=told.how is not How.KNOWN)
-                if told.said:
-                    progress.say(f"{_name(round_, told)}: {_last_line(told.said)}")
+        every = len(round_.listing.pictures)
+        with Progress(every) as progress:
+            try:
+                for told in measure_all(round_, self._crew, work=measure_one):
+                    how[told.how] += 1
+                    self._bugs += told.is_bug
+                    progress.step(measured=told.how is not How.KNOWN)
+                    if told.said:
+                        progress.say(f"{_name(round_, told)}: {_last_line(told.said)}")
+            except KeyboardInterrupt:
+                kept = f"{sum(how.values())} of {_pictures(every)} are in the ledger"
+                progress.say(f"{kept}; the same command goes on from there")
+                raise
         return how
 
     def _tell(self, round_: Round, lots: list[ToldLot], how: Counter[How]) -> None:

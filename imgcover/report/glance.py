@@ -33,6 +33,8 @@ class Glance:
         Of its place in the lot; None where it was not counted as one.
     piece, place : str or None
         Where in the lot.
+    remarks : str
+        Who took it, how it was conditioned and what was noted, as the lot sheet says; may be empty.
     light : str or None
         backlit, reflected, or not stated.
     decision : str or None
@@ -53,6 +55,7 @@ class Glance:
     number: int | None
     piece: str | None
     place: str | None
+    remarks: str
     light: str | None
     decision: str | None
     ends: Number | None
@@ -84,6 +87,7 @@ def glance(
         number=number,
         piece=record["sample"]["piece"],
         place=record["sample"]["place"],
+        remarks=_remarks(record["sample"]),
         light=record["light"],
         decision=None if verdict is None else verdict["decision"],
         ends=threads.get("ends"),
@@ -97,6 +101,11 @@ def glance(
         row=row,
         thumbnail=thumbnail,
     )
+
+
+def _remarks(sample: Mapping[str, Any]) -> str:
+    conditioned = f"conditioned: {sample['conditioned']}" if sample["conditioned"] else None
+    return "; ".join(filter(None, (sample["operator"], conditioned, sample["note"])))
 
 
 __all__ = ["Glance", "Note", "Number", "glance"]

@@ -14,8 +14,8 @@ Short = Callable[[Mapping[str, Any], Units], str]
 NAMES = {"ends": "ends", "picks": "picks", "cover": "cover", "mass": "mass"}
 
 
-def headline(record: Mapping[str, Any], *, units: Units) -> str:
-    """Say the decision and what it rests on, within one terminal line.
+def headline(record: Mapping[str, Any], *, units: Units, most: int = WIDTH) -> str:
+    """Say the decision and what it rests on, within one line.
 
     Parameters
     ----------
@@ -23,20 +23,32 @@ def headline(record: Mapping[str, Any], *, units: Units) -> str:
         A picture's record, or a lot's.
     units : {"inch", "cm"}
         Of the densities.
+    most : int
+        Columns of the line; a terminal's where nothing is said.
     """
     name = shortened(plain(_name(record)), LONGEST_NAME)
     for short in (_short, _shorter):
         decision, why = _decided(record, units, short)
-        line = f"{name} {decision}: {why}"
-        if columns(line) <= WIDTH:
-            return line
-    return _cut(line)
+        for each in (*_common_reason(record), why):
+            line = f"{name} {decision}: {each}"
+            if columns(line) <= most:
+                return line
+    return _cut(line, most)
 
 
-def _cut(line: str) -> str:
+def _common_reason(record: Mapping[str, Any]) -> list[str]:
+    """What alone keeps everything open that is open, whatever the figures say."""
+    verdict = record["verdict"] if "picture" in record else record
+    if verdict is None or verdict.get("decision") != "undecided":
+        return []
+    held = {tuple(line["holds"]) for line in verdict["lines"] if line["decision"] == "undecided"}
+    return ["; ".join(each) for each in held if each and len(held) == 1]
+
+
+def _cut(line: str, most: int) -> str:
     """Cut a line where it would leave the terminal."""
     kept = line
-    while columns(kept) > WIDTH - 1:
+    while columns(kept) > most - 1:
         kept = kept[:-1]
     return kept.rstrip(" ,;") + "…"
 

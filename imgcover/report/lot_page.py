@@ -18,6 +18,8 @@ from imgcover.report.text import reason, weighed
 MOST_THUMBNAILS = 40
 """Small pictures on one page; the first that need looking at, then the first of the others."""
 SUSPECTS_SHOWN = 5
+LONGEST_LEAD = 240
+"""Letters of the first sentence: three lines of the page, room for every figure of a lot."""
 QUANTITIES = {"ends": "Ends", "picks": "Picks", "cover": "Cover", "mass": "Mass"}
 
 
@@ -72,7 +74,7 @@ def lot_page(lot: Mapping[str, Any], glances: Sequence[Glance], *, about: About)
         title=f"Lot {plain(str(lot['lot']))}",
         article=plain(str(lot["article"] or "")),
         description=plain(about.description),
-        headline=headline(lot, units=about.units),
+        headline=headline(lot, units=about.units, most=LONGEST_LEAD),
         decision=said_decision(lot["decision"]),
         tone=decision_class(lot["decision"]),
         lines=[_line(line, lot, about.units) for line in lot["lines"]],
@@ -185,6 +187,7 @@ def _row(each: Glance, units: Units) -> dict[str, Any]:
         "number": "–" if each.number is None else str(each.number),
         "name": plain(each.name),
         "place": plain(", ".join(filter(None, (each.piece, each.place)))),
+        "remarks": plain(each.remarks),
         "light": each.light or "not stated",
         "ends": figure(each.ends, units),
         "picks": figure(each.picks, units),

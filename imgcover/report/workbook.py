@@ -50,6 +50,8 @@ def _lot_columns() -> dict[str, Column]:
 
 
 LOTS = _lot_columns()
+SAMPLE = ("lot", "piece", "place", "operator", "conditioned", "note")
+"""What the lot sheet says of a picture's swatch, beside its article."""
 PICTURES = {
     "picture": Column("picture", 32),
     "lot": Column("lot", 20),
@@ -66,6 +68,9 @@ PICTURES = {
     "scale": Column("scale from", 24),
     "row": Column("ledger row", 10, "0"),
     "findings": Column("findings", 40),
+    "operator": Column("operator", 12),
+    "conditioned": Column("conditioned", 12),
+    "note": Column("note", 30),
     "sha256": Column("SHA-256 of the file", 66),
 }
 FINDINGS = {
@@ -154,7 +159,7 @@ class AuditWorkbook:
             "scale": None if scale is None else scale["source"],
             "row": row,
             "findings": " ".join(dict.fromkeys(each["code"] for each in record["findings"])),
-            **{key: sample[key] for key in ("lot", "piece", "place")},
+            **{key: sample[key] for key in SAMPLE},
         }
         for name, measured in (
             ("ends", threads.get("ends")),

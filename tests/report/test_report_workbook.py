@@ -13,7 +13,8 @@ from imgcover.report.workbook import AuditWorkbook
 FORMULAS = ["=1+1", "+1", "-1", "@SUM(1)", "\t=1", '=HYPERLINK("http://x")', "＝1+1"]
 RECORD = {
     "picture": {"name": "=cmd|' /C calc'!A0", "sha256": "ab" * 32},
-    "sample": {"lot": "@SUM(1)", "piece": "-1", "place": "+1"},
+    "sample": {"lot": "@SUM(1)", "piece": "-1", "place": "+1"}
+    | {"operator": "=2", "conditioned": None, "note": "feels loose"},
     "light": "backlit",
     "threads": {
         "ends": {"value": 26.77, "u": 0.06, "unit": "1/cm"},
@@ -63,6 +64,8 @@ def test_text_is_never_a_formula(book):
             assert all(cell.data_type in ("s", "n") and cell.hyperlink is None for cell in row)
     assert column(book["Lots"], "lot")[1].value == "=1+1"
     assert column(book["Pictures"], "picture")[0].value == "=cmd|' /C calc'!A0"
+    assert column(book["Pictures"], "operator")[0].value == "=2"
+    assert column(book["Pictures"], "note")[0].value == "feels loose"
     assert column(book["Findings"], "remedy")[-1].value == "\\x1b[2J"
 
 
