@@ -79,17 +79,23 @@ def _nothing_measured(record: Mapping[str, Any]) -> bool:
 
 def _measured(record: Mapping[str, Any], units: Units) -> tuple[str, str]:
     """What was seen, where nothing was declared to hold it against."""
-    threads, cover = record.get("threads"), record.get("cover")
-    parts = []
-    for key in ("ends", "picks"):
-        value = None if threads is None else threads[key]
-        if value is not None:
-            parts.append(f"{_density(value, units)} {key}")
+    seen = seen_in(record)
+    parts = [f"{_density(seen[key], units)} {key}" for key in ("ends", "picks") if seen.get(key)]
     said = " × ".join(parts) + (f" {shown_as('1/cm', units).unit}" if parts else "")
-    if cover is not None and cover["optical"] is not None:
-        percent = near(100 * cover["optical"]["value"], 100 * cover["optical"]["u"])
+    cover = seen.get("cover")
+    if cover is not None:
+        percent = near(100 * cover["value"], 100 * cover["u"])
         said = f"{said}, cover {percent} %" if said else f"cover {percent} %"
     return ("measured", said) if said else ("not measured", _refusal(record))
+
+
+def seen_in(record: Mapping[str, Any]) -> Mapping[str, Any]:
+    """The figures of a picture, or the means of a lot, by quantity."""
+    if "picture" not in record:
+        means: Mapping[str, Any] = record["means"]
+        return means
+    threads, cover = record["threads"] or {}, record["cover"] or {}
+    return {**{key: threads.get(key) for key in ("ends", "picks")}, "cover": cover.get("optical")}
 
 
 def _density(value: Mapping[str, Any], units: Units) -> str:
@@ -137,4 +143,4 @@ def _listed(names: Sequence[str]) -> str:
     return f"{', '.join(names[:-1])} and {names[-1]}"
 
 
-__all__ = ["headline"]
+__all__ = ["headline", "seen_in"]

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from typing import Any
 
-from imgcover.report.headline import headline
+from imgcover.report.headline import headline, seen_in
 from imgcover.report.layout import Units, brief, facts, figure, near, shown_as, table, wrapped
 from imgcover.report.plain import plain
 
@@ -40,7 +40,7 @@ def lot_text(record: Mapping[str, Any], *, units: Units) -> str:
     """Tell a lot's record, schema imgcover/lot/1, as `record_text` does a picture's."""
     places = f"{record['n_places']} of {record['required']} places"
     lines = [headline(record, units=units), f"  {places}", ""]
-    lines += _judged(record["lines"], units)
+    lines += _judged(record["lines"], units) if record["lines"] else _bare(record, units)
     mean = weighed(record)
     lines += ["", *facts(mean)] if mean else []
     lines += _why(record, units)
@@ -68,13 +68,8 @@ def _numbers(record: Mapping[str, Any], units: Units) -> list[str]:
 
 def _bare(record: Mapping[str, Any], units: Units) -> list[str]:
     """The measured figures alone, where nothing was declared."""
-    threads, cover = record["threads"] or {}, record["cover"] or {}
-    rows = [
-        ("ends", figure(threads.get("ends"), units)),
-        ("picks", figure(threads.get("picks"), units)),
-        ("cover", figure(cover.get("optical"), units)),
-    ]
-    return table(rows)
+    seen = seen_in(record)
+    return table([(key, figure(seen.get(key), units)) for key in ("ends", "picks", "cover")])
 
 
 def _judged(judged: Sequence[Mapping[str, Any]], units: Units) -> list[str]:

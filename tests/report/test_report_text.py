@@ -17,7 +17,9 @@ from imgcover.quantity import Measured
 from imgcover.report.headline import headline
 from imgcover.report.layout import figure
 from imgcover.report.plain import columns
-from imgcover.report.text import record_text
+from imgcover.report.text import lot_text, record_text
+from imgcover.verdict.lot import measured_lot
+from imgcover.verdict.observed import Observed
 
 CONFORMING = {"ends": per_cm(26.8), "picks": per_cm(25.3), "cover": Measured(0.66, 0.005, "1")}
 
@@ -43,6 +45,33 @@ def test_a_value_at_its_limit_is_undecided() -> None:
 def test_without_a_declaration_the_figures_are_the_answer() -> None:
     told = headline(record(**CONFORMING, declared=False), units="cm")
     assert told == "harrow-02.png measured: 26.800 ends × 25.300 picks /cm, cover 66.00 %"
+
+
+def test_the_means_are_the_answer_of_a_lot_without_a_declaration() -> None:
+    places = [
+        Observed(ends=per_cm(26.8), picks=per_cm(25.3), place=place) for place in ("1", "2", "3")
+    ]
+    told = headline(measured_lot(places, lot="7"), units="cm")
+    assert told.startswith("lot 7 measured: 26.80")
+    assert "ends × 25.30" in told and told.endswith("picks /cm")
+    text = lot_text(measured_lot(places, lot="7"), units="cm")
+    assert [line.split()[:2] for line in text.splitlines()[3:5]] == [
+        ["ends", "26.800"],
+        ["picks", "25.300"],
+    ]
+    assert headline(measured_lot([Observed()], lot="7"), units="cm") == (
+        "lot 7 not measured: neither ends nor picks could be read"
+    )
+
+
+def test_what_alone_keeps_a_lot_open_is_said_once() -> None:
+    held = record(**CONFORMING, findings=(found(Flag.WARP_UNCERTAIN),))
+    assert headline(held, units="cm") == (
+        "harrow-02.png undecided: ends 26.800 /cm, held open; picks 25.300 /cm, held open"
+    )
+    assert headline(held, units="cm", most=120) == (
+        f"harrow-02.png undecided: {Flag.WARP_UNCERTAIN.message}"
+    )
 
 
 @pytest.mark.parametrize("declared", [True, False])
