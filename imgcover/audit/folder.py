@@ -83,6 +83,11 @@ class LotName(NamedTuple):
     lot: str
     article: Path | None
 
+    @property
+    def paper(self) -> str:
+        """The declaration's file name; empty where there is none."""
+        return "" if self.article is None else self.article.name
+
 
 @dataclass(frozen=True, slots=True)
 class Listing:

@@ -13,7 +13,7 @@ from imgcover.asking import certificate
 from imgcover.audit.folder import Listed
 from imgcover.audit.grounds import Grounds, OffGroundsError, read_file
 from imgcover.cloth.declaration import Declaration, read_declaration
-from imgcover.errors import DeclarationError, ImgcoverError, LotSheetError
+from imgcover.errors import CertificateError, DeclarationError, ImgcoverError, LotSheetError
 from imgcover.findings import Finding, Flag, found
 from imgcover.ledger.canonical import canonical
 from imgcover.ledger.record import Sample
@@ -90,11 +90,18 @@ class OrderBook:
         LotSheetError
             When its row says something impossible; row and column are named.
         CertificateError
-            When the certificate of its device cannot be read.
+            When the certificate that all pictures share cannot be read.
         """
         declared = self.declared(listed.article)
         options = self._read(listed)
-        self._certificate(options.device)
+        try:
+            self._certificate(options.device)
+        except CertificateError as fault:
+            if "device" not in listed.options:
+                raise
+            raise LotSheetError(
+                f"{listed.where}, device", f"{fault.where}: {fault.fault}", fault.remedy
+            ) from None
         unread = isinstance(declared, DeclarationError)
         return Order(
             name=listed.name,

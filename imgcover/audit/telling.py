@@ -107,7 +107,7 @@ def sum_lots(round_: Round, *, risk: float | None) -> Iterator[ToldLot]:
         declaration = None if isinstance(declared, DeclarationError) else declared
         rows = [row for _, row in _rows(round_, indices)]
         members = [member(row, json.loads(row.entry.body)) for row in rows]
-        subject = f"lot:{round_.folder}/{name.lot}/{name.article.name if name.article else ''}"
+        subject = f"lot:{round_.folder}/{name.lot}/{name.paper}"
         key = _lot_key(round_, rows, declaration, risk)
         kept = round_.ledger.last(subject)
         if kept is None or kept.entry.key != key:
@@ -124,7 +124,7 @@ def sum_lots(round_: Round, *, risk: float | None) -> Iterator[ToldLot]:
             kept = round_.ledger.last(subject)
             assert kept is not None
         record = json.loads(kept.entry.body)
-        page = page_name(name.lot, name.article.name if name.article else "", taken=pages)
+        page = page_name(name.lot, name.paper, taken=pages)
         pages.add(page.lower())
         yield ToldLot(
             name=name,
@@ -263,6 +263,7 @@ def _page_order(round_: Round, lot: ToldLot, about: About) -> PageOrder:
         versions=about.versions,
         description=declared.article.description if isinstance(declared, Declaration) else "",
         article_sha256=declared.sha256 if isinstance(declared, Declaration) else "",
+        unread=lot.name.paper if isinstance(declared, DeclarationError) else "",
     )
     return PageOrder(record=lot.record(round_.ledger), glances=glances, about=told)
 

@@ -41,6 +41,8 @@ class About:
         Of the article; empty where nothing was declared.
     article_sha256 : str
         Of the declaration; empty where nothing was declared.
+    unread : str
+        Name of a declaration that could not be read; else empty.
     """
 
     units: Units
@@ -49,6 +51,7 @@ class About:
     versions: Mapping[str, str]
     description: str = ""
     article_sha256: str = ""
+    unread: str = ""
 
 
 def lot_page(lot: Mapping[str, Any], glances: Sequence[Glance], *, about: About) -> str:
@@ -74,6 +77,7 @@ def lot_page(lot: Mapping[str, Any], glances: Sequence[Glance], *, about: About)
         title=f"Lot {plain(str(lot['lot']))}",
         article=plain(str(lot["article"] or "")),
         description=plain(about.description),
+        unread=plain(about.unread),
         headline=headline(lot, units=about.units, most=LONGEST_LEAD),
         decision=said_decision(lot["decision"]),
         tone=decision_class(lot["decision"]),

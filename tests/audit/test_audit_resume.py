@@ -15,7 +15,7 @@ from imgcover.audit.outcome import Loss, Lost
 from imgcover.audit.work import Answer
 from imgcover.cli.auditing import audited
 from imgcover.cli.exits import ExitCode
-from imgcover.errors import CertificateError, LotSheetError, OptionError
+from imgcover.errors import LotSheetError, OptionError
 
 
 def rows(out):
@@ -216,7 +216,7 @@ def test_a_certificate_that_is_none_is_refused_before_anything_is_measured(tmp_p
         sheet.read_text().replace("pitch\n", "device\n").replace("24px/mm", "bench.toml")
     )
     (goods / "bench.toml").write_text("[device]\n")
-    with pytest.raises(CertificateError, match=r"bench\.toml"):
+    with pytest.raises(LotSheetError, match=r"row 2, device: bench\.toml"):
         audit_inline(goods, tmp_path / "out")
 
 

@@ -5,6 +5,7 @@ and nothing is fetched from anywhere.
 """
 
 import re
+from dataclasses import replace
 from html.parser import HTMLParser
 from xml.etree import ElementTree
 
@@ -166,6 +167,13 @@ def test_the_drawing_is_the_same_to_the_byte_and_true_to_its_own_axis():
     red = [each.get("d") for each in sheet.iter("path") if each.get("stroke") == LIMIT]
     heights = [float(d.split()[1].split("L")[0]) for d in red]
     assert [start + slope * y for y in heights] == pytest.approx([66.6], abs=0.001)
+
+
+def test_an_unreadable_declaration_is_not_told_as_none():
+    bare = {**lot_record("good"), "article": None, "decision": None, "lines": []}
+    for unread, said in (("", "nothing was declared"), ("<h>.toml", "<h>.toml could not be read")):
+        page = lot_page(bare, [], about=replace(ABOUT, article_sha256="", unread=unread))
+        assert said in flat(Seen(page).words)
 
 
 def test_many_pictures_leave_a_page_of_bounded_size(tmp_path):
