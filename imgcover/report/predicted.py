@@ -118,11 +118,16 @@ def prediction_text(prediction: Prediction, *, description: str, weave: str | No
     return "\n".join(lines).rstrip() + "\n"
 
 
+def _order_alone(reason: str) -> str:
+    """Leave the figures out; they stand in the table. A code, too, may hold a colon."""
+    return reason.rpartition(": ")[0] or reason
+
+
 def comparison_text(comparison: Comparison) -> str:
     """Set several predictions side by side, and say which is the closer cloth and why."""
     predictions = comparison.predictions
     whole = next(line for line in comparison.lines if line.respect == "whole")
-    lines = [*wrapped(plain(whole.reason.partition(": ")[0]), first="", then="  "), ""]
+    lines = [*wrapped(plain(_order_alone(whole.reason)), first="", then="  "), ""]
     fitting = max(1, (WIDTH - 22) // COLUMN)
     for first in range(0, len(predictions), fitting):
         shown = predictions[first : first + fitting]

@@ -13,7 +13,7 @@ from declared_sheets import sheet
 from imgcover.cloth.comparison import Comparison, ComparisonLine, compare
 from imgcover.cloth.declaration import Declaration
 from imgcover.cloth.prediction import predict
-from imgcover.report.predicted import prediction_record
+from imgcover.report.predicted import comparison_text, prediction_record
 
 POPLIN = sheet("133 /in", "72 /in", "40 Ne", "40 Ne", code="POPLIN")
 SQUARE = sheet("68 /in", "64 /in", "32 Ne", "32 Ne", code="SQUARE")
@@ -95,6 +95,14 @@ def test_three_cloths_are_ranked_and_none_is_ranked_without_a_weave() -> None:
     found = line(compare([bare, without]), "tightness")
     assert found.closest is None
     assert found.values[1] is None
+
+
+def test_the_first_lines_give_the_whole_order_and_leave_the_figures_to_the_table() -> None:
+    text = comparison_text(side_by_side(SQUARE, SQUARE, POPLIN))
+    assert " ".join(text.partition("\n\n")[0].split()) == (
+        "the closest cloth is POPLIN, then SQUARE (1) or SQUARE (2) (or: not told apart within the "
+        "uncertainty)"
+    )
 
 
 def test_three_cloths_alike_are_said_to_be() -> None:
