@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import os
 import stat
+import unicodedata
 from collections.abc import Sequence
 from dataclasses import dataclass
 from pathlib import Path
@@ -39,7 +40,8 @@ class Grounds:
         Parameters
         ----------
         name : str or Path
-            Relative to a base, or absolute; back slashes are taken where nothing else is found.
+            Relative to a base, or absolute; back slashes, and letters with their accents composed
+            another way, are taken where nothing else is found.
 
         Returns
         -------
@@ -55,6 +57,11 @@ class Grounds:
         if "\0" in text:
             raise OffGroundsError("the name holds a NUL")
         tries = [text] if os.sep == "\\" or "\\" not in text else [text, text.replace("\\", "/")]
+        if not text.isascii():
+            # ä may be one letter in the sheet and two in the file's name, or the other way round
+            tries += [
+                unicodedata.normalize(form, each) for form in ("NFC", "NFD") for each in tries
+            ]
         inside = [path for each in tries for path in self._inside(each)]
         if not inside:
             raise OffGroundsError("it leads out of the audited folder")

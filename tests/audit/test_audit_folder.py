@@ -174,6 +174,15 @@ def test_back_slashes_of_another_system_are_understood(tmp_path):
     assert grounds.resolve("scans\\1.png") == tmp_path / "scans\\1.png"
 
 
+def test_accents_composed_another_way_name_the_same_file(tmp_path):
+    """Truth is Unicode's annex 15: ö is one character or an o and a mark, and looks the same."""
+    lay(tmp_path, "Mo\u0308we.png", "M\u00f6wen.png")
+    sheet(tmp_path, "M\u00f6we.png,1", "Mo\u0308wen.png,1", head="picture,lot")
+    listing = list_folder(tmp_path, articles=None)
+    assert [picture.path.is_file() for picture in listing.pictures] == [True, True]
+    assert listing.unlisted == ()
+
+
 def test_strange_names_become_plain_text(tmp_path):
     lay(tmp_path, "A/a\nb.png", "A/\x1b[2J.png")
     (tmp_path / "A" / os.fsdecode(b"\xff.png")).write_bytes(b"x")
