@@ -90,12 +90,14 @@ def lead(counts: Mapping[str | None, int]) -> str:
     --------
     >>> lead({"conforms": 3, "undecided": 1})
     '3 lots conform, 1 lot undecided.'
+    >>> lead({None: 1})
+    '1 lot not judged.'
     """
     words = {
         "does not conform": ("does not conform", "do not conform"),
         "undecided": ("undecided", "undecided"),
         "conforms": ("conforms", "conform"),
-        None: ("measured, with nothing declared", "measured, with nothing declared"),
+        None: ("not judged", "not judged"),
     }
     said = []
     for decision in ("conforms", "does not conform", "undecided", None):

@@ -14,7 +14,7 @@ DECISIONS = {
     "conforms": ("✓ conforms", "good"),
     "does not conform": ("✗ does not conform", "bad"),
     "undecided": ("? undecided", "open"),
-    None: ("measured", "plain"),
+    None: ("not judged", "plain"),
 }
 """Said with a sign as well as a colour: pages are photocopied, and not every eye tells red from
 green."""
