@@ -25,7 +25,7 @@ from imgcover.scale.rule_fit import fit_row
 from imgcover.scale.rule_hierarchy import Graduation, bend_of
 from imgcover.scale.rule_levels import Level, Pictured, levels_of
 from imgcover.scale.rule_lines import Row, goes_on, measure_lines
-from imgcover.scale.rule_proof import UNMISTAKABLE, Proof, prove
+from imgcover.scale.rule_proof import BEYOND_CHANCE, UNMISTAKABLE, Proof, evidence, prove
 from imgcover.scale.rule_quiet import quieten
 from imgcover.scale.rule_seeds import Seed, even_out, find_seeds
 from imgcover.scale.rule_view import View, view_of
@@ -134,6 +134,7 @@ def find_rules(
     found_rows: list[tuple[RuleReading, Proof]] = []
     refused: list[str] = []
     doubted = False
+    fitted_on = levels[0]
     for quiet, level in ((quiet, level) for quiet in (False, True) for level in reversed(levels)):
         if quiet and doubted:
             break
@@ -142,7 +143,9 @@ def find_rules(
                 # what the picture as it is disproves must not be proven in one made for searching
                 doubted = True
                 continue
-            reading = _read(picture, levels[0], level, row, proof, rule_class)
+            if quiet and fitted_on is levels[0]:
+                fitted_on = Level(levels[0].factor, quieten(levels[0].tone))
+            reading = _read(picture, fitted_on, level, row, proof, rule_class)
             if isinstance(reading, str):
                 refused.append(reading)
             else:
@@ -165,7 +168,7 @@ def _rows_on(level: Level, unit: Unit, *, quiet: bool) -> list[tuple[Row, Proof]
         covers = any(proof.graduations and _inside(row, seed) for row, proof in kept)
         for row in follow_row(tone, seed):
             proof = prove(row, unit)
-            if quiet and proof is not None and proof.pattern.steps not in UNMISTAKABLE:
+            if quiet and proof is not None and not _beyond_doubt(proof, row):
                 # pressing down touches the ends of lines, and with them half or twice the period
                 row, proof = _as_it_is(level, row, unit)
             if proof is None:
@@ -180,6 +183,17 @@ def _rows_on(level: Level, unit: Unit, *, quiet: bool) -> list[tuple[Row, Proof]
             if proof.graduations:
                 break
     return kept
+
+
+def _beyond_doubt(proof: Proof, row: Row) -> bool:
+    """Whether pressing the cloth down can have made or hidden nothing that the proof rests on.
+
+    What is pressed down is pressed alike all along the row. Lines of one length stay so; and where
+    a period were lost, its longest lines would be half pressed away, which is no sharp end.
+    """
+    return proof.pattern.steps in UNMISTAKABLE or (
+        proof.proven and evidence(proof.pattern, row) >= BEYOND_CHANCE
+    )
 
 
 def _as_it_is(level: Level, row: Row, unit: Unit) -> tuple[Row, Proof | None]:

@@ -13,7 +13,7 @@ from numpy.typing import NDArray
 from scipy.ndimage import gaussian_filter1d, uniform_filter1d
 
 from imgcover.scale.rule_frame import Frame, run_around
-from imgcover.scale.rule_lines import LONGEST_LINE, Row, measure_lines
+from imgcover.scale.rule_lines import LONGEST_LINE, Row, lay_lines, measure_lines
 from imgcover.scale.rule_seeds import Seed
 
 FEWEST_LINES = 12
@@ -25,6 +25,11 @@ LEAST_LIKE = 0.35
 ROUNDED = 0.15
 """Pitches of smoothing before the pitch is looked for: lines a tenth of a pitch wide spread over
 many harmonics, and no single one of them would carry the variance."""
+NEAR = 12
+"""Pitches to each side of the seed over which lines are told from gaps."""
+UNDECIDED = 0.3
+"""Skewness of the light along the row below which lines cannot be told from gaps: lines that fill
+a third of the pitch or less have more than twice that."""
 WIDEST_GAP = 8
 """Lines that may be missing in a row (dust, a finger, worn places) before it is taken to end."""
 
@@ -50,11 +55,30 @@ def follow_row(tone: NDArray[np.float32], seed: Seed) -> list[Row]:
         return []
     frame, pitch, zone = straight
     rows = []
-    for way in (1.0, -1.0):
-        row = _one_way(tone, frame, pitch, zone, way)
-        if row is not None:
-            rows.append(row)
+    for light in _tones_of_lines(tone, frame, pitch, zone):
+        for way in (1.0, -1.0):
+            row = _one_way(tone, frame, pitch, zone, way, light=light)
+            if row is not None:
+                rows.append(row)
     return rows
+
+
+def _tones_of_lines(
+    tone: NDArray[np.float32], frame: Frame, pitch: float, zone: tuple[float, float]
+) -> tuple[bool, ...]:
+    """Tell whether the lines are lighter than the gaps, the narrower of the two being lines.
+
+    Where both are about as wide, and cloth shows between them, it can be either.
+    """
+    profiled = _profile(tone, frame, pitch, zone)
+    if profiled is None:
+        return ()
+    s, profile = profiled
+    near = np.abs(s) < NEAR * pitch
+    ripple = (profile - gaussian_filter1d(profile, 1.2 * pitch, mode="nearest"))[near]
+    skew = float(np.mean(ripple**3) / (np.mean(ripple**2) ** 1.5 + 1e-12))
+    light = skew > 0
+    return (light, not light) if abs(skew) < UNDECIDED else (light,)
 
 
 def _one_way(
@@ -63,21 +87,26 @@ def _one_way(
     pitch: float,
     zone: tuple[float, float],
     way: float,
+    *,
+    light: bool,
 ) -> Row | None:
     """Follow the row twice: the second time along the feet that the first has found."""
     if way < 0:
         frame = replace(frame, upright=frame.upright + np.pi)
         zone = (-zone[1], -zone[0])
-    row = None
-    for _ in range(2):
-        followed = _follow(tone, frame, pitch, zone)
-        if followed is None:
-            return None
-        row = measure_lines(tone, frame, *followed, zone=zone)
-        if row is None:
-            return None
-        frame, pitch, zone = row.frame, row.pitch, (0.0, row.zone)
-    return row
+    followed = _follow(tone, frame, pitch, zone, light=light)
+    if followed is None:
+        return None
+    laid = lay_lines(tone, frame, followed[1], light, zone=zone)
+    if laid is None:
+        return None
+    frame, positions, (foot, top) = laid
+    pitch = float(np.median(np.diff(positions)))
+    frame, zone = frame.moved(0.0, foot), (0.0, top - foot)
+    followed = _follow(tone, frame, pitch, zone, light=light)
+    if followed is None:
+        return None
+    return measure_lines(tone, frame, *followed, light, zone=zone)
 
 
 def _straighten(
@@ -147,9 +176,38 @@ def _demodulate(
 
 
 def _follow(
-    tone: NDArray[np.float32], frame: Frame, pitch: float, zone: tuple[float, float]
-) -> tuple[NDArray[np.int_], NDArray[np.float64], bool] | None:
+    tone: NDArray[np.float32],
+    frame: Frame,
+    pitch: float,
+    zone: tuple[float, float],
+    *,
+    light: bool,
+) -> tuple[NDArray[np.int_], NDArray[np.float64]] | None:
     """Number the lines along the row by phase, from the origin both ways, and place each."""
+    profiled = _profile(tone, frame, pitch, zone)
+    if profiled is None:
+        return None
+    s, profile = profiled
+    wave, share = _demodulate(profile, s, pitch)
+    held = share > LEAST_SHARE
+    origin = int(np.argmin(np.abs(s)))
+    first, last = _extent(held, origin, int(WIDEST_GAP * pitch))
+    if last - first < FEWEST_LINES * pitch:
+        return None
+    phase = np.unwrap(np.angle(wave[first : last + 1])) + 2 * np.pi * s[first : last + 1] / pitch
+    cycles = phase / (2 * np.pi) - (0.0 if light else 0.5)
+    if np.any(np.diff(cycles) <= 0):
+        return None
+    numbers = np.arange(int(np.ceil(cycles[0])), int(np.floor(cycles[-1])) + 1)
+    if len(numbers) < FEWEST_LINES:
+        return None
+    return numbers, np.interp(numbers, cycles, s[first : last + 1])
+
+
+def _profile(
+    tone: NDArray[np.float32], frame: Frame, pitch: float, zone: tuple[float, float]
+) -> tuple[NDArray[np.float64], NDArray[np.float32]] | None:
+    """Return the mean along the lines at each place of the row, as far as the picture goes."""
     extent = float(np.hypot(*tone.shape))
     s = np.arange(-extent, extent)
     x, y = frame.place(s, np.array(0.0))
@@ -161,22 +219,7 @@ def _follow(
     middle, half = (low + high) / 2, max(1.5, min((high - low) * 0.4, 2.5 * pitch))
     heights = np.arange(middle - half, middle + half + 0.5)
     profile = gaussian_filter1d(frame.sample(tone, s, heights).mean(axis=0), ROUNDED * pitch)
-    wave, share = _demodulate(profile, s, pitch)
-    held = share > LEAST_SHARE
-    origin = int(np.argmin(np.abs(s)))
-    first, last = _extent(held, origin, int(WIDEST_GAP * pitch))
-    if last - first < FEWEST_LINES * pitch:
-        return None
-    phase = np.unwrap(np.angle(wave[first : last + 1])) + 2 * np.pi * s[first : last + 1] / pitch
-    ripple = profile - gaussian_filter1d(profile, 1.2 * pitch, mode="nearest")
-    light = bool(np.mean(ripple[first : last + 1] ** 3) > 0)
-    cycles = phase / (2 * np.pi) - (0.0 if light else 0.5)
-    if np.any(np.diff(cycles) <= 0):
-        return None
-    numbers = np.arange(int(np.ceil(cycles[0])), int(np.floor(cycles[-1])) + 1)
-    if len(numbers) < FEWEST_LINES:
-        return None
-    return numbers, np.interp(numbers, cycles, s[first : last + 1]), light
+    return s, profile
 
 
 def _extent(held: NDArray[np.bool_], origin: int, gap: int) -> tuple[int, int]:

@@ -17,7 +17,7 @@ from itertools import pairwise
 import numpy as np
 from numpy.typing import NDArray
 
-from imgcover.scale.rule_lines import Row
+from imgcover.scale.rule_lines import Row, pitch_scatter
 
 INCH_MM = 25.4
 
@@ -119,13 +119,13 @@ def match_patterns(row: Row) -> list[Pattern]:
 
 def usual_scatter(row: Row) -> float:
     """Return how far, in pitches, a line's measured end strays: never less than a pixel or so."""
-    return max(0.12, 0.8 / row.pitch)
+    return pitch_scatter(row.pitch)
 
 
 def misfit(row: Row, pattern_lengths: NDArray[np.float64]) -> NDArray[np.float64]:
     """Return how far, in pitches, each line ends from the length that its level has."""
-    first = np.abs(row.reach / row.pitch - pattern_lengths)
-    return np.minimum(first, np.abs(row.beyond / row.pitch - pattern_lengths))
+    ends = np.stack([row.reach, row.beyond, row.faint]) / row.pitch
+    return np.asarray(np.abs(ends - pattern_lengths).min(axis=0))
 
 
 def bend_of(row: Row, pattern: Pattern) -> float:
@@ -167,9 +167,14 @@ def _best_phase(
     """Fit one pattern at each of its likely phases; return the cheapest."""
     best = None
     reach, scatter = row.reach / row.pitch, usual_scatter(row)
-    for phase in _likely_phases(row.numbers, reach, steps):
+    # worn lines have to be seen by what is left of them, others end sooner than their blur
+    for ends, phase in (
+        (ends, phase)
+        for ends in (reach, row.faint / row.pitch)
+        for phase in _likely_phases(row.numbers, ends, steps)
+    ):
         level = levels(row.numbers - phase, steps)
-        lengths = [_middle(reach[level == i]) for i in range(len(steps))]
+        lengths = [_middle(ends[level == i]) for i in range(len(steps))]
         rises = [after - before for before, after in pairwise(lengths)]
         if not min(rises) >= 1.5 * scatter:
             continue
@@ -216,6 +221,7 @@ def levels(numbers: NDArray[np.int_], steps: tuple[int, ...]) -> NDArray[np.int_
 
 __all__ = [
     "INCH_MM",
+    "LOST",
     "Graduation",
     "Pattern",
     "bend_of",

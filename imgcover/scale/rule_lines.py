@@ -6,11 +6,11 @@ as it was at its foot, it ends.
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, fields, replace
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.ndimage import median_filter
+from scipy.ndimage import gaussian_filter1d, median_filter
 
 from imgcover.scale.rule_frame import Frame, run_around
 
@@ -24,6 +24,16 @@ BEFORE_END = 0.5
 """Pitches before its end over which a line is looked at for ink beside it."""
 CLEAR_GAP = 0.14
 """Pitches of full gap, halved: a line's ink may be broken by less, digits stand off by more."""
+LOOKED_AT = 48
+"""Lines nearest the seed that are looked at before the whole row is: two inches of a 1/16 scale."""
+LEAST_TOGETHER, TOGETHER = 0.3, 6.0
+"""Of these the share that must end within so many scatters: half are of one length in every
+pattern, wear takes some."""
+FAINTEST = 0.15
+"""Of a line's contrast at its foot: what is left where wear has taken nearly all of it."""
+SEEN = 3.0
+"""Times the distance of the twentieth from the quarter of the contrasts (about one standard
+deviation where most lines have ended) above which a line is seen to go on."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -31,11 +41,12 @@ class Row:
     """A row of lines as it was followed.
 
     `numbers` and `positions` (px along the frame) of each line; `reach` how far each goes from
-    the common foot at t = 0 up to its first clear gap, px, and `beyond` how far if gaps may be
-    dust; `tip` its contrast just before its end over that at its foot; `wide` the same of what
-    stands close beside it on both sides, less what does at its foot; `strength` its contrast over
-    the usual; `pitch` in px; `light` whether the lines are lighter than their ground; `zone`
-    the height up to which all lines go.
+    the common foot at t = 0 up to its first clear gap, px, `beyond` how far if gaps may be dust,
+    and `faint` how far something of it shows at all; `tip` its contrast just before its end over
+    that at its foot, `faint_tip` the same of its faint end over what comes before; `wide` the same
+    of what stands close beside it on both sides, less what does at its foot; `strength` its
+    contrast over the usual; `pitch` in px; `light` whether the lines are lighter than their
+    ground; `zone` the height up to which all lines go.
     """
 
     frame: Frame
@@ -44,11 +55,58 @@ class Row:
     positions: NDArray[np.float64]
     reach: NDArray[np.float64]
     beyond: NDArray[np.float64]
+    faint: NDArray[np.float64]
     tip: NDArray[np.float64]
+    faint_tip: NDArray[np.float64]
     wide: NDArray[np.float64]
     strength: NDArray[np.float64]
     light: bool
     zone: float
+
+    def part(self, first: int, last: int) -> Row:
+        """Return the lines from index `first` up to `last`, which is left out."""
+        inside = slice(first, last)
+        arrays = {
+            name: getattr(self, name)[inside]
+            for name in (each.name for each in fields(self))
+            if isinstance(getattr(self, name), np.ndarray)
+        }
+        return replace(self, **arrays)
+
+
+def lay_lines(
+    tone: NDArray[np.float32],
+    frame: Frame,
+    positions: NDArray[np.float64],
+    light: bool,
+    *,
+    zone: tuple[float, float],
+) -> tuple[Frame, NDArray[np.float64], tuple[float, float]] | None:
+    """Turn the frame along the lines' common foot; return it, the positions and the zone anew.
+
+    None where lines do not stand against their gaps, or do not end as lines do.
+    """
+    pitch = float(np.median(np.diff(positions)))
+    for first_time in (True, False):
+        t = _heights(zone, pitch)
+        if first_time:
+            nearest = np.sort(np.argsort(np.abs(positions), kind="stable")[:LOOKED_AT])
+            seen = _contrast(tone, frame, positions[nearest], t, pitch, light)
+            if not _may_be_lines(seen, t, pitch, zone):
+                return None
+        contrast = _contrast(tone, frame, positions, t, pitch, light)
+        usual = _usual(contrast, t, zone)
+        if usual is None:
+            return None
+        strength, *zone_found = usual
+        zone = (zone_found[0], zone_found[1])
+        lean = _lean(positions, contrast, strength, t, *zone)
+        turned = frame.along + np.arctan(lean) * np.sin(frame.upright - frame.along)
+        positions = positions * (
+            np.sin(frame.upright - frame.along) / np.sin(frame.upright - turned)
+        )
+        frame = replace(frame, along=turned)
+    return frame, positions, zone
 
 
 def measure_lines(
@@ -61,25 +119,25 @@ def measure_lines(
     zone: tuple[float, float],
 ) -> Row | None:
     """Measure how far each line goes from the common foot."""
+    laid = lay_lines(tone, frame, positions, light, zone=zone)
+    if laid is None:
+        return None
+    frame, positions, zone = laid
     pitch = float(np.median(np.diff(positions)))
-    for _ in range(2):
-        t = np.arange(np.floor(zone[0] - 3 * pitch), zone[0] + LONGEST_LINE * pitch)
-        contrast = _contrast(tone, frame, positions, t, pitch) * (1.0 if light else -1.0)
-        usual = _usual(contrast, t, zone)
-        if usual is None:
-            return None
-        strength, foot, top = usual
-        reach, beyond, tip = _reach(
-            contrast, strength, t, foot=foot, top=top, clear=max(1.2, CLEAR_GAP * pitch)
-        )
-        lean = _lean(positions, contrast, strength, t, foot, top)
-        turned = frame.along + np.arctan(lean) * np.sin(frame.upright - frame.along)
-        positions = positions * (
-            np.sin(frame.upright - frame.along) / np.sin(frame.upright - turned)
-        )
-        frame = replace(frame, along=turned)
-        zone = (foot, top)
-    wide = _wide(tone, frame, positions, t, pitch, strength, reach, (foot, top))
+    clear = max(1.2, CLEAR_GAP * pitch)
+    t = _heights(zone, pitch)
+    contrast = _contrast(tone, frame, positions, t, pitch, light)
+    usual = _usual(contrast, t, zone)
+    if usual is None:
+        return None
+    strength, foot, top = usual
+    zone = (foot, top)
+    reach, beyond, tip = _reach(contrast, strength, t, foot=foot, top=top, clear=clear)
+    faint, faint_tip = _faint(contrast, strength, t, foot=foot, top=top, clear=clear)
+    faint = np.maximum(faint, reach)
+    wide = np.maximum(
+        *(_wide(tone, frame, positions, t, pitch, strength, end, zone) for end in (reach, faint))
+    )
     local = median_filter(strength, 15, mode="nearest")
     return Row(
         frame=frame.moved(0.0, foot),
@@ -88,12 +146,37 @@ def measure_lines(
         positions=positions,
         reach=reach - foot,
         beyond=beyond - foot,
+        faint=faint - foot,
         tip=tip,
+        faint_tip=faint_tip,
         wide=wide,
         strength=strength / np.maximum(local, 1e-6),
         light=light,
         zone=top - foot,
     )
+
+
+def _may_be_lines(
+    contrast: NDArray[np.float64],
+    t: NDArray[np.float64],
+    pitch: float,
+    zone: tuple[float, float],
+) -> bool:
+    """Whether some lines end at one height and others well beyond: in most cloth they do not."""
+    usual = _usual(contrast, t, zone)
+    if usual is None:
+        return False
+    strength, foot, top = usual
+    clear = max(1.2, CLEAR_GAP * pitch)
+    reach = np.sort(_reach(contrast, strength, t, foot=foot, top=top, clear=clear)[0]) / pitch
+    together = max(2, int(LEAST_TOGETHER * len(reach)))
+    least = (reach[together - 1 :] - reach[: len(reach) - together + 1]).min()
+    return bool(least < TOGETHER * pitch_scatter(pitch) < reach[-2] - reach[0])
+
+
+def pitch_scatter(pitch: float) -> float:
+    """Return how far, in pitches, a line's measured end strays: never less than a pixel or so."""
+    return max(0.12, 0.8 / pitch)
 
 
 def goes_on(tone: NDArray[np.float32], row: Row) -> bool:
@@ -102,10 +185,10 @@ def goes_on(tone: NDArray[np.float32], row: Row) -> bool:
     A second scale may stand foot to foot with the first, but its shortest lines end.
     """
     heights = np.arange(-BEYOND_FOOT * row.pitch, -0.25 * row.pitch)
-    contrast = _contrast(tone, row.frame, row.positions, heights, row.pitch)
-    middle = np.median(contrast, axis=0) * (1.0 if row.light else -1.0)
+    contrast = _contrast(tone, row.frame, row.positions, heights, row.pitch, row.light)
+    middle = np.median(contrast, axis=0)
     at_foot = np.arange(0.0, row.zone + 0.5)
-    usual = np.median(_contrast(tone, row.frame, row.positions, at_foot, row.pitch))
+    usual = np.median(_contrast(tone, row.frame, row.positions, at_foot, row.pitch, row.light))
     return bool((middle > abs(usual) / 3).mean() > 0.5)
 
 
@@ -115,11 +198,17 @@ def _contrast(
     positions: NDArray[np.float64],
     t: NDArray[np.float64],
     pitch: float,
+    light: bool,
 ) -> NDArray[np.float64]:
-    """Return line minus gap, shape (lines, heights)."""
+    """Return how much a line stands out from the gaps beside it, shape (lines, heights)."""
     line = [frame.sample(tone, positions + d * pitch, t) for d in (-0.08, 0.0, 0.08)]
     gap = [frame.sample(tone, positions + d * pitch, t) for d in (-0.55, -0.45, 0.45, 0.55)]
-    return np.asarray((sum(line) / 3 - sum(gap) / 4).T, dtype=np.float64)  # type: ignore[union-attr]
+    darker = (sum(gap) / 4 - sum(line) / 3).T  # type: ignore[union-attr]
+    return np.asarray(-darker if light else darker, dtype=np.float64)
+
+
+def _heights(zone: tuple[float, float], pitch: float) -> NDArray[np.float64]:
+    return np.arange(np.floor(zone[0] - 3 * pitch), zone[0] + LONGEST_LINE * pitch)
 
 
 def _usual(
@@ -178,6 +267,37 @@ def _reach(
     return t[start] + first + 0.5, t[start] + np.argmax(above, axis=1) + 0.5, tip
 
 
+def _faint(
+    contrast: NDArray[np.float64],
+    strength: NDArray[np.float64],
+    t: NDArray[np.float64],
+    *,
+    foot: float,
+    top: float,
+    clear: float,
+) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    """Return how far a worn line shows against what no line reaches, and how strong its end is.
+
+    At each height the lines that do not come so far, a quarter of all and more, tell how far a
+    contrast strays where there is none.
+    """
+    usual = np.maximum(strength, 0.2 * np.median(strength))[:, None]
+    start = int(np.searchsorted(t, (foot + top) / 2))
+    low, quarter = np.quantile(contrast[:, start:], (0.05, 0.25), axis=0)
+    level = quarter + SEEN * gaussian_filter1d(quarter - low, clear, mode="nearest")
+    level = np.clip(level, FAINTEST * usual, usual / 2)
+    relative = np.clip(contrast[:, start:] / usual, -0.5, 1.5)
+    above = np.cumsum(relative - level / usual, axis=1)
+    fallen = np.maximum.accumulate(above, axis=1) - above > FAINTEST * clear
+    ended = np.maximum.accumulate(fallen, axis=1)
+    end = np.argmax(np.where(ended, -np.inf, above), axis=1)
+    last, before = (
+        np.take_along_axis(relative, np.maximum(end[:, None] - np.arange(*part), 0), axis=1)
+        for part in ((1, 4), (4, 12))
+    )
+    return t[start] + end + 0.5, last.mean(axis=1) / np.maximum(before.mean(axis=1), FAINTEST)
+
+
 def _wide(
     tone: NDArray[np.float32],
     frame: Frame,
@@ -224,4 +344,4 @@ def _lean(
     return float(np.median(slope / length)) if len(slope) else 0.0
 
 
-__all__ = ["LONGEST_LINE", "Row", "goes_on", "measure_lines"]
+__all__ = ["LONGEST_LINE", "Row", "goes_on", "lay_lines", "measure_lines", "pitch_scatter"]

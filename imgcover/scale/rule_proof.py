@@ -16,6 +16,7 @@ from numpy.typing import NDArray
 from scipy.special import gammaln
 
 from imgcover.scale.rule_hierarchy import (
+    LOST,
     Graduation,
     Pattern,
     levels,
@@ -43,10 +44,14 @@ LEAST_RISE = 6.0
 """Scatters between the shortest and the longest lines: three pixels' difference, clearly seen."""
 MARGIN = 10.0
 """What a pattern of another unit must cost more to be out of the question."""
+FALSE_ENDS = 2
+"""Lines at each end of a row that may be none: one beyond the rule's end, one beyond the frame."""
 MOST_LONGER = 0.25
 """Of the lines that keep their level's length: how many may be longer."""
 UNMISTAKABLE = ((1, 5, 10), (1, 2, 10, 20))
 """Patterns whose period could be neither halved nor doubled into another scale's."""
+FINEST = (1, 2, 4, 8, 16, 32, 64)
+"""The finest binary scale there is: what has all its levels has no more."""
 SHARP_TIP = 0.72
 """Contrast just before a longest line's end, over that at its foot: a line that fades away is
 half as strong there by definition, one that ends nearly as strong as at its foot."""
@@ -119,6 +124,8 @@ def prove(row: Row, unit: str) -> Proof | None:
         own lines speak against it, or it is not of the stated unit.
     """
     patterns = match_patterns(row)
+    if patterns and (within := _without_false_ends(row, patterns[0])) is not row:
+        row, patterns = within, match_patterns(within)
     if not patterns or not _fits(patterns[0], row):
         return None
     rivals = [
@@ -137,6 +144,19 @@ def prove(row: Row, unit: str) -> Proof | None:
     if seen is Recurrence.NOT_IN_FRAME:
         readings += [each for each in _unseen(first, unit) if each not in readings]
     return Proof(tuple(readings), first)
+
+
+def _without_false_ends(row: Row, pattern: Pattern) -> Row:
+    """Leave out the outermost lines that end nowhere near their level's length.
+
+    A row is followed a line too far where the rule ends or the frame cuts it; such a line tells
+    nothing of the scale. Longest lines still have to recur among the others.
+    """
+    level = levels(row.numbers - pattern.phase, pattern.steps)
+    off = misfit(row, np.array(pattern.lengths)[level]) >= LOST * usual_scatter(row)
+    first = int(np.argmin(off[: FALSE_ENDS + 1])) if off[0] else 0
+    last = int(np.argmin(off[::-1][: FALSE_ENDS + 1])) if off[-1] else 0
+    return row.part(first, len(off) - last) if first or last else row
 
 
 def _unseen(pattern: Pattern, unit: str) -> tuple[Graduation, ...]:
@@ -163,12 +183,21 @@ def evidence(pattern: Pattern, row: Row) -> float:
     """Return how rare the row's order of lengths is, in powers of ten.
 
     As many lines of each length can be put in order in n!/(n₁! n₂! …) ways, and only one is the
-    pattern's; a line out of place is charged as half a power.
+    pattern's; a line out of place is charged as half a power. That the lines of a longer level
+    end at one height, when they might anywhere between the shortest and the longest, comes on top.
     """
     level = levels(row.numbers - pattern.phase, pattern.steps)
     counts = np.bincount(level)
     ways = gammaln(len(level) + 1) - gammaln(counts + 1).sum()
-    return float(ways / math.log(10) - 0.5 * (1 - pattern.explained) * len(level))
+    order = float(ways / math.log(10) - 0.5 * (1 - pattern.explained) * len(level))
+    kept = misfit(row, np.array(pattern.lengths)[level]) < LOST * usual_scatter(row)
+    rise = (pattern.lengths[-1] - pattern.lengths[0]) / usual_scatter(row)
+    a_line = max(0.0, math.log10(rise / (2 * LOST))) if rise > 0 else 0.0
+    for index in range(1, len(pattern.steps)):
+        n, k = int((level == index).sum()), int((level == index)[kept].sum())
+        if k > 1:
+            order += max(0.0, (k - 1) * a_line - math.log10(math.comb(n, k)))
+    return order
 
 
 class Recurrence(Enum):
@@ -201,14 +230,14 @@ def _recurs(pattern: Pattern, row: Row) -> Recurrence:
         return Recurrence.DISPROVED
     if pattern.steps in UNMISTAKABLE:
         # that they are longer than the level below is enough, however far each still reaches
-        ends |= reach > between + bound
+        ends |= row.faint / row.pitch > between + bound
     else:
         # half or twice the period would be as good a scale: a worn line must not decide
         if not _in_both_turns(pattern, row, ends):
             return Recurrence.DISPROVED
-        ends &= (row.tip >= SHARP_TIP) & (row.wide <= WIDE_TIP)
+        ends = _sharp_ends(row, top, bound)
     longest = dict(zip(row.numbers.tolist(), ends.tolist(), strict=True))
-    length = dict(zip(row.numbers.tolist(), reach.tolist(), strict=True))
+    length = dict(zip(row.numbers.tolist(), (row.faint / row.pitch).tolist(), strict=True))
     tried = 0
     for first in range(int(row.numbers[0]), int(row.numbers[-1]) - (need - 1) * period + 1):
         chain = [longest.get(first + i * period) for i in range(need)]
@@ -218,7 +247,29 @@ def _recurs(pattern: Pattern, row: Row) -> Recurrence:
         middle = length.get(first + period // 2, between) if halved else between
         if all(chain) and middle < top - 2 * scatter:
             return Recurrence.SEEN
+    if not tried and pattern.steps == FINEST and _alone(pattern, ends, row):
+        return Recurrence.SEEN
     return Recurrence.DISPROVED if tried else Recurrence.NOT_IN_FRAME
+
+
+def _alone(pattern: Pattern, ends: NDArray[np.bool_], row: Row) -> bool:
+    """Whether one longest line stands between two of the level below that end as lines end.
+
+    The two exclude half the period; twice the period no scale has.
+    """
+    half, period = pattern.steps[-2:]
+    halves = _sharp_ends(row, pattern.lengths[-2], 2 * usual_scatter(row))
+    sharp = set(row.numbers[halves].tolist())
+    longest = row.numbers[ends & ((row.numbers - pattern.phase) % period == 0)].tolist()
+    return any({each - half, each + half} <= sharp for each in longest)
+
+
+def _sharp_ends(row: Row, top: float, bound: float) -> NDArray[np.bool_]:
+    """Return which lines end at a length as lines end, with nothing faint or wide beyond."""
+    at_reach = (np.abs(row.reach / row.pitch - top) <= bound) & (row.tip >= SHARP_TIP)
+    faint = row.faint / row.pitch
+    at_faint = (np.abs(faint - top) <= bound) & (row.faint_tip >= SHARP_TIP)
+    return (at_reach | at_faint) & (faint <= top + bound) & (row.wide <= WIDE_TIP)
 
 
 def _fifths_longer(pattern: Pattern, row: Row, bound: float) -> bool:
