@@ -13,6 +13,7 @@ from imgcover.cli.exits import ExitCode
 from imgcover.cli.output import keep_apart, opened, tell
 from imgcover.errors import OutputError, PictureError, ScaleError
 from imgcover.picture.reader import read_picture
+from imgcover.quantity import Measured
 from imgcover.scale.bars import parse_bars
 from imgcover.scale.certificate import (
     FURTHEST,
@@ -34,8 +35,8 @@ ENDING = {
 }
 MM_PER_INCH = 25.4
 USUAL = 0.007
-"""Relative difference from the nominal resolution that is worth a word: flatbeds' halves and units
-differ by 0.6 %, and copiers shrink by about as much."""
+"""Relative difference from the nominal resolution that is worth a word, and refused where both axes
+have it alike: flatbeds' halves and units differ by 0.6 %, copiers shrink by that and more."""
 
 
 def write_sheet(output: Path) -> ExitCode:
@@ -83,21 +84,8 @@ def read_scans(
     reading = _device(taken, measured)
     if reading is None:
         return ExitCode.UNDECIDED
-    for axis, pitch, claimed in zip("xy", (reading.x, reading.y), nominal, strict=True):
-        off = pitch.value * MM_PER_INCH / claimed - 1
-        if abs(off) > FURTHEST:
-            tell(
-                f"refused: {axis} would be {100 * off:+.1f} % off the stated {claimed:g} dpi; no "
-                "flatbed is. Is the sheet a copy, or was a bar measured wrongly? Measure the bars "
-                "of the very sheet that was scanned"
-            )
-            return ExitCode.UNDECIDED
-        if abs(off) > USUAL:
-            tell(
-                f"{axis} is {100 * off:+.1f} % off the stated {claimed:g} dpi, more than most "
-                "flatbeds are: see that the bars are those of the very sheet that was scanned, and "
-                "that it is no copy"
-            )
+    if not _plausible((reading.x, reading.y), nominal):
+        return ExitCode.UNDECIDED
     today = datetime.now(UTC).date()
     text = write_certificate(
         reading,
@@ -163,6 +151,36 @@ class _Taken:
     hashes: tuple[str, ...] = ()
     dpi: tuple[float, float] | None = None
     tone: Tone = SRGB
+
+
+def _plausible(pitches: tuple[Measured, Measured], nominal: tuple[float, float]) -> bool:
+    """Hold the pitches against the stated resolution; say what speaks against them.
+
+    A copier shrinks both ways alike. A flatbed's two pitches come from its optics and from its
+    carriage, which have nothing in common.
+    """
+    offs = [
+        pitch.value * MM_PER_INCH / claimed - 1
+        for pitch, claimed in zip(pitches, nominal, strict=True)
+    ]
+    x, y = offs
+    alike = x * y > 0 and min(abs(x), abs(y)) > USUAL
+    for axis, off, claimed in zip("xy", offs, nominal, strict=True):
+        if abs(off) > FURTHEST or alike:
+            both = f"x and y would be {100 * x:+.1f} and {100 * y:+.1f} %"
+            tell(
+                f"refused: {both if alike else f'{axis} would be {100 * off:+.1f} %'} off the "
+                f"stated {claimed:g} dpi; no flatbed is. Is the sheet a copy, or was a bar "
+                "measured wrongly? Measure the bars of the very sheet that was scanned"
+            )
+            return False
+        if abs(off) > USUAL:
+            tell(
+                f"{axis} is {100 * off:+.1f} % off the stated {claimed:g} dpi, more than most "
+                "flatbeds are: see that the bars are those of the very sheet that was scanned, and "
+                "that it is no copy"
+            )
+    return True
 
 
 def _take(scans: Sequence[Path], *, tone: str | None) -> _Taken:

@@ -21,6 +21,7 @@ from imgcover.quantity import Measured
 from imgcover.scale.rule_area import rule_corners
 from imgcover.scale.rule_band import follow_row
 from imgcover.scale.rule_class import RuleClass, rule_u
+from imgcover.scale.rule_digits import numbered_otherwise
 from imgcover.scale.rule_fit import fit_row
 from imgcover.scale.rule_hierarchy import Graduation, bend_of
 from imgcover.scale.rule_levels import Level, Pictured, levels_of
@@ -37,6 +38,8 @@ LARGEST_SCATTER = 0.06
 LARGEST_CHANGE = 0.08
 """Relative change of scale over the frame up to which a tilt is corrected; beyond, refused. Up to
 here the correction was seen right to a hundredth of the change (tests/scale/sweep_rule.py)."""
+HALF_WIDTH_MM = 8.0
+"""Of a tape, whose middle keeps its length when it is bent in its plane and whose edge does not."""
 LARGEST_U = 0.002
 """Relative standard uncertainty of fit and tilt beyond which a reading is not given: with more, not
 the rule (0.3 % over 100 mm in class II) but the picture would decide."""
@@ -173,7 +176,7 @@ def _rows_on(level: Level, unit: Unit, *, quiet: bool) -> list[tuple[Row, Proof]
                 row, proof = _as_it_is(level, row, unit)
             if proof is None:
                 continue
-            if proof.graduations and goes_on(tone, row):
+            if proof.graduations and (goes_on(tone, row) or _other_period(level.tone, row, proof)):
                 proof = Proof((), proof.pattern)
             if proof.proven:
                 # half-millimetre lines hide the foot of the millimetres that a seed beyond found
@@ -183,6 +186,11 @@ def _rows_on(level: Level, unit: Unit, *, quiet: bool) -> list[tuple[Row, Proof]
             if proof.graduations:
                 break
     return kept
+
+
+def _other_period(tone: NDArray[np.float32], row: Row, proof: Proof) -> bool:
+    """Whether digits tell that a period which could be doubled is."""
+    return proof.pattern.steps not in UNMISTAKABLE and numbered_otherwise(tone, row, proof.pattern)
 
 
 def _beyond_doubt(proof: Proof, row: Row) -> bool:
@@ -235,8 +243,9 @@ def _read(
     comb, graduation = fitted.comb, proof.graduations[0]
     if comb.scatter > LARGEST_SCATTER * comb.pitch:
         return "its lines stray from equal distances: it is bent, or not flat on the cloth"
-    bend = bend_of(row, proof.pattern) * finest.factor / level.factor
-    view = view_of(fitted, finest.tone.shape, bend=bend)
+    bend = bend_of(row, proof.pattern).finer(level.factor / finest.factor)
+    half_width = HALF_WIDTH_MM * comb.pitch / graduation.step_mm
+    view = view_of(fitted, finest.tone.shape, bend=bend, half_width=half_width)
     if view.change > LARGEST_CHANGE:
         return "it lies too much aslant to the camera"
     middle = np.array([picture.columns - 1, picture.rows - 1]) / 2
@@ -284,6 +293,8 @@ def _agree(readings: list[RuleReading], refused: list[str]) -> RuleSearch:
             )
         return RuleSearch((), (), (found(Flag.NO_RULE_FOUND),))
     if not proven:
+        proven = _in_common(open_ones)
+    if not proven:
         return _open(open_ones, areas)
     for each in open_ones:
         proven += [
@@ -297,6 +308,24 @@ def _agree(readings: list[RuleReading], refused: list[str]) -> RuleSearch:
         return RuleSearch((), areas, (found(Flag.RULE_REFUSED, message),))
     proven.sort(key=lambda each: each.px_per_mm.u / each.px_per_mm.value)
     return RuleSearch(tuple(proven), areas, ())
+
+
+def _in_common(readings: list[RuleReading]) -> list[RuleReading]:
+    """Return how open rows read when only one scale of the picture fits them all, or nothing.
+
+    Of millimetres beside tenths of an inch each can be the other, but both together only once.
+    """
+    first, *others = readings
+    fitting = []
+    for graduation in first.graduations:
+        read = first.read_as(graduation)
+        beside = [
+            [each.read_as(other) for other in each.graduations if _near(each.read_as(other), read)]
+            for each in others
+        ]
+        if others and all(beside):
+            fitting.append([read, *(each[0] for each in beside)])
+    return fitting[0] if len(fitting) == 1 else []
 
 
 def _open(readings: list[RuleReading], areas: tuple[NDArray[np.float64], ...]) -> RuleSearch:

@@ -17,7 +17,8 @@ from itertools import pairwise
 import numpy as np
 from numpy.typing import NDArray
 
-from imgcover.scale.rule_lines import Row, pitch_scatter
+from imgcover.scale.rule_lines import Row
+from imgcover.scale.rule_reach import pitch_scatter
 
 INCH_MM = 25.4
 
@@ -76,6 +77,9 @@ BEND_SEEN = 4.0
 """Standard uncertainties of a bend that stands out from how unevenly lines end."""
 LEAST_SAG = 0.45
 """Pixels by which both outer thirds must lie off the middle one: ends are told to whole pixels."""
+U_ENDS = 0.3
+"""Pixels by which a row's middle may seem to sag since ends are told to whole pixels: a uniform
+error of one pixel has this standard deviation, and neighbours share it."""
 A_LEVEL = 4.0
 """Cost of one more length: near half the logarithm of the number of lines, twice (BIC)."""
 
@@ -128,25 +132,41 @@ def misfit(row: Row, pattern_lengths: NDArray[np.float64]) -> NDArray[np.float64
     return np.asarray(np.abs(ends - pattern_lengths).min(axis=0))
 
 
-def bend_of(row: Row, pattern: Pattern) -> float:
-    """Return how strongly the ends of a row's shortest lines bend, 1 over the radius in pixels.
+@dataclass(frozen=True, slots=True)
+class Bend:
+    """How strongly a row's ends bend, 1 over the radius in pixels, with its u; signed as the pitch
+    grows up the lines of such a row. `plain` where it stands out, cut lines set aside."""
 
-    No tilt bends a straight row; a bent tape or a lens does. 0 where it does not stand out.
+    value: float
+    u: float
+    plain: bool
+
+    def finer(self, ratio: float) -> Bend:
+        """Return the same in pixels `ratio` times finer."""
+        return Bend(self.value / ratio, self.u / ratio, self.plain)
+
+
+def bend_of(row: Row, pattern: Pattern) -> Bend:
+    """Fit how the ends of a row's shortest lines bend.
+
+    No tilt bends a straight row; a bent tape or a lens does.
     """
     shortest = levels(row.numbers - pattern.phase, pattern.steps) == 0
     kept = shortest & (np.abs(row.reach / row.pitch - pattern.lengths[0]) < 1.0)
+    if kept.sum() < 8:
+        return Bend(0.0, math.inf, False)
     along = (row.numbers[kept] - row.numbers[kept].mean()) * row.pitch
     square = along**2
     design = np.stack([np.ones_like(along), along, square - square.mean()], axis=1)
-    if kept.sum() < 8:
-        return 0.0
     terms, *_ = np.linalg.lstsq(design, row.reach[kept], rcond=None)
     rest = row.reach[kept] - design @ terms
     u = math.sqrt((rest**2).sum() / (kept.sum() - 3) / (design[:, 2] ** 2).sum())
     first, middle, last = (float(np.median(p)) for p in np.array_split(row.reach[kept], 3))
     # lines cut short at one end of a row are no bend
     sag = min(abs(first - middle), abs(last - middle)) if (first > middle) == (last > middle) else 0
-    return 2 * abs(float(terms[2])) if sag > LEAST_SAG and abs(terms[2]) > BEND_SEEN * u else 0.0
+    plain = sag > LEAST_SAG and abs(terms[2]) > BEND_SEEN * u
+    u_ends = U_ENDS / float(np.abs(along).max()) ** 2
+    return Bend(2 * float(terms[2]), 2 * math.hypot(u, u_ends), plain)
 
 
 def _crowded(reach: NDArray[np.float64], scatter: float) -> bool:
@@ -169,9 +189,9 @@ def _best_phase(
     reach, scatter = row.reach / row.pitch, usual_scatter(row)
     # worn lines have to be seen by what is left of them, others end sooner than their blur
     for ends, phase in (
-        (ends, phase)
-        for ends in (reach, row.faint / row.pitch)
-        for phase in _likely_phases(row.numbers, ends, steps)
+        (each, phase)
+        for each in (reach, row.faint / row.pitch)
+        for phase in _likely_phases(row.numbers, each, steps)
     ):
         level = levels(row.numbers - phase, steps)
         lengths = [_middle(ends[level == i]) for i in range(len(steps))]
@@ -222,6 +242,7 @@ def levels(numbers: NDArray[np.int_], steps: tuple[int, ...]) -> NDArray[np.int_
 __all__ = [
     "INCH_MM",
     "LOST",
+    "Bend",
     "Graduation",
     "Pattern",
     "bend_of",

@@ -10,18 +10,21 @@ from dataclasses import dataclass, fields, replace
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.ndimage import gaussian_filter1d, median_filter
+from scipy.ndimage import median_filter
 
 from imgcover.scale.rule_frame import Frame, run_around
+from imgcover.scale.rule_reach import (
+    faint_reach,
+    pitch_scatter,
+    reach_of,
+    trend_of,
+    wide_ends,
+)
 
 LONGEST_LINE = 30
 """Pitches: an inch line on a 1/64 inch rule reaches 25."""
 BEYOND_FOOT = 8.0
 """Pitches: longer than the shortest lines of any scale that stands foot to foot with another."""
-BESIDE = (0.22, 0.3)
-"""Pitches from a line's middle where its own ink, blurred, hardly reaches and a digit's does."""
-BEFORE_END = 0.5
-"""Pitches before its end over which a line is looked at for ink beside it."""
 CLEAR_GAP = 0.14
 """Pitches of full gap, halved: a line's ink may be broken by less, digits stand off by more."""
 LOOKED_AT = 48
@@ -29,11 +32,6 @@ LOOKED_AT = 48
 LEAST_TOGETHER, TOGETHER = 0.3, 6.0
 """Of these the share that must end within so many scatters: half are of one length in every
 pattern, wear takes some."""
-FAINTEST = 0.15
-"""Of a line's contrast at its foot: what is left where wear has taken nearly all of it."""
-SEEN = 3.0
-"""Times the distance of the twentieth from the quarter of the contrasts (about one standard
-deviation where most lines have ended) above which a line is seen to go on."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -87,13 +85,13 @@ def lay_lines(
     None where lines do not stand against their gaps, or do not end as lines do.
     """
     pitch = float(np.median(np.diff(positions)))
-    for first_time in (True, False):
-        t = _heights(zone, pitch)
-        if first_time:
-            nearest = np.sort(np.argsort(np.abs(positions), kind="stable")[:LOOKED_AT])
-            seen = _contrast(tone, frame, positions[nearest], t, pitch, light)
-            if not _may_be_lines(seen, t, pitch, zone):
-                return None
+    nearest = np.sort(np.argsort(np.abs(positions), kind="stable")[:LOOKED_AT])
+    t = _heights(zone, pitch)
+    seen = _contrast(tone, frame, positions[nearest], t, pitch, light)
+    if not _may_be_lines(seen, t, pitch, zone):
+        return None
+    for _ in range(2):
+        t = np.arange(np.floor(zone[0] - 3 * pitch), zone[1] + 3 * pitch)
         contrast = _contrast(tone, frame, positions, t, pitch, light)
         usual = _usual(contrast, t, zone)
         if usual is None:
@@ -132,27 +130,30 @@ def measure_lines(
         return None
     strength, foot, top = usual
     zone = (foot, top)
-    reach, beyond, tip = _reach(contrast, strength, t, foot=foot, top=top, clear=clear)
-    faint, faint_tip = _faint(contrast, strength, t, foot=foot, top=top, clear=clear)
+    reach, beyond, tip = reach_of(contrast, strength, t, foot=foot, top=top, clear=clear)
+    if not _crowded(reach / pitch, pitch):
+        return None
+    faint, faint_tip = faint_reach(contrast, strength, t, foot=foot, top=top, clear=clear)
     faint = np.maximum(faint, reach)
     wide = np.maximum(
-        *(_wide(tone, frame, positions, t, pitch, strength, end, zone) for end in (reach, faint))
+        *(wide_ends(tone, frame, positions, t, pitch, strength, e, zone) for e in (reach, faint))
     )
     local = median_filter(strength, 15, mode="nearest")
+    feet = foot + trend_of(reach, positions, pitch)
     return Row(
-        frame=frame.moved(0.0, foot),
+        frame=frame.moved(0.0, zone[0]),
         pitch=pitch,
         numbers=numbers,
         positions=positions,
-        reach=reach - foot,
-        beyond=beyond - foot,
-        faint=faint - foot,
+        reach=reach - feet,
+        beyond=beyond - feet,
+        faint=faint - feet,
         tip=tip,
         faint_tip=faint_tip,
         wide=wide,
         strength=strength / np.maximum(local, 1e-6),
         light=light,
-        zone=top - foot,
+        zone=zone[1] - zone[0],
     )
 
 
@@ -168,15 +169,16 @@ def _may_be_lines(
         return False
     strength, foot, top = usual
     clear = max(1.2, CLEAR_GAP * pitch)
-    reach = np.sort(_reach(contrast, strength, t, foot=foot, top=top, clear=clear)[0]) / pitch
-    together = max(2, int(LEAST_TOGETHER * len(reach)))
-    least = (reach[together - 1 :] - reach[: len(reach) - together + 1]).min()
-    return bool(least < TOGETHER * pitch_scatter(pitch) < reach[-2] - reach[0])
+    reach = reach_of(contrast, strength, t, foot=foot, top=top, clear=clear)[0]
+    return _crowded(reach / pitch, pitch)
 
 
-def pitch_scatter(pitch: float) -> float:
-    """Return how far, in pitches, a line's measured end strays: never less than a pixel or so."""
-    return max(0.12, 0.8 / pitch)
+def _crowded(reach: NDArray[np.float64], pitch: float) -> bool:
+    """Whether lines, their reach in pitches, crowd at one length and some are longer."""
+    ordered = np.sort(reach)
+    together = max(2, int(LEAST_TOGETHER * len(ordered)))
+    least = (ordered[together - 1 :] - ordered[: len(ordered) - together + 1]).min()
+    return bool(least < TOGETHER * pitch_scatter(pitch) < ordered[-2] - ordered[0])
 
 
 def goes_on(tone: NDArray[np.float32], row: Row) -> bool:
@@ -237,95 +239,6 @@ def _part(values: NDArray[np.float64], inner: int, outer: int, level: float) -> 
     return float((values[inner] - level) / (values[inner] - values[outer]))
 
 
-def _reach(
-    contrast: NDArray[np.float64],
-    strength: NDArray[np.float64],
-    t: NDArray[np.float64],
-    *,
-    foot: float,
-    top: float,
-    clear: float,
-) -> tuple[NDArray[np.float64], NDArray[np.float64], NDArray[np.float64]]:
-    """Return where each line ends: where the sum of contrast over half is largest.
-
-    First with lines ended by their first clear gap, then with gaps bridged; last how strong each
-    is just before its end: a line that ends is, one that fades away is not.
-    """
-    # its own contrast, for wear goes line by line; but noise must not become a line
-    usual = np.maximum(strength, 0.3 * median_filter(strength, 9, mode="nearest"))[:, None]
-    usual = np.maximum(usual, 0.2 * np.median(strength))
-    start = int(np.searchsorted(t, (foot + top) / 2))
-    relative = np.clip(contrast[:, start:] / usual, -0.5, 1.5)
-    above = np.cumsum(relative - 0.5, axis=1)
-    # a digit over a line's end must not lengthen it, dust on a line not shorten it: which of the
-    # two a gap is, the pattern of all lines decides
-    fallen = np.maximum.accumulate(above, axis=1) - above > clear
-    ended = np.maximum.accumulate(fallen, axis=1)
-    first = np.argmax(np.where(ended, -np.inf, above), axis=1)
-    before = first[:, None] - np.arange(1, 4)
-    tip = np.take_along_axis(relative, np.maximum(before, 0), axis=1).mean(axis=1)
-    return t[start] + first + 0.5, t[start] + np.argmax(above, axis=1) + 0.5, tip
-
-
-def _faint(
-    contrast: NDArray[np.float64],
-    strength: NDArray[np.float64],
-    t: NDArray[np.float64],
-    *,
-    foot: float,
-    top: float,
-    clear: float,
-) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
-    """Return how far a worn line shows against what no line reaches, and how strong its end is.
-
-    At each height the lines that do not come so far, a quarter of all and more, tell how far a
-    contrast strays where there is none.
-    """
-    usual = np.maximum(strength, 0.2 * np.median(strength))[:, None]
-    start = int(np.searchsorted(t, (foot + top) / 2))
-    low, quarter = np.quantile(contrast[:, start:], (0.05, 0.25), axis=0)
-    level = quarter + SEEN * gaussian_filter1d(quarter - low, clear, mode="nearest")
-    level = np.clip(level, FAINTEST * usual, usual / 2)
-    relative = np.clip(contrast[:, start:] / usual, -0.5, 1.5)
-    above = np.cumsum(relative - level / usual, axis=1)
-    fallen = np.maximum.accumulate(above, axis=1) - above > FAINTEST * clear
-    ended = np.maximum.accumulate(fallen, axis=1)
-    end = np.argmax(np.where(ended, -np.inf, above), axis=1)
-    last, before = (
-        np.take_along_axis(relative, np.maximum(end[:, None] - np.arange(*part), 0), axis=1)
-        for part in ((1, 4), (4, 12))
-    )
-    return t[start] + end + 0.5, last.mean(axis=1) / np.maximum(before.mean(axis=1), FAINTEST)
-
-
-def _wide(
-    tone: NDArray[np.float32],
-    frame: Frame,
-    positions: NDArray[np.float64],
-    t: NDArray[np.float64],
-    pitch: float,
-    strength: NDArray[np.float64],
-    reach: NDArray[np.float64],
-    zone: tuple[float, float],
-) -> NDArray[np.float64]:
-    """Return how much ink stands on both sides of each line's end: a digit's does, a line's not."""
-    gap = [frame.sample(tone, positions + d * pitch, t) for d in (-0.5, 0.5)]
-    ground = ((gap[0] + gap[1]) / 2).T
-    before = (t > (reach - max(BEFORE_END * pitch, 4.0))[:, None]) & (t < reach[:, None])
-    at_foot = np.broadcast_to((t >= zone[0]) & (t <= zone[1]), before.shape)
-    sides = []
-    for side in (-1, 1):
-        beside = [frame.sample(tone, positions + side * d * pitch, t) for d in BESIDE]
-        ink = np.abs((beside[0] + beside[1]).T / 2 - ground)
-        end, foot = (
-            (ink * where).sum(axis=1) / np.maximum(where.sum(axis=1), 1)
-            for where in (before, at_foot)
-        )
-        sides.append(end - np.median(foot))
-    usual = np.maximum(strength, 0.3 * np.median(strength))
-    return np.asarray(np.minimum(*sides) / usual, dtype=np.float64)
-
-
 def _lean(
     positions: NDArray[np.float64],
     contrast: NDArray[np.float64],
@@ -344,4 +257,4 @@ def _lean(
     return float(np.median(slope / length)) if len(slope) else 0.0
 
 
-__all__ = ["LONGEST_LINE", "Row", "goes_on", "lay_lines", "measure_lines", "pitch_scatter"]
+__all__ = ["LONGEST_LINE", "Row", "goes_on", "lay_lines", "measure_lines"]

@@ -147,13 +147,15 @@ def prove(row: Row, unit: str) -> Proof | None:
 
 
 def _without_false_ends(row: Row, pattern: Pattern) -> Row:
-    """Leave out the outermost lines that end nowhere near their level's length.
+    """Leave out the outermost lines that end a pitch and more from their level's length.
 
     A row is followed a line too far where the rule ends or the frame cuts it; such a line tells
     nothing of the scale. Longest lines still have to recur among the others.
     """
     level = levels(row.numbers - pattern.phase, pattern.steps)
-    off = misfit(row, np.array(pattern.lengths)[level]) >= LOST * usual_scatter(row)
+    off = misfit(row, np.array(pattern.lengths)[level]) >= max(1.0, LOST * usual_scatter(row))
+    # a line with clear gaps beside it is one, and may be longer for a reason
+    off &= row.wide > WIDE_TIP
     first = int(np.argmin(off[: FALSE_ENDS + 1])) if off[0] else 0
     last = int(np.argmin(off[::-1][: FALSE_ENDS + 1])) if off[-1] else 0
     return row.part(first, len(off) - last) if first or last else row
@@ -279,8 +281,7 @@ def _fifths_longer(pattern: Pattern, row: Row, bound: float) -> bool:
     """
     steps = (row.numbers - pattern.phase) / pattern.steps[-1]
     longest, digit = steps % 1 == 0, row.wide > WIDE_TIP
-    reach = row.reach / row.pitch
-    for turn in range(5):
+    for reach, turn in ((end / row.pitch, n) for end in (row.reach, row.faint) for n in range(5)):
         fifth = longest & (steps % 5 == turn)
         rest = reach[longest & ~fifth]
         if fifth.sum() < 2 or len(rest) < 4:

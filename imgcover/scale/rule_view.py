@@ -15,12 +15,15 @@ from numpy.typing import NDArray
 
 from imgcover.scale.rule_fit import FittedRow
 from imgcover.scale.rule_frame import Frame
+from imgcover.scale.rule_hierarchy import Bend
 
 USUAL_LEAN = 0.02
 """Standard deviation of the tilt of a camera held level, in each direction, over the longer side
 of the picture: a degree and a half behind a lens as long as the picture is wide."""
 ACROSS_ONLY = 0.1
 """Share of cameras that lean across the row alone: of these the row's length says nothing."""
+STRAIGHTER = 9.0
+"""By how much the squared misfit of a bent row must exceed a straight one's: three of their u."""
 U_BENT = 0.005
 """Of the change over the frame: what a rule that is not quite flat, or a lens that bends, adds."""
 
@@ -81,7 +84,7 @@ class View:
         return pitch, relative
 
 
-def view_of(fitted: FittedRow, size: tuple[int, int], *, bend: float = 0.0) -> View:
+def view_of(fitted: FittedRow, size: tuple[int, int], *, bend: Bend, half_width: float) -> View:
     """Judge from a row whether the picture was taken aslant, and how much.
 
     Parameters
@@ -89,8 +92,10 @@ def view_of(fitted: FittedRow, size: tuple[int, int], *, bend: float = 0.0) -> V
     fitted : FittedRow
     size : (int, int)
         Rows and columns of the level.
-    bend : float
-        Of the row, 1 over its radius in pixels (`rule_hierarchy.bend_of`).
+    bend : Bend
+        Of the row's ends, in pixels of the level (`rule_hierarchy.bend_of`).
+    half_width : float
+        How far from the lines, in pixels, a bent rule may have kept its length.
 
     Returns
     -------
@@ -101,9 +106,11 @@ def view_of(fitted: FittedRow, size: tuple[int, int], *, bend: float = 0.0) -> V
     Held against each other are a scanner, which has no tilt, and a camera, whose tilt is normal
     about none with `USUAL_LEAN`, as likely beforehand. Where the scanner stays the likelier, the
     tilt that the camera would have had is left to the uncertainty, by the camera's share. A row
-    that does not tell foot from tip (infinite u) leaves the usual tilt. On a bent row foot and tip
-    differ by the bend as well, and nothing tells how it goes on beside the row: all of it is left
-    to the uncertainty.
+    that does not tell foot from tip (infinite u) leaves the usual tilt. On a row bent in its plane
+    the pitch grows from foot to tip by just its curvature, as it does under a tilt; a tilt leaves
+    the row straight. Where the ends do not say that it is straight, what foot and tip differ by is
+    left to the uncertainty: nothing tells how it goes on beside the row, nor where across a bent
+    rule the graduations kept their distance.
     """
     comb = fitted.comb
     usual = USUAL_LEAN / max(size)
@@ -124,21 +131,33 @@ def view_of(fitted: FittedRow, size: tuple[int, int], *, bend: float = 0.0) -> V
     else:
         along = across = 0.0
         u_along, u_across = (math.sqrt(share) * math.hypot(*each) for each in leans)
-    if bend:
-        u_across = math.hypot(u_across, fitted.across, bend)
+    u_pitch = comb.u_pitch
+    curved = abs(bend.value) if bend.plain else 0.0
+    if share > 0.5 and not _straight(bend, *terms[1]):
+        curved = max(curved, abs(fitted.across))
+    if curved:
+        u_across = math.hypot(u_across, fitted.across, curved)
         across = 0.0
+        u_pitch = math.hypot(u_pitch, comb.pitch * curved * half_width)
     return View(
         fitted.frame,
         comb.origin,
         fitted.height,
         comb.pitch,
-        comb.u_pitch,
+        u_pitch,
         along,
         across,
         u_along,
         u_across,
         math.hypot(*size),
     )
+
+
+def _straight(bend: Bend, across: float, u_across: float) -> bool:
+    """Whether the ends of a row whose foot and tip differ speak for straight against bent."""
+    straight = (bend.value / bend.u) ** 2
+    bent = (bend.value - across) ** 2 / (bend.u**2 + u_across**2)
+    return straight + STRAIGHTER < bent
 
 
 __all__ = ["View", "view_of"]

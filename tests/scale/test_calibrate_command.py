@@ -103,6 +103,18 @@ def test_a_copy_read_by_the_original_is_refused(
     assert not path.exists()
 
 
+def test_a_copy_at_99_per_cent_is_refused(
+    scans: Path, tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    """Truth is theory: bars that put both axes 1 % below 4 px/mm are a copier's doing; those that
+    put one axis there may be a carriage's, and are worth a word."""
+    path = tmp_path / "x.toml"
+    for x, y, ending in ((3.96, 3.96, ExitCode.UNDECIDED), (4.0, 3.96, ExitCode.CONFORMS)):
+        bars = f"{BAR_A_MM * STRETCH[0] * X / x:.3f},{BAR_B_MM * STRETCH[1] * Y / y:.3f}"
+        assert called("read", str(scans / "a.png"), "--bars", bars, "-o", str(path)) == ending
+        assert "copy" in capsys.readouterr().err
+
+
 def test_the_same_scan_twice_is_no_repeat(scans: Path) -> None:
     """Truth is theory: a file proves nothing about another scan."""
     name = str(scans / "a.png")

@@ -11,11 +11,20 @@ from numpy.typing import NDArray
 from imgcover.repeat.comb import fit_comb
 from imgcover.scale.rule_fit import FittedRow
 from imgcover.scale.rule_frame import Frame
-from imgcover.scale.rule_hierarchy import Graduation, Pattern, bend_of
+from imgcover.scale.rule_hierarchy import Bend, Graduation, Pattern, bend_of
 from imgcover.scale.rule_lines import Row
-from imgcover.scale.rule_view import View, view_of
+from imgcover.scale.rule_view import View
+from imgcover.scale.rule_view import view_of as view_with
 
 SIZE = (1000, 1400)
+STRAIGHT = Bend(0.0, 1e-6, plain=False)
+HALF_WIDTH = 80.0
+
+
+def view_of(fitted: FittedRow, size: tuple[int, int], bend: Bend = STRAIGHT) -> View:
+    """A row whose ends say that it is straight, if nothing else is said."""
+    return view_with(fitted, size, bend=bend, half_width=HALF_WIDTH)
+
 PITCH, LINES = 10.0, 101
 FOOT = np.array([200.0, 150.0])
 
@@ -91,14 +100,19 @@ def test_what_a_poor_row_cannot_see_is_left_uncertain() -> None:
     assert u_at(blind, 950.0) > u_at(sure, 950.0)
 
 
-def test_a_bent_row_says_nothing_of_what_lies_beside_it() -> None:
+@pytest.mark.parametrize("bend", [(2e-5, 2e-6, True), (2e-5, 8e-6, False), (0.0, 3e-5, False)])
+def test_a_bent_row_says_nothing_of_what_lies_beside_it(bend: tuple[float, float, bool]) -> None:
     """Truth is theory: on a bend of radius R the pitch grows by 1/R a pixel from foot to tip, as
-    under a tilt; beside the row it may go on so or not."""
+    under a tilt; beside the row it may go on so or not, and where across the rule it kept its
+    length is not known. So it is where the ends cannot tell bent from straight."""
     fitted = row((0.0, 2e-5), noise=0.02)
-    view = view_of(fitted, SIZE, bend=2e-5)
+    value, u, plain = bend
+    view = view_of(fitted, SIZE, Bend(math.copysign(value, fitted.across), u, plain))
     beside, far = (view.pitch_at(np.array([200.0, y])) for y in (180.0, 950.0))
     assert far[0] == pytest.approx(beside[0], rel=1e-6)
-    assert far[1] == pytest.approx(770 * math.hypot(2e-5, 2e-5), rel=0.1)
+    least = math.hypot(770, HALF_WIDTH) * 2e-5
+    assert least * 0.9 < far[1] < 1.6 * least
+    assert beside[1] == pytest.approx(HALF_WIDTH * 2e-5, rel=0.15)
 
 
 def test_a_bend_is_seen_in_the_lines_ends() -> None:
@@ -116,11 +130,15 @@ def test_a_bend_is_seen_in_the_lines_ends() -> None:
             numbers * PITCH,
             ends,
             ends,
+            ends,
             tip=np.ones(100),
+            faint_tip=np.ones(100),
             wide=np.zeros(100),
             strength=np.ones(100),
             light=False,
             zone=30.0,
         )
         pattern = Pattern((1, 5), (Graduation.MM,), 0, (float(np.median(ends)) / PITCH, 5.0), 0, 1)
-        assert bend_of(held, pattern) == pytest.approx(seen_bend, rel=0.15)
+        bend = bend_of(held, pattern)
+        assert bend.value == pytest.approx(seen_bend, rel=0.15, abs=3 * bend.u)
+        assert bend.plain == (seen_bend > 0)
