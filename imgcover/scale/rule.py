@@ -26,8 +26,9 @@ from imgcover.scale.rule_fit import fit_row
 from imgcover.scale.rule_hierarchy import Graduation, bend_of
 from imgcover.scale.rule_levels import Level, Pictured, levels_of
 from imgcover.scale.rule_lines import Row, goes_on, measure_lines
-from imgcover.scale.rule_proof import BEYOND_CHANCE, UNMISTAKABLE, Proof, evidence, prove
+from imgcover.scale.rule_proof import BEYOND_CHANCE, Proof, evidence, prove
 from imgcover.scale.rule_quiet import quieten
+from imgcover.scale.rule_recurrence import UNMISTAKABLE
 from imgcover.scale.rule_seeds import Seed, even_out, find_seeds
 from imgcover.scale.rule_view import View, view_of
 
@@ -293,7 +294,7 @@ def _agree(readings: list[RuleReading], refused: list[str]) -> RuleSearch:
             )
         return RuleSearch((), (), (found(Flag.NO_RULE_FOUND),))
     if not proven:
-        proven = _in_common(open_ones)
+        proven = in_common(open_ones)
     if not proven:
         return _open(open_ones, areas)
     for each in open_ones:
@@ -310,7 +311,7 @@ def _agree(readings: list[RuleReading], refused: list[str]) -> RuleSearch:
     return RuleSearch(tuple(proven), areas, ())
 
 
-def _in_common(readings: list[RuleReading]) -> list[RuleReading]:
+def in_common(readings: list[RuleReading]) -> list[RuleReading]:
     """Return how open rows read when only one scale of the picture fits them all, or nothing.
 
     Of millimetres beside tenths of an inch each can be the other, but both together only once.
@@ -346,4 +347,4 @@ def _said(reading: RuleReading) -> str:
     return f"{reading.graduations[0]} lines at {value:.4g} px/mm"
 
 
-__all__ = ["RuleReading", "RuleSearch", "Unit", "find_rules"]
+__all__ = ["RuleReading", "RuleSearch", "Unit", "find_rules", "in_common"]

@@ -54,9 +54,11 @@ def test_a_tilted_picture_is_read_where_the_cloth_is() -> None:
     assert scale.x.value == pytest.approx(truth, rel=0.003)
 
 
-def test_a_clear_rule_is_read_with_the_cloth_pressed_down() -> None:
-    """Truth is drawn: clear plastic on cloth whose threads stand as close as the lines."""
-    case = rule_case(128)
+@pytest.mark.parametrize("seed", [128, 133])
+def test_a_clear_rule_is_read_with_the_cloth_pressed_down(seed: int) -> None:
+    """Truth is drawn: clear plastic on cloth whose threads stand as close as the lines; lines as
+    wide as their gaps, of which only the order of lengths tells which are the lines."""
+    case = rule_case(seed)
     found = find_rules(Held(case.light))
     assert case.px_per_mm is not None
     assert found.readings[0].px_per_mm.value == pytest.approx(case.px_per_mm, rel=5e-4)
@@ -86,6 +88,13 @@ def test_other_divisions_are_refused(seed: int) -> None:
     once taken for sixteenths; fiftieths of an inch, once taken for millimetres."""
     found = find_rules(Held(harsh_case(seed).light))
     assert not found.readings
+
+
+def test_a_tape_bent_in_its_plane_is_refused() -> None:
+    """Truth is drawn: a tape whose middle lies 1.2 mm off, its ends cut unevenly by the frame; once
+    corrected as a tilt, and off by 0.5 %."""
+    found = find_rules(Held(harsh_case(15003).light))
+    assert not found.readings and has(found.findings, Flag.RULE_REFUSED)
 
 
 def test_squared_paper_in_inches_is_no_millimetre_rule() -> None:

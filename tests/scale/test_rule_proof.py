@@ -79,6 +79,41 @@ def test_an_inch_scale_with_one_inch_line_stays_open() -> None:
     assert {Graduation.SIXTEENTH_INCH, Graduation.THIRTYSECOND_INCH} <= set(proof.graduations)
 
 
+def test_one_inch_line_between_its_halves_is_enough_of_sixty_fourths() -> None:
+    """Truth is theory: six lengths on both sides of a seventh are all that a binary scale has; the
+    halves exclude half the period, and no scale has twice as many."""
+    whole = prove(row(heights(Division.SIXTYFOURTH, 90, start=20)), "auto")
+    assert whole is not None and whole.graduations == (Graduation.SIXTYFOURTH_INCH,)
+    one_half = prove(row(heights(Division.SIXTYFOURTH, 60, start=50)), "auto")
+    assert one_half is None or not one_half.proven
+
+
+def test_lines_that_fade_are_told_by_what_is_left_of_them() -> None:
+    """Truth is drawn: thirty-seconds of an inch; every second inch line is half as strong from
+    where the quarters end, and shows faintly to its end, all others are whole."""
+    whole = row(heights(Division.THIRTYSECOND, 140))
+    worn = (whole.numbers + 3) % 64 == 0
+    reach = np.where(worn, 6.0 * PITCH, whole.reach)
+    faded = replace(whole, reach=reach, beyond=reach, tip=np.where(worn, 0.5, 1.0))
+    proof = prove(faded, "auto")
+    assert proof is not None and proof.graduations == (Graduation.THIRTYSECOND_INCH,)
+    unseen = prove(replace(faded, faint=reach), "auto")
+    assert unseen is None or not unseen.proven
+
+
+def test_a_line_too_many_at_the_end_is_left_out() -> None:
+    """Truth is drawn: a row followed onto the frame's edge, where ink stands on both sides; a line
+    with clear gaps beside it is one, and says that the period is another."""
+    lengths = heights(Division.SIXTEENTH, 62)
+    lengths[-1] = 20.0
+    edge = np.zeros(62)
+    edge[-1] = 1.0
+    proof = prove(replace(row(lengths), wide=edge), "auto")
+    assert proof is not None and proof.graduations == (Graduation.SIXTEENTH_INCH,)
+    clear = prove(row(lengths), "auto")
+    assert clear is None or not clear.proven
+
+
 def test_ten_lines_prove_nothing() -> None:
     """Truth is theory: a dozen lines with two longer ones come by chance too often."""
     assert prove(row(heights(Division.MM, 13, start=4)), "auto") is None

@@ -25,6 +25,7 @@ def view_of(fitted: FittedRow, size: tuple[int, int], bend: Bend = STRAIGHT) -> 
     """A row whose ends say that it is straight, if nothing else is said."""
     return view_with(fitted, size, bend=bend, half_width=HALF_WIDTH)
 
+
 PITCH, LINES = 10.0, 101
 FOOT = np.array([200.0, 150.0])
 
