@@ -46,6 +46,8 @@ if TYPE_CHECKING:
 SWAPPED_FROM = 5
 """From this orientation on, stored columns became shown rows (TIFF 6.0, tag 274)."""
 
+UNTOLD_STEP = 3.5
+"""Step of a format that drops what is faint without telling how much: that of quality 85."""
 
 ALWAYS_ASKED = ("imgcover.threads.reader", "imgcover.cover.reader")
 """Every picture that can be read comes to these rooms."""
@@ -235,6 +237,7 @@ def measure_cover(
         if taken is not None and taken.stored.shape[:2] != picture.stored.shape[:2]:
             return CoverReading(findings=(_other_size(taken, picture),))
     from imgcover.cover.reader import read_cover
+    from imgcover.picture.losses import step_of_losses
 
     lattice, warp_across = _lattice(threads)
     reading = read_cover(
@@ -246,7 +249,7 @@ def measure_cover(
         backing=options.backing,
         blank=blank,
         dark=dark,
-        lossy=picture.lossy,
+        loss_step=step_of_losses(picture.stored) or (UNTOLD_STEP if picture.lossy else 0.0),
     )
     return reading if warp_across else _exchanged(reading)
 

@@ -171,9 +171,9 @@ class Flag(Enum):
     COVER_ON_A_CARD = """warning: cover was measured on a card in reflected light; shadows widen
         its u
         → photograph the swatch on a light table for a better figure"""
-    COVER_FROM_LOSSY = """info: the file was stored with losses, which widen the uncertainty of the
-        cover
-        → store PNG or TIFF"""
+    COVER_FROM_LOSSY = """info: the picture is or was stored with losses, which widen the
+        uncertainty of the cover
+        → store PNG or TIFF from the start"""
     COVER_FROM_WINDOWS = """info: cover was measured in windows spread evenly over the field
         → nothing to do: its u holds how much the windows differ"""
     # cloth

@@ -64,9 +64,10 @@ WIRE, ANY_SECTION = 0.014, 3.0
 """Threads more even than the first are wires or tapes and no yarn (drawn wires show up to 0.012,
 drawn yarns 0.017 and more): they may be flat, three times as far from the section expected as
 yarns are, and what the picture cannot tell of it counts so many times more."""
-LOSSY_U, LOSSY_FINEST = 0.005, 0.004
-"""Cover from a file stored with losses is uncertain by the first, and its profiles are true to the
-second, a share of the light (24 cloths of 6 to 22 px stored as JPEG of quality 80 and 90)."""
+LOSSY_U, LOSSY_POWER, LOSSY_FINEST = 0.0006, 1.5, 0.004
+"""Cover from a file stored with losses is uncertain by the first times this power of its step in
+grey levels (0.2 points at JPEG quality 90, 0.5 at 85, 0.9 and refused at 75), and its profiles are
+true to the last, a share of the light (cloths of 6 to 22 px of the sweep's seed 61803, as JPEG)."""
 WINDOWS_FIRST = 6
 """Windows in which light, blur and yarns are first looked for: the light has six coefficients."""
 BLANK_U = 0.003
@@ -129,7 +130,7 @@ def by_openings(
     *,
     size: tuple[int, int],
     light_known: bool,
-    lossy: bool,
+    loss_step: float,
 ) -> CoverReading:
     """Measure the cover with the openings of the thread lattice.
 
@@ -144,8 +145,8 @@ def by_openings(
         Rows and columns of the picture.
     light_known : bool
         Whether light is given as a share of a blank exposure.
-    lossy : bool
-        Whether the picture was stored with losses.
+    loss_step : float
+        Grey levels to which a file stored with losses was rounded; 0 for none.
     """
     rows, columns = size
 
@@ -156,7 +157,7 @@ def by_openings(
             rows=rows,
             columns=columns,
             known_light_u=BLANK_U if light_known else None,
-            finest=LOSSY_FINEST if lossy else FINEST,
+            finest=LOSSY_FINEST if loss_step else FINEST,
         )
 
     # Light, blur and yarns are all but told by a few of the windows.
@@ -193,7 +194,7 @@ def by_openings(
         u_misfit=misfit,
         apart=apart,
         u_guessed=GUESSED * guessed,
-        u_lossy=LOSSY_U if lossy else 0.0,
+        u_lossy=LOSSY_U * loss_step**LOSSY_POWER,
     )
     if not witnessed.sure:
         return _not_resolved(reading, windows, witnessed, light_known)
@@ -300,10 +301,11 @@ def _not_resolved(
         clipped = witnessed.even and worst == witnessed.u_guessed
         why = Flag.COVER_CLIPPED if clipped else Flag.COVER_UNEVEN
         return replace(reading, upper_bound_open=bound, findings=(found(why),))
+    lossy = witnessed.u_lossy > LEAST_SURE / 2
+    cause = "it was stored with losses" if lossy else "the pores are too small for this picture"
     message = (
-        "optical cover was not measured: the pores are too small for this picture, its "
-        f"uncertainty would be {100 * witnessed.u:.1f} points; at most {100 * bound.value:.0f} % "
-        "of the field is open"
+        f"optical cover was not measured: {cause}, its uncertainty would be "
+        f"{100 * witnessed.u:.1f} points; at most {100 * bound.value:.0f} % of the field is open"
     )
     return replace(
         reading, upper_bound_open=bound, findings=(found(Flag.COVER_NOT_RESOLVED, message),)

@@ -31,7 +31,7 @@ def read_cover(
     backing: str | None = None,
     blank: Lit | NDArray[np.float32] | None = None,
     dark: Lit | NDArray[np.float32] | None = None,
-    lossy: bool = False,
+    loss_step: float = 0.0,
 ) -> CoverReading:
     """Measure the covered share of the field.
 
@@ -50,8 +50,9 @@ def read_cover(
         The card the cloth lies on in reflected light.
     blank, dark : Lit or ndarray, or None
         The same light without cloth, and the same exposure without light.
-    lossy : bool
-        Whether the picture was stored with losses, as JPEG.
+    loss_step : float
+        Grey levels to which the picture was rounded in blocks when it was stored with losses, as
+        JPEG (`imgcover.picture.losses`); 0 for none.
 
     Returns
     -------
@@ -77,7 +78,7 @@ def read_cover(
         places = pore_places(parts(windows, lattice), lattice)
         if len(places.row) >= FEWEST_PORES:
             return by_openings(
-                windows, places, lattice, pitch, size=size, light_known=known, lossy=lossy
+                windows, places, lattice, pitch, size=size, light_known=known, loss_step=loss_step
             )
     return by_levels(windows, lattice, size=size, light_known=known, backing=backing)
 
