@@ -36,7 +36,7 @@ LITTER = frozenset({"thumbs.db", "desktop.ini", "ehthumbs.db"})
 """What file browsers leave behind; names that begin with a dot are passed over too."""
 
 MOST_NAMED = 12
-"""Names of pictures that the lot sheet leaves out, in one sentence."""
+"""Names in one sentence, such as those of pictures that the lot sheet leaves out."""
 DEEPEST = 30
 """Folders inside folders; nobody files swatches deeper, and a trap is not followed for ever."""
 
@@ -115,16 +115,12 @@ class Listing:
         """What lies in the folder and was passed over."""
         said = []
         if self.strays:
-            names = ", ".join(self.strays)
             said.append(
                 f"sub-folders were taken for lots; not read, for a lot sheet is called"
-                f" {' or '.join(SHEET_NAMES)}: {names}"
+                f" {' or '.join(SHEET_NAMES)}: {some_of(self.strays)}"
             )
         if self.unlisted:
-            names = ", ".join(self.unlisted[:MOST_NAMED])
-            more = len(self.unlisted) - MOST_NAMED
-            left = f" and {more} more" if more > 0 else ""
-            said.append(f"in the folder but not in {self.sheet}: {names}{left}")
+            said.append(f"in the folder but not in {self.sheet}: {some_of(self.unlisted)}")
         return said
 
     def lots(self) -> dict[LotName, list[int]]:
@@ -133,6 +129,12 @@ class Listing:
         for index, picture in enumerate(self.pictures):
             lots.setdefault(LotName(picture.lot, picture.article), []).append(index)
         return lots
+
+
+def some_of(names: Sequence[str]) -> str:
+    """Name the first of many, and say how many more there are."""
+    more = f" and {len(names) - MOST_NAMED} more" if len(names) > MOST_NAMED else ""
+    return f"{', '.join(names[:MOST_NAMED])}{more}"
 
 
 def list_folder(folder: Path, *, articles: Path | None, left_out: Sequence[Path] = ()) -> Listing:
@@ -287,4 +289,4 @@ def _unicode(name: str) -> str:
     return os.fsencode(name).decode("utf-8", "backslashreplace")
 
 
-__all__ = ["Listed", "Listing", "LotName", "list_folder"]
+__all__ = ["Listed", "Listing", "LotName", "list_folder", "some_of"]

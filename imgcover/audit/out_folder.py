@@ -84,6 +84,10 @@ class OutFolder:
             finally:
                 beside.unlink(missing_ok=True)
 
+    def pages(self) -> list[str]:
+        """Name the lots' pages that are there, also those of lots that are no longer listed."""
+        return sorted(f"lots/{path.name}" for path in (self.root / "lots").glob("*.html"))
+
     def small(self, key: str) -> Path:
         """Where the small picture of a record lies."""
         return self.root / "small" / f"{key[:32]}.jpg"

@@ -10,7 +10,7 @@ from datetime import UTC, datetime
 from pathlib import Path
 from typing import Any
 
-from imgcover.audit.folder import LotName
+from imgcover.audit.folder import LotName, some_of
 from imgcover.audit.lots import Member, member, place_numbers, sum_lot
 from imgcover.audit.out_folder import page_name
 from imgcover.audit.outcome import Crew, Lost
@@ -187,6 +187,14 @@ def write_reports(
     return head
 
 
+def older_pages(round_: Round, lots: list[ToldLot]) -> list[str]:
+    """Say which pages of earlier audits still lie beside those of this one: they hold no more."""
+    names = sorted(set(round_.out.pages()) - {lot.page for lot in lots})
+    if not names:
+        return []
+    return [f"pages of earlier audits, not of this one: {some_of(names)}"]
+
+
 def made_page(order: PageOrder) -> str:
     """Write a lot's page; called in a worker, so that it costs the parent nothing."""
     return lot_page(order.record, order.glances, about=order.about)
@@ -271,7 +279,7 @@ def _page_order(round_: Round, lot: ToldLot, about: About) -> PageOrder:
 def _first_page(round_: Round, lots: list[ToldLot], about: About) -> str:
     lines = (LotLine(lot=lot.record(round_.ledger), units=lot.units, link=lot.page) for lot in lots)
     notes = [f"declaration {fault}" for fault in round_.book.faults]
-    notes += round_.listing.notes
+    notes += [*round_.listing.notes, *older_pages(round_, lots)]
     return index_page(
         lines,
         title=round_.folder,
@@ -286,4 +294,4 @@ def _now() -> str:
     return datetime.now(UTC).strftime("%Y-%m-%dT%H:%M:%SZ")
 
 
-__all__ = ["PageOrder", "ToldLot", "made_page", "sum_lots", "write_reports"]
+__all__ = ["PageOrder", "ToldLot", "made_page", "older_pages", "sum_lots", "write_reports"]

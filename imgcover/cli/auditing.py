@@ -20,7 +20,7 @@ from imgcover.audit.out_folder import OutFolder, holds_foreign_sheet
 from imgcover.audit.outcome import Crew
 from imgcover.audit.run import How, Round, Told, measure_all
 from imgcover.audit.settling import Settling, looks, signature
-from imgcover.audit.telling import ToldLot, sum_lots, write_reports
+from imgcover.audit.telling import ToldLot, older_pages, sum_lots, write_reports
 from imgcover.audit.work import measure_one
 from imgcover.cli.exits import ExitCode, gravest
 from imgcover.cli.measuring import code_of
@@ -172,7 +172,7 @@ class Audit:
         with opened(None, encoding=None) as write:
             for lot in lots:
                 write(headline(lot.record(round_.ledger), units=lot.units) + "\n")
-        for note in round_.listing.notes:
+        for note in (*round_.listing.notes, *older_pages(round_, lots)):
             tell(note)
         counts = {How.MEASURED: "measured", How.KNOWN: "known from before"}
         counts |= {How.UNREAD: "could not be read", How.LOST: "lost", How.REFUSED: "refused"}

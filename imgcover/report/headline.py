@@ -10,6 +10,10 @@ from imgcover.report.plain import columns, plain, shortened
 
 LONGEST_NAME = 30
 """Columns a picture's or lot's name may take of the first line."""
+LONGEST_WORD = 20
+"""Letters; a line that is longer without a space is not written in words."""
+MISSING = " not judged: "
+"""What the verdict writes between a quantity without a value and the reason."""
 Short = Callable[[Mapping[str, Any], Units], str]
 NAMES = {"ends": "ends", "picks": "picks", "cover": "cover", "mass": "mass"}
 
@@ -46,11 +50,12 @@ def _common_reason(record: Mapping[str, Any]) -> list[str]:
 
 
 def _cut(line: str, most: int) -> str:
-    """Cut a line where it would leave the terminal."""
+    """Cut a line before the word that would leave the terminal."""
     kept = line
     while columns(kept) > most - 1:
         kept = kept[:-1]
-    return kept.rstrip(" ,;") + "…"
+    whole, _, torn = kept.rpartition(" ")
+    return (whole if len(torn) <= LONGEST_WORD else kept).rstrip(" ,;:") + "…"
 
 
 def _name(record: Mapping[str, Any]) -> str:
@@ -69,6 +74,9 @@ def _decided(record: Mapping[str, Any], units: Units, short: Short) -> tuple[str
     deciding = [line for line in lines if line["decision"] == verdict["decision"]]
     if verdict["decision"] == "conforms":
         return "conforms", f"{_listed([NAMES[line['quantity']] for line in lines])} as declared"
+    if deciding and all(line["measured"] is None for line in lines):
+        missing = dict.fromkeys(line["reason"].partition(MISSING)[2] for line in deciding)
+        return str(verdict["decision"]), "; ".join(missing)
     said = [short(line, units) for line in deciding]
     return str(verdict["decision"]), "; ".join(said) or "nothing could be judged"
 

@@ -233,6 +233,20 @@ def test_reports_never_take_the_place_of_a_lot_sheet(tmp_path):
     assert not (goods / "ledger.sqlite").exists()
 
 
+def test_pages_of_lots_that_are_listed_no_more_are_told_and_kept(tmp_path, capsys):
+    goods, out = tmp_path / "goods", tmp_path / "out"
+    lay(goods, {"A": 1, "B": 1})
+    audit_inline(goods, out)
+    assert "earlier" not in capsys.readouterr().err
+    sheet = goods / "lots.csv"
+    sheet.write_text(sheet.read_text().replace(",B,", ",C,"))
+    audit_inline(goods, out)
+    said = "pages of earlier audits, not of this one: lots/B.html"
+    assert said in capsys.readouterr().err
+    assert said in (out / "report.html").read_text()
+    assert (out / "lots" / "B.html").exists()
+
+
 def test_reports_inside_the_goods_are_no_goods(tmp_path, capsys):
     goods = tmp_path / "goods"
     lay(goods, {"A": 1})

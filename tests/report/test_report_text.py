@@ -10,6 +10,7 @@ import unicodedata
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
+from lot_example import lot_record
 from report_records import per_cm, record, unreadable
 
 from imgcover.findings import Flag, found
@@ -72,6 +73,20 @@ def test_what_alone_keeps_a_lot_open_is_said_once() -> None:
     assert headline(held, units="cm", most=120) == (
         f"harrow-02.png undecided: {Flag.WARP_UNCERTAIN.message}"
     )
+
+
+def test_a_lot_of_which_nothing_could_be_judged_says_why() -> None:
+    """Truth is the contract: what cannot be measured says why, from the first line on."""
+    lot = lot_record("good")
+    why = "nothing says how many pixels make a millimetre"
+    for line in lot["lines"]:
+        line |= {"measured": None, "decision": "undecided"}
+        line["reason"] = f"{line['quantity']} not judged: {why}"
+    told = headline({**lot, "decision": "undecided"}, units="inch")
+    assert told == f"lot 4711 undecided: {why}"
+    lot["lines"][-1]["reason"] = "optical cover not judged: the light was not stated"
+    told = headline({**lot, "decision": "undecided"}, units="inch")
+    assert told == f"lot 4711 undecided: {why}; the light…"
 
 
 @pytest.mark.parametrize("declared", [True, False])
