@@ -74,7 +74,7 @@ def _decided(record: Mapping[str, Any], units: Units, short: Short) -> tuple[str
     deciding = [line for line in lines if line["decision"] == verdict["decision"]]
     if verdict["decision"] == "conforms":
         return "conforms", f"{_listed([NAMES[line['quantity']] for line in lines])} as declared"
-    if deciding and all(line["measured"] is None for line in lines):
+    if deciding and all(line["measured"] is None for line in deciding):
         missing = dict.fromkeys(line["reason"].partition(MISSING)[2] for line in deciding)
         return str(verdict["decision"]), "; ".join(missing)
     said = [short(line, units) for line in deciding]

@@ -87,6 +87,9 @@ def test_a_lot_of_which_nothing_could_be_judged_says_why() -> None:
     lot["lines"][-1]["reason"] = "optical cover not judged: the light was not stated"
     told = headline({**lot, "decision": "undecided"}, units="inch")
     assert told == f"lot 4711 undecided: {why}; the light…"
+    # a figure that stands does not hide why the others are missing
+    lot["lines"][-1] |= {"measured": 0.66, "decision": "conforms"}
+    assert headline({**lot, "decision": "undecided"}, units="inch").endswith(why)
 
 
 @pytest.mark.parametrize("declared", [True, False])
