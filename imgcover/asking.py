@@ -101,7 +101,8 @@ def find_scale(picture: Picture, options: Options) -> FoundScale:
         [_certified(picture, options), *(each.scale for each in seen), _stated(picture, options)],
         dpi=picture.dpi,
         use_metadata=options.metadata,
-        nominal=options.pitch is not None and options.pitch.is_nominal,
+        # who states how sure a pitch is has measured it
+        nominal=options.pitch is not None and options.pitch.is_nominal and options.pitch_u is None,
     )
     said = (finding for each in (*seen, chosen) for finding in each.findings)
     areas = tuple(area for each in seen for area in each.areas)

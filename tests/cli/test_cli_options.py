@@ -210,3 +210,26 @@ def test_an_overlay_is_drawn_beside_every_readable_picture(ended: Call, tmp_path
     for colour in ((110, 40, 214), (160, 150, 0)):
         marked = np.all(np.abs(drawn.astype(int) - colour) < 12, axis=2)
         assert marked.sum() > 500
+
+
+@pytest.mark.parametrize(
+    ("pitch", "decided"),
+    [
+        (("--pitch", "1000dpi"), False),
+        (("--pitch", "1000dpi", "--pitch-u", "0.5%"), True),
+        (("--pitch", "39.37px/mm"), True),
+    ],
+)
+def test_two_settings_that_contradict_each_other_decide_nothing(
+    ended: Call, goods: Path, tmp_path: Path, pitch: tuple[str, ...], decided: bool
+) -> None:
+    """Truth is the contract: right or refused. The file says 1200 dpi, the inspector 1000; a pitch
+    whose uncertainty is known was measured, and stands."""
+    claiming = tmp_path / "claiming.png"
+    with Image.open(goods / "good-1.png") as first:
+        first.save(claiming, dpi=(1200, 1200))
+    _, out, _ = ended("measure", str(claiming), *pitch, "-a", "tarn.toml", "-f", "json")
+    verdict = json.loads(out)[0]["verdict"]
+    lines = {each["quantity"]: each["decision"] for each in verdict["lines"]}
+    assert ("undecided" not in (lines["ends"], lines["picks"])) is decided
+    assert decided or not verdict["diagnosis"]
