@@ -68,17 +68,22 @@ def _tones_of_lines(
 ) -> tuple[bool, ...]:
     """Tell whether the lines are lighter than the gaps, the narrower of the two being lines.
 
-    Where both are about as wide, and cloth shows between them, it can be either.
+    Where both are about as wide, cloth or grain shows between them, or the row as a whole says
+    otherwise than the seed's surroundings, it can be either.
     """
     profiled = _profile(tone, frame, pitch, zone)
     if profiled is None:
         return ()
     s, profile = profiled
-    near = np.abs(s) < NEAR * pitch
-    ripple = (profile - gaussian_filter1d(profile, 1.2 * pitch, mode="nearest"))[near]
-    skew = float(np.mean(ripple**3) / (np.mean(ripple**2) ** 1.5 + 1e-12))
-    light = skew > 0
-    return (light, not light) if abs(skew) < UNDECIDED else (light,)
+    ripple = profile - gaussian_filter1d(profile, 1.2 * pitch, mode="nearest")
+    _, first, last = _held(profile, s, pitch)
+    whole, near = (
+        float(np.mean(part**3) / (np.mean(part**2) ** 1.5 + 1e-12))
+        for part in (ripple[first : last + 1], ripple[np.abs(s) < NEAR * pitch])
+    )
+    light = whole > 0
+    sure = whole * near > 0 and min(abs(whole), abs(near)) >= UNDECIDED
+    return (light,) if sure else (light, not light)
 
 
 def _one_way(
@@ -103,6 +108,10 @@ def _one_way(
     frame, positions, (foot, top) = laid
     pitch = float(np.median(np.diff(positions)))
     frame, zone = frame.moved(0.0, foot), (0.0, top - foot)
+    tones = _tones_of_lines(tone, frame, pitch, zone)
+    if len(tones) == 1:
+        # told better now that the lines stand upright
+        light = tones[0]
     followed = _follow(tone, frame, pitch, zone, light=light)
     if followed is None:
         return None
@@ -188,10 +197,7 @@ def _follow(
     if profiled is None:
         return None
     s, profile = profiled
-    wave, share = _demodulate(profile, s, pitch)
-    held = share > LEAST_SHARE
-    origin = int(np.argmin(np.abs(s)))
-    first, last = _extent(held, origin, int(WIDEST_GAP * pitch))
+    wave, first, last = _held(profile, s, pitch)
     if last - first < FEWEST_LINES * pitch:
         return None
     phase = np.unwrap(np.angle(wave[first : last + 1])) + 2 * np.pi * s[first : last + 1] / pitch
@@ -202,6 +208,15 @@ def _follow(
     if len(numbers) < FEWEST_LINES:
         return None
     return numbers, np.interp(numbers, cycles, s[first : last + 1])
+
+
+def _held(
+    profile: NDArray[np.float32], s: NDArray[np.float64], pitch: float
+) -> tuple[NDArray[np.complex128], int, int]:
+    """Return the wave of the pitch along a row, and the ends of where it carries the light."""
+    wave, share = _demodulate(profile, s, pitch)
+    origin = int(np.argmin(np.abs(s)))
+    return wave, *_extent(share > LEAST_SHARE, origin, int(WIDEST_GAP * pitch))
 
 
 def _profile(

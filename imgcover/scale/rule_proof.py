@@ -23,7 +23,13 @@ from imgcover.scale.rule_hierarchy import (
     usual_scatter,
 )
 from imgcover.scale.rule_lines import Row
-from imgcover.scale.rule_recurrence import UNMISTAKABLE, WIDE_TIP, Recurrence, recurs
+from imgcover.scale.rule_recurrence import (
+    FINEST,
+    UNMISTAKABLE,
+    WIDE_TIP,
+    Recurrence,
+    recurs,
+)
 
 LEAST_EXPLAINED = 0.75
 """Share of a row's lines that must end where the pattern wants them."""
@@ -154,7 +160,7 @@ def _unseen(pattern: Pattern, unit: str) -> tuple[Graduation, ...]:
 def _fits(pattern: Pattern, row: Row) -> bool:
     scatter = usual_scatter(row)
     powers = evidence(pattern, row)
-    sure = powers >= BEYOND_CHANCE and pattern.steps in UNMISTAKABLE
+    sure = powers >= BEYOND_CHANCE and pattern.steps in (*UNMISTAKABLE, FINEST)
     return (
         pattern.explained >= LEAST_EXPLAINED
         and pattern.cost / len(row.numbers) <= (RAGGED_COST if sure else LARGEST_COST)

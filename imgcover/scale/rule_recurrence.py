@@ -161,4 +161,4 @@ def _orderly(pattern: Pattern, row: Row, bound: float) -> bool:
     return True
 
 
-__all__ = ["UNMISTAKABLE", "WIDE_TIP", "Recurrence", "recurs"]
+__all__ = ["FINEST", "UNMISTAKABLE", "WIDE_TIP", "Recurrence", "recurs"]
