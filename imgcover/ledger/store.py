@@ -90,6 +90,8 @@ class Ledger:
             When there is none, it is no ledger, newer, or older: only opening to write moves it.
         """
         place = path.resolve()
+        if place.is_dir():
+            raise LedgerError(str(path), "is a folder", "name the ledger in it, ledger.sqlite")
         if not place.is_file():
             raise LedgerError(str(path), "there is no such ledger", "check the name")
         with told(path):

@@ -128,3 +128,8 @@ def test_a_ledger_and_what_is_read_from_are_never_written_over(command, ledger, 
         assert outcome([*command, str(read), "-o", str(article)]) == ExitCode.USAGE
         assert "also read from" in capsys.readouterr().err
     assert before == (ledger.read_bytes(), article.read_bytes())
+
+
+def test_a_folder_of_reports_is_told_from_the_ledger_in_it(ledger, capsys):
+    assert outcome(["ledger", "verify", str(ledger.parent)]) == ExitCode.OUTPUT
+    assert "is a folder; name the ledger in it, ledger.sqlite" in capsys.readouterr().err
