@@ -8,6 +8,7 @@ from imgcover.repeat.spectrum import spectrum
 from imgcover.threads.candidates import Candidate
 from imgcover.threads.field import windows_of
 from imgcover.threads.identify import WINDOW, Identified
+from imgcover.threads.individual import individuality
 from imgcover.threads.profile import SILENT
 from imgcover.threads.witness import streak
 
@@ -48,6 +49,25 @@ own lines among its strongest, threads that are too even to leave a streak are t
 TURNED_LOUDNESS = 0.1
 """A turned pair whose own lines are fainter than this is a combination of other lines."""
 
+NO_INDIVIDUALS = 0.03
+"""Likeness of a thread's pieces (`individual.individuality`) that neither set reaches in printed
+dots and sheets. Two of 300 drawn cloths stay below it in both: their weave shows, and is believed."""
+
+INDIVIDUALS, PLAINLY_INDIVIDUALS = 0.05, 0.1
+"""Likeness that stands for a streak in open grids, whose streaks are short of lines to be seen
+between, and likeness that stands for a plain spectrum."""
+
+FAINT_STREAK = 0.2
+"""Streak that plain individuals must show all the same: 0.25 in drawn cloth, 0.17 in knits."""
+
+ABSENT = 0.05
+"""Share of the strongest line's amplitude: in a lattice with weave lines in it, no set of drawn
+cloth stays below 0.13, and the rails of fences, lines of text and corrugations at 0.03."""
+
+SATIN_LOUDNESS = 0.5
+"""Share of the strongest line's amplitude that the louder set reaches in weaves on five threads and
+more: 0.6 in drawn cloth, 0.33 where the diagonals of a checkerboard are taken for a satin's."""
+
 
 def crossing(seen: Identified) -> bool:
     """Whether both sets are made of individual threads that run on across the other set.
@@ -56,33 +76,43 @@ def crossing(seen: Identified) -> bool:
     on unbroken along both.
     """
     e, one = seen.evidence, seen.candidate
-    if e.against > MOST_AGAINST or _hexagonal(one) or _silent(seen):
+    quieter, louder = sorted(
+        each.amplitude / seen.followed.loudest for each in (seen.ends, seen.picks)
+    )
+    if e.against > MOST_AGAINST or _hexagonal(one) or _silent(one, quieter, louder, seen):
+        return False
+    alike = individuality(seen.origin, one, seen.followed)
+    doubtful = one.index == 1 or e.against > 0.05
+    if doubtful and all(each < NO_INDIVIDUALS for each in alike):
+        return False
+    least_alike = min(alike) if not math.isnan(sum(alike)) else 0.0
+    if one.index > 4 and one.parts != (1, 1) and least_alike < INDIVIDUALS:
         return False
     lines = min(e.ends_line, e.picks_line)
-    apart = 0.5 if one.index > 4 else 0.1
-    regular = one.index > 2 and one.parts == (1, 1) and e.against < 0.03 and e.apart < apart
-    loud = min(seen.ends.amplitude, seen.picks.amplitude) / seen.followed.loudest
+    narrow = min(e.ends_streak, e.picks_streak)
     straight = abs(one.turn) < STRAIGHT
     plain = one.index == 2 and one.parts == (1, 1)
     if e.score < SURE_SCORE and not (
-        plain and straight and min(e.ends_streak, e.picks_streak) > 0.3
+        straight
+        and (
+            (plain and narrow > 0.3)
+            or (least_alike > PLAINLY_INDIVIDUALS and narrow > FAINT_STREAK)
+        )
     ):
         return False
-    if (
-        plain
-        and max(seen.ends.amplitude, seen.picks.amplitude) < SILENT_PAIR * seen.followed.loudest
-    ):
+    if not straight and quieter < TURNED_LOUDNESS:
         return False
-    if not straight and loud < TURNED_LOUDNESS:
-        return False
-    even = one.index > 1 and one.parts == (1, 1) and loud > EVEN_LOUDNESS
+    even = one.index > 1 and one.parts == (1, 1) and quieter > EVEN_LOUDNESS
     if straight and even and e.against < 0.05:
         return True
-    narrow = min(e.ends_streak, e.picks_streak)
-    regular = regular and narrow > 0 and lines > REGULAR_LINES and e.score > REGULAR_SCORE
-    if straight and regular:
+    apart = 0.5 if one.index > 4 else 0.1
+    regular = one.index > 2 and one.parts == (1, 1) and e.against < 0.03 and e.apart < apart
+    if straight and regular and narrow > 0 and lines > REGULAR_LINES and e.score > REGULAR_SCORE:
         return True
     if narrow > 2 * LEAST_STREAK:
+        return True
+    grid = straight and one.index == 1 and quieter > EVEN_LOUDNESS
+    if grid and least_alike > INDIVIDUALS:
         return True
     wide = spectrum(windows_of(seen.origin, min(2 * WINDOW, *seen.origin.light.shape)))
     wider = min(streak(wide, one.ends), streak(wide, one.picks))
@@ -94,16 +124,29 @@ def crossing(seen: Identified) -> bool:
 def _hexagonal(one: Candidate) -> bool:
     """Whether the lattice is that of a net or of close-packed dots: six equal neighbours."""
     ratio = max(one.pixels) / min(one.pixels)
-    return one.index == 2 and abs(ratio / math.sqrt(3) - 1) < 0.015 and abs(one.skew) < 0.7
+    twice = one.index == 4 and one.parts != (1, 1)
+    plain = one.index == 2 and one.parts == (1, 1)
+    among = (plain and abs(ratio / math.sqrt(3) - 1) < 0.015) or (
+        twice and abs(ratio / math.sqrt(12) - 1) < 0.015
+    )
+    return among and abs(one.skew) < 0.7
 
 
-def _silent(seen: Identified) -> bool:
-    """Whether one axis has no line of its own and the lattice does not make up for it."""
-    quiet = SILENT * seen.followed.loudest
-    for multiple, parts in zip((seen.ends, seen.picks), seen.candidate.parts, strict=True):
-        if multiple.amplitude < quiet and (seen.candidate.index == 1 or parts > 1):
-            return True
-    return False
+def _silent(one: Candidate, quieter: float, louder: float, seen: Identified) -> bool:
+    """Whether an axis has no line of its own and the lattice does not make up for it."""
+    if one.index == 1:
+        return quieter < SILENT
+    loud = [each.amplitude / seen.followed.loudest for each in (seen.ends, seen.picks)]
+    parted = any(each < SILENT and parts > 1 for each, parts in zip(loud, one.parts, strict=True))
+    least = SATIN_LOUDNESS if _exactly_square(one) else SILENT_PAIR
+    dots = one.parts == (1, 1) and one.index == 2 and louder < least
+    satin = one.parts == (1, 1) and one.index > 4 and louder < SATIN_LOUDNESS
+    return parted or dots or satin or quieter < ABSENT
+
+
+def _exactly_square(one: Candidate) -> bool:
+    """Whether both sets are as equal as only a drawn raster is: cloth differs by 0.1 % at least."""
+    return abs(one.pixels[0] / one.pixels[1] - 1) < 5e-4 and abs(one.skew) < 0.03
 
 
 __all__ = ["crossing"]
