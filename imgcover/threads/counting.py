@@ -29,6 +29,9 @@ class Counted:
         Parts of the relative standard uncertainty: disagreement of the phase between lines of
         sight; the unknown place of the outermost threads in an uneven set; threads that begin or
         end inside the field.
+    doubted : float
+        Share of the lines of sight in which a thread was added or dropped to agree with the lines
+        beside them, and of the ways from edge to edge that are gaps.
     """
 
     frequency: tuple[float, float]
@@ -37,6 +40,7 @@ class Counted:
     noise: float
     irregular: float
     broken: float
+    doubted: float
 
 
 def count(
@@ -68,8 +72,8 @@ def count(
     across_y = _edge_to_edge(phase.T, followed.valid.T, followed.y)
     if across_x is None or across_y is None:
         return None
-    slope_x, reach_x, error_x, walk_x = across_x
-    slope_y, reach_y, error_y, walk_y = across_y
+    slope_x, reach_x, error_x, walk_x, doubted_x = across_x
+    slope_y, reach_y, error_y, walk_y, doubted_y = across_y
     fx, fy = frequency[0] + slope_x, frequency[1] + slope_y
     density = math.hypot(fx, fy)
     cos, sin = abs(fx) / density, abs(fy) / density
@@ -80,14 +84,14 @@ def count(
     noise = math.hypot(cos * error_x, sin * error_y) / density
     irregular = math.hypot(cos * walk_x, sin * walk_y) / density
     counted = density * length
-    # where a thread begins inside the field is known only to a part of the rows
     broken = A_BREAK * math.sqrt(breaks(phase, followed.valid)) / counted
-    return Counted((fx, fy), counted, length, noise, irregular, broken)
+    doubted = math.hypot(cos * doubted_x, sin * doubted_y)
+    return Counted((fx, fy), counted, length, noise, irregular, broken, doubted)
 
 
 def _edge_to_edge(
     phase: NDArray[np.float64], valid: NDArray[np.bool_], places: NDArray[np.float64]
-) -> tuple[float, float, float, float] | None:
+) -> tuple[float, float, float, float, float] | None:
     """Mean slope along the rows: summed phase differences over summed distances.
 
     Returns
@@ -100,6 +104,8 @@ def _edge_to_edge(
         Standard error of the slope from the scatter between rows.
     walk : float
         How unevenly the threads lie from place to place, as a slope over the reach.
+    doubted : float
+        Share of the rows in which a thread was added or dropped, and of all that lies in gaps.
     """
     rows = np.flatnonzero(valid.sum(axis=1) >= 3)
     if rows.size == 0:
@@ -117,11 +123,16 @@ def _edge_to_edge(
         error = float(np.sqrt((steps**2).mean() / 2) * math.sqrt(2 / rows.size)) / reach
     else:
         error = float(np.abs(rest).max()) / reach
-    profile = np.ma.masked_array(phase, ~valid)[rows].mean(axis=0)
+    known = np.ma.masked_array(phase, ~valid)[rows]
+    both = valid[rows, 1:] & valid[rows, :-1]
+    leaps = np.round(np.diff(phase[rows], axis=1)) * both
+    gaps = 1 - float(valid[rows].sum()) / float((last - first + 1).sum())
+    doubted = min(1.0, float((leaps.sum(axis=1) != 0).mean()) + gaps)
+    profile = known.mean(axis=0)
     gains = np.diff(np.ma.filled(profile, np.nan))
     gains = gains[np.isfinite(gains)]
     walk = float(gains.std()) * math.sqrt(2.0) / reach if gains.size > 1 else 0.0
-    return slope, reach, error, walk
+    return slope, reach, error, walk, doubted
 
 
 def breaks(phase: NDArray[np.float64], valid: NDArray[np.bool_]) -> int:

@@ -9,6 +9,7 @@ cut into pieces, and the pieces of one thread are held against each other.
 from __future__ import annotations
 
 import math
+from dataclasses import dataclass
 
 import cv2
 import numpy as np
@@ -33,7 +34,32 @@ STEPS = 4
 Pictured = NDArray[np.float32]
 
 
-def individuality(field: Field, one: Candidate, followed: Followed) -> tuple[float, float]:
+@dataclass(frozen=True, slots=True)
+class Individuality:
+    """How threads differ from their neighbours, and how much of that stays along them.
+
+    Parameters
+    ----------
+    ends, picks : float
+        Intraclass correlation of pieces within threads: 0 where threads are told by nothing but
+        their place, 1 where each differs from its neighbours and stays the same; not a number where
+        too few threads are in sight.
+    rough : float
+        How much a piece differs from its neighbours, of the rougher set, in standard deviations of
+        the flattened light.
+    """
+
+    ends: float
+    picks: float
+    rough: float
+
+    @property
+    def least(self) -> float:
+        """The smaller of both correlations; 0 where one is not known."""
+        return 0.0 if math.isnan(self.ends + self.picks) else min(self.ends, self.picks)
+
+
+def individuality(field: Field, one: Candidate, followed: Followed) -> Individuality:
     """How alike the pieces of one thread are, beyond what threads have in common.
 
     Parameters
@@ -45,13 +71,6 @@ def individuality(field: Field, one: Candidate, followed: Followed) -> tuple[flo
     followed : Followed
         Phases of both sets.
 
-    Returns
-    -------
-    tuple of float
-        (ends, picks), each the intraclass correlation of pieces within threads: 0 where threads are
-        told by nothing but their place, 1 where each differs from its neighbours and stays the
-        same; not a number where too few threads are in sight.
-
     Notes
     -----
     Intraclass correlation: R. A. Fisher, Statistical Methods for Research Workers (1925), ch. VII.
@@ -61,14 +80,17 @@ def individuality(field: Field, one: Candidate, followed: Followed) -> tuple[flo
     """
     laid = _laid_out(field, one, followed)
     if laid is None:
-        return math.nan, math.nan
+        return Individuality(math.nan, math.nan, math.nan)
     light, seen, x, y = laid
-    ends, picks = one.parts
     whole = max(1, one.index)
-    return (
-        _alike(light, seen, x, ends, max(1, whole // ends)),
-        _alike(light.T, seen.T, y.T, picks, max(1, whole // picks)),
+    of_ends, of_picks = (
+        _alike(each, there, at, parts, max(1, whole // parts))
+        for each, there, at, parts in (
+            (light, seen, x, one.parts[0]),
+            (light.T, seen.T, y.T, one.parts[1]),
+        )
     )
+    return Individuality(of_ends[0], of_picks[0], max(of_ends[1], of_picks[1]))
 
 
 def _laid_out(
@@ -146,11 +168,11 @@ def _cut(
 
 def _alike(
     light: Pictured, seen: NDArray[np.bool_], places: Pictured, parts: int, repeat: int
-) -> float:
-    """Intraclass correlation of the pieces of the threads that run down the picture."""
+) -> tuple[float, float]:
+    """Correlation and roughness of the pieces of the threads that run down the picture."""
     threads, pieces = light.shape[1] // PLACES, light.shape[0] // PLACES // repeat
     if threads < FEWEST_THREADS + 2 * parts or pieces < FEWEST_PIECES:
-        return math.nan
+        return math.nan, math.nan
     used = pieces * repeat * PLACES
     shape = (pieces, repeat * PLACES, threads, PLACES)
     # over a whole repeat of the other set all threads weave alike
@@ -162,8 +184,10 @@ def _alike(
     whole = whole[here] & whole[before] & whole[after]
     kept = whole.sum(axis=1) >= FEWEST_PIECES
     if kept.sum() < FEWEST_THREADS:
-        return math.nan
-    return _intraclass(_off_the_raster(differs[kept], whole[kept], at[here][kept]), whole[kept])
+        return math.nan, math.nan
+    differs, whole = differs[kept], whole[kept]
+    own = _off_the_raster(differs, whole, at[here][kept])
+    return _intraclass(own, whole), float(np.sqrt((differs[whole] ** 2).mean()))
 
 
 def _off_the_raster(differs: Pictured, whole: NDArray[np.bool_], at: Pictured) -> Pictured:
@@ -191,4 +215,4 @@ def _intraclass(differs: Pictured, whole: NDArray[np.bool_]) -> float:
     return float((together - alone).sum() / max(float(pairs), 1e-12))
 
 
-__all__ = ["individuality"]
+__all__ = ["Individuality", "individuality"]

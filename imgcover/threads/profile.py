@@ -61,8 +61,8 @@ class Multiple:
         Coherent amplitude of the thread's own line, in standard deviations of the field.
     noise : float
         What that amplitude would be if no thread were there.
-    halved : float
-        Amplitude of the line at half the frequency over the thread's own: of pairs.
+    halved, doubled : float
+        Amplitudes of the lines at half and at twice the frequency over the thread's own: of pairs.
     """
 
     factor: Fraction
@@ -70,6 +70,7 @@ class Multiple:
     amplitude: float
     noise: float
     halved: float
+    doubled: float
 
 
 def amplitudes(
@@ -141,11 +142,13 @@ def which_multiple(
     own = tried.index(Fraction(1))
     if size.max() < max(5 * noise, SILENT * followed.loudest):
         rival = None if parts == 1 else Fraction(1, parts)
-        return Multiple(Fraction(1), rival, float(size[own]), noise, 0.0)
+        return Multiple(Fraction(1), rival, float(size[own]), noise, 0.0, 0.0)
     best = int(weight.argmax())
     factor = tried[best]
-    half = tried.index(factor / 2) if factor / 2 in tried else None
-    halved = 0.0 if half is None else float(size[half] / size[best])
+    halved, doubled = (
+        float(size[tried.index(each)] / size[best]) if each in tried else 0.0
+        for each in (factor / 2, 2 * factor)
+    )
     near = [k for k in range(len(tried)) if k != best and weight[k] * AMBIGUOUS > weight[best]]
     for k in sorted(near, key=lambda k: -weight[k]):
         if size[k] < 5 * noise:
@@ -156,10 +159,10 @@ def which_multiple(
             continue
         if said == tried[k] / base and tried[k] < factor:
             # fewer threads than the louder line has waves, each with a crest and a shoulder
-            return Multiple(tried[k], None, float(size[k]), noise, 0.0)
+            return Multiple(tried[k], None, float(size[k]), noise, 0.0, 0.0)
         # the stronger line must be borne out by the threads seen, or neither reading is given
-        return Multiple(factor, tried[k], float(size[best]), noise, halved)
-    return Multiple(factor, None, float(size[best]), noise, halved)
+        return Multiple(factor, tried[k], float(size[best]), noise, halved, doubled)
+    return Multiple(factor, None, float(size[best]), noise, halved, doubled)
 
 
 def _common(one: Fraction, other: Fraction) -> Fraction:

@@ -51,7 +51,11 @@ TURNED_LOUDNESS = 0.1
 
 NO_INDIVIDUALS = 0.03
 """Likeness of a thread's pieces (`individual.individuality`) that neither set reaches in printed
-dots and sheets. Two of 300 drawn cloths stay below it in both: their weave shows, and is believed."""
+dots, sheets and some bricks; few of 300 drawn cloths stay below it in both sets."""
+
+STAMPED = 0.1
+"""Roughness (`Individuality.rough`) below which pieces are as alike as print and punch make them:
+0.08 at the most in printed dots, 0.16 and more in drawn open cloth."""
 
 INDIVIDUALS, PLAINLY_INDIVIDUALS = 0.05, 0.1
 """Likeness that stands for a streak in open grids, whose streaks are short of lines to be seen
@@ -60,9 +64,9 @@ between, and likeness that stands for a plain spectrum."""
 FAINT_STREAK = 0.2
 """Streak that plain individuals must show all the same: 0.25 in drawn cloth, 0.17 in knits."""
 
-ABSENT = 0.05
+ABSENT = 0.035
 """Share of the strongest line's amplitude: in a lattice with weave lines in it, no set of drawn
-cloth stays below 0.13, and the rails of fences, lines of text and corrugations at 0.03."""
+cloth stays below 0.13 nor one of real cloth below 0.05; rails of fences and lines of text do."""
 
 SATIN_LOUDNESS = 0.5
 """Share of the strongest line's amplitude that the louder set reaches in weaves on five threads and
@@ -82,11 +86,10 @@ def crossing(seen: Identified) -> bool:
     if e.against > MOST_AGAINST or _hexagonal(one) or _silent(one, quieter, louder, seen):
         return False
     alike = individuality(seen.origin, one, seen.followed)
-    doubtful = one.index == 1 or e.against > 0.05
-    if doubtful and all(each < NO_INDIVIDUALS for each in alike):
+    doubtful = (one.index == 1 and alike.rough < STAMPED) or e.against > 0.05
+    if doubtful and max(alike.ends, alike.picks) < NO_INDIVIDUALS:
         return False
-    least_alike = min(alike) if not math.isnan(sum(alike)) else 0.0
-    if one.index > 4 and one.parts != (1, 1) and least_alike < INDIVIDUALS:
+    if one.index > 4 and one.parts != (1, 1) and alike.least < INDIVIDUALS:
         return False
     lines = min(e.ends_line, e.picks_line)
     narrow = min(e.ends_streak, e.picks_streak)
@@ -96,7 +99,7 @@ def crossing(seen: Identified) -> bool:
         straight
         and (
             (plain and narrow > 0.3)
-            or (least_alike > PLAINLY_INDIVIDUALS and narrow > FAINT_STREAK)
+            or (alike.least > PLAINLY_INDIVIDUALS and narrow > FAINT_STREAK)
         )
     ):
         return False
@@ -112,7 +115,7 @@ def crossing(seen: Identified) -> bool:
     if narrow > 2 * LEAST_STREAK:
         return True
     grid = straight and one.index == 1 and quieter > EVEN_LOUDNESS
-    if grid and least_alike > INDIVIDUALS:
+    if grid and alike.least > INDIVIDUALS:
         return True
     wide = spectrum(windows_of(seen.origin, min(2 * WINDOW, *seen.origin.light.shape)))
     wider = min(streak(wide, one.ends), streak(wide, one.picks))

@@ -24,7 +24,9 @@ def seen(index: int, parts: tuple[int, int]) -> Candidate:
 
 
 def told(factor: Fraction | int, rival: Fraction | int | None = None) -> Multiple:
-    return Multiple(Fraction(factor), None if rival is None else Fraction(rival), 1.0, 0.01, 0.0)
+    return Multiple(
+        Fraction(factor), None if rival is None else Fraction(rival), 1.0, 0.01, 0.0, 0.0
+    )
 
 
 @pytest.mark.parametrize(
