@@ -25,10 +25,8 @@ from imgcover.threads.reading import ThreadReading
 KINDS = (
     *("rib knit", "purl knit", "net", "lace", "laid paper", "gravel", "brick", "text", "stripes"),
     *("corrugated", "white noise", "blank", "gradient", "screen", "perforated", "halftone"),
-    *("checkerboard", "scales"),
+    *("checkerboard", "scales", "dots", "pickets"),
 )
-"""Not among them: dots printed on a square lattice. They are still taken for an open screen: four
-of eight seeds are counted, here and at 500 pixels."""
 
 
 def refused(reading: ThreadReading) -> ThreadReading:
