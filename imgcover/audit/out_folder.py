@@ -16,15 +16,19 @@ LONGEST_STEM = 40
 """Letters of a lot's name in its page's name; the whole name stands in the page."""
 
 
-REPORTS = frozenset({"records.jsonl", "small"})
-"""Where both lie an audit has written before, also one that was stopped: they come first."""
+FOLDERS = frozenset({"lots", "small"})
+"""Made before anything is written: where both are an audit has written, also one that was stopped."""
+REPORTS = FOLDERS | {"records.jsonl"}
+"""Where all of these lie inside an audited folder there are reports, and no goods."""
+OWN_NAMES = ("lots.csv", "lots.xlsx", "report.html", "report.xlsx", "records.jsonl")
+"""What reports are called, and a lot sheet; where no audit wrote they are somebody else's."""
 
 
-def holds_foreign_sheet(folder: Path) -> bool:
-    """Whether a folder holds a lot sheet that an audit's own table would overwrite."""
-    sheets = (folder / "lots.csv", folder / "lots.xlsx")
-    written = all((folder / name).exists() for name in REPORTS)
-    return any(sheet.exists() for sheet in sheets) and not written
+def foreign(folder: Path) -> list[str]:
+    """Name what lies in a folder under a report's name and was not written by an audit."""
+    if all((folder / name).is_dir() for name in FOLDERS):
+        return []
+    return [name for name in OWN_NAMES if (folder / name).exists()]
 
 
 class OutFolder:
@@ -143,4 +147,4 @@ def _told(place: Path) -> Iterator[None]:
         ) from fault
 
 
-__all__ = ["REPORTS", "OutFolder", "holds_foreign_sheet", "page_name"]
+__all__ = ["REPORTS", "OutFolder", "foreign", "page_name"]

@@ -16,7 +16,7 @@ from imgcover.audit.folder import Listing, list_folder
 from imgcover.audit.grounds import Grounds
 from imgcover.audit.machine import jobs_that_fit
 from imgcover.audit.orders import OrderBook
-from imgcover.audit.out_folder import OutFolder, holds_foreign_sheet
+from imgcover.audit.out_folder import OutFolder, foreign
 from imgcover.audit.outcome import Crew
 from imgcover.audit.run import How, Round, Told, measure_all
 from imgcover.audit.settling import Settling, looks, signature
@@ -214,12 +214,13 @@ def _listed(asked: AuditAsked, root: Path) -> Listing:
 
 
 def _refuse_goods(root: Path, folder: Path) -> None:
-    """Keep reports out of a folder of goods: their lots.csv would take the place of its sheet."""
+    """Keep reports from taking the place of a lot sheet, or of anyone else's report."""
     if root.resolve() == folder.resolve():
         raise OptionError("--out", f"{root} is the audited folder itself", "name another folder")
-    if holds_foreign_sheet(root):
+    others = foreign(root)
+    if others:
         raise OptionError(
-            "--out", f"{root} holds a lot sheet that no audit wrote", "name another folder"
+            "--out", f"{root} holds {others[0]} that no audit wrote", "name another folder"
         )
 
 

@@ -226,10 +226,14 @@ def test_reports_never_take_the_place_of_a_lot_sheet(tmp_path):
     lay(goods, {"A": 1})
     lay(other, {"B": 1})
     before = (goods / "lots.csv").read_bytes()
-    for folder in (goods, other):
+    mine = tmp_path / "mine"
+    mine.mkdir()
+    (mine / "report.xlsx").write_bytes(b"my own")
+    for folder, out in ((goods, goods), (other, goods), (goods, mine)):
         with pytest.raises(OptionError, match="--out"):
-            audited(audit_rig.asked(folder, goods))
+            audited(audit_rig.asked(folder, out))
     assert (goods / "lots.csv").read_bytes() == before
+    assert (mine / "report.xlsx").read_bytes() == b"my own"
     assert not (goods / "ledger.sqlite").exists()
 
 
