@@ -17,7 +17,7 @@ LONGEST_STEM = 40
 
 
 FOLDERS = frozenset({"lots", "small"})
-"""Made before anything is written: where both are an audit has written, also one that was stopped."""
+"""Made before anything is written: where both are an audit wrote, also one that was stopped."""
 REPORTS = FOLDERS | {"records.jsonl"}
 """Where all of these lie inside an audited folder there are reports, and no goods."""
 OWN_NAMES = ("lots.csv", "lots.xlsx", "report.html", "report.xlsx", "records.jsonl")
