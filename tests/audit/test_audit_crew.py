@@ -33,7 +33,8 @@ def test_loads_are_drawn_only_as_workers_fall_idle():
 
     with LocalCrew(hands=2, limit_s=60) as crew:
         for heard, _ in enumerate(crew.run(crew_work.double, loads()), start=1):
-            assert len(drawn) <= heard + 2
+            # two underway, and one that was done at the same moment as this and is told next
+            assert len(drawn) <= heard + 3
 
 
 def test_a_process_has_one_thread_and_this_one_keeps_its_own(monkeypatch):
