@@ -19,7 +19,7 @@ from imgcover.cover.reading import CoverReading, Lattice, Pitch
 from imgcover.cover.shown import shown
 from imgcover.cover.surface import Surface
 from imgcover.cover.systems import each_system
-from imgcover.cover.windows import Window, whole_periods
+from imgcover.cover.windows import Window, cell_sides, whole_periods
 from imgcover.cover.witnesses import between_windows, edge_bias, open_share, weighted
 from imgcover.findings import Finding, Flag, found
 from imgcover.quantity import Measured
@@ -39,10 +39,17 @@ FEWEST_BLURS = 1.5
 LEAST_SURE = 0.0075
 """A cover less sure than this is refused: threads and pores so small leave the section of the yarns
 to be guessed, and with it where they end."""
-MOST_MISFIT, MOST_FUZZ, RESOLVED = 0.008, 0.0105, 6.0
+MOST_MISFIT, MOST_FUZZ, RESOLVED = 0.003, 0.0105, 6.0
 """Misfit common to all pores, a share of the light, is refused beyond the first; beyond the second
 where more blurs than the third fit into a pore: fuzz on well resolved yarns shows up to 0.0100, and
-the cover was still within 0.5 points (sweep_cover.py)."""
+the cover was still within 0.5 points; the others show 0.0016 and with many hairs 0.0032 (seed 61803
+of sweep_cover.py), sharpened ones to 0.007 with the cover off by 3 points."""
+SMOTHERED = 2.5
+"""Where pores are resolved by less than `RESOLVED` blurs, blur hides most of what does not fit, and
+the misfit counts so many times."""
+HAIRY_PX = 0.32
+"""Hairs along the rims of small threads are taken for yarn: cover is uncertain by the square of it
+over the pixels a thread (seed 61803: 1.7 and 1.3 points too much at 5.9 and 5.4 px, u 0.7)."""
 MOST_APART = 0.004
 """Misfit that one part of the field has and another has not, a share of the light: even cloth shows
 up to 0.002, a field with a third out of focus by 1.2 px 0.0085, and cover was 3 points off."""
@@ -86,7 +93,8 @@ class _Witnessed:
     blurs: float
     u_fit: float
     u_windows: float
-    u_misfit: float
+    u_hairs: float
+    misfit: float
     apart: float
     u_guessed: float
     u_lossy: float
@@ -105,7 +113,12 @@ class _Witnessed:
     def sure(self) -> bool:
         """Whether this is sure enough to be told."""
         most = MOST_MISFIT if self.blurs < RESOLVED else MOST_FUZZ
-        return self._u_read <= LEAST_SURE and self.u_misfit <= most and self.even
+        return self._u_read <= LEAST_SURE and self.misfit <= most and self.even
+
+    @property
+    def u_misfit(self) -> float:
+        """Of what one blur and one kind of yarn do not explain."""
+        return self.misfit * (SMOTHERED if self.blurs < RESOLVED else 1.0)
 
     @property
     def even(self) -> bool:
@@ -118,8 +131,8 @@ class _Witnessed:
         apart = self.cover - self.two_level
         if self.threshold is None:
             apart = BLURRED / self.blurs**2
-        known = (self.u_fit, self.u_windows, self.u_guessed, self.u_lossy, FLOOR)
-        return math.hypot(*known, apart)
+        known = (self.u_fit, self.u_windows, self.u_hairs, self.u_guessed, self.u_lossy)
+        return math.hypot(*known, apart, FLOOR)
 
 
 def by_openings(
@@ -191,7 +204,8 @@ def by_openings(
         blurs=blurs,
         u_fit=fitted.u_open_share(lattice) * (ANY_SECTION if cells.unevenness < WIRE else 1),
         u_windows=between_windows(shares, weights) / (1 - cells.yarn_level),
-        u_misfit=misfit,
+        u_hairs=(HAIRY_PX / min(cell_sides(lattice))) ** 2,
+        misfit=misfit,
         apart=apart,
         u_guessed=GUESSED * guessed,
         u_lossy=LOSSY_U * loss_step**LOSSY_POWER,

@@ -33,8 +33,8 @@ from imgcover.loom.camera import CameraSpec
 from imgcover.loom.cases import COVER, Case, ordinary
 from imgcover.loom.truth import Truth
 
-SEED = 61803
-"""Of the cloths whose figures DEVELOPERS.md reports; 40417 has been tuned on."""
+SEED = 14142
+"""Of the cloths whose figures DEVELOPERS.md reports; 40417 and 61803 have been tuned on."""
 METHODS = ("this room", "Otsu, stored grey", "Otsu, linear light", "half level")
 
 

@@ -111,6 +111,16 @@ def test_a_third_out_of_focus_is_refused():
     assert [f.flag for f in reading.findings] == [Flag.COVER_UNEVEN]
 
 
+def test_sharpened_small_pores_are_refused():
+    """Truth is drawn: loom, seed 21, sharpened as scanning programs do: no blur explains it."""
+    light, _, lattice = drawn(0.36)
+    stored = SRGB.from_linear(light)
+    stored = np.clip(stored + 0.7 * (stored - cv2.GaussianBlur(stored, (0, 0), 2.0)), 0, 1)
+    reading = read(SRGB.to_linear(stored).astype(np.float32), lattice)
+    assert reading.optical is None
+    assert [f.flag for f in reading.findings] == [Flag.COVER_UNEVEN]
+
+
 def test_nearly_shut_cloth_has_a_bound_and_is_never_shut_by_default():
     """Truth is drawn: loom, seed 21; open area of 1.5 %, and next to none."""
     light, cover, lattice = drawn(0.5, px_per_mm=30.0)
