@@ -78,7 +78,7 @@ def _tones_of_lines(
     ripple = profile - gaussian_filter1d(profile, 1.2 * pitch, mode="nearest")
     _, first, last = _held(profile, s, pitch)
     whole, near = (
-        float(np.mean(part**3) / (np.mean(part**2) ** 1.5 + 1e-12))
+        float(np.mean(part**3) / (np.mean(part**2) ** 1.5 + 1e-12)) if len(part) else 0.0
         for part in (ripple[first : last + 1], ripple[np.abs(s) < NEAR * pitch])
     )
     light = whole > 0
