@@ -35,6 +35,10 @@ hopsack's half line 1.72 times; this power keeps both below or near the thread's
 AMBIGUOUS = 1.6
 """Two readings whose weights differ by less than this are told apart by their ridges."""
 
+LOUD_THIRD = 0.6
+"""Share of the strongest line's amplitude from which on a line at a third of its frequency asks for
+the ridges to be counted: pairs set wide apart are loudest at the third multiple of the pair."""
+
 SILENT = 0.12
 """Share of the strongest line's amplitude below which an axis says nothing of its own."""
 
@@ -150,6 +154,9 @@ def which_multiple(
         for each in (factor / 2, 2 * factor)
     )
     near = [k for k in range(len(tried)) if k != best and weight[k] * AMBIGUOUS > weight[best]]
+    third = tried.index(factor / 3) if factor / 3 in tried else best
+    if third != best and size[third] > LOUD_THIRD * size[best] and third not in near:
+        near.append(third)
     for k in sorted(near, key=lambda k: -weight[k]):
         if size[k] < 5 * noise:
             continue
@@ -161,7 +168,8 @@ def which_multiple(
             # fewer threads than the louder line has waves, each with a crest and a shoulder
             return Multiple(tried[k], None, float(size[k]), noise, 0.0, 0.0)
         # the stronger line must be borne out by the threads seen, or neither reading is given
-        return Multiple(factor, tried[k], float(size[best]), noise, halved, doubled)
+        rival = tried[k] if said is None or said * base == factor else said * base
+        return Multiple(factor, rival, float(size[best]), noise, halved, doubled)
     return Multiple(factor, None, float(size[best]), noise, halved, doubled)
 
 

@@ -64,6 +64,10 @@ between, and likeness that stands for a plain spectrum."""
 FAINT_STREAK = 0.2
 """Streak that plain individuals must show all the same: 0.25 in drawn cloth, 0.17 in knits."""
 
+LOUD_INDIVIDUALS = 0.4
+"""Share of the strongest line's amplitude that the quieter set must reach beside such likeness:
+rib knits are individuals both ways too, and their courses reach 0.24."""
+
 ABSENT = 0.035
 """Share of the strongest line's amplitude: in a lattice with weave lines in it, no set of drawn
 cloth stays below 0.13 nor one of real cloth below 0.05; rails of fences and lines of text do."""
@@ -89,7 +93,7 @@ def crossing(seen: Identified) -> bool:
     doubtful = (one.index == 1 and alike.rough < STAMPED) or e.against > 0.05
     if doubtful and max(alike.ends, alike.picks) < NO_INDIVIDUALS:
         return False
-    if one.index > 4 and one.parts != (1, 1) and alike.least < INDIVIDUALS:
+    if one.index > 4 and one.parts != (1, 1) and alike.least < NO_INDIVIDUALS:
         return False
     lines = min(e.ends_line, e.picks_line)
     narrow = min(e.ends_streak, e.picks_streak)
@@ -116,6 +120,9 @@ def crossing(seen: Identified) -> bool:
         return True
     grid = straight and one.index == 1 and quieter > EVEN_LOUDNESS
     if grid and alike.least > INDIVIDUALS:
+        return True
+    loud = one.parts == (1, 1) and quieter > LOUD_INDIVIDUALS
+    if loud and alike.least > 2 * PLAINLY_INDIVIDUALS and narrow > FAINT_STREAK:
         return True
     wide = spectrum(windows_of(seen.origin, min(2 * WINDOW, *seen.origin.light.shape)))
     wider = min(streak(wide, one.ends), streak(wide, one.picks))
