@@ -184,6 +184,8 @@ def _refused(*findings: Finding, tiles: tuple[Tile, ...] = ()) -> ThreadReading:
 
 def _read(seen: Identified, region: Region, warp: Direction) -> ThreadReading:
     one, followed = seen.candidate, seen.followed
+    if not seen.agreed:
+        return _refused(found(Flag.THREADS_LOST))
     period = max(one.pixels)
     followed = away_from_bare(followed, seen.origin.light, period)
     pieces = divide(followed, period, seen.origin.light.shape)
