@@ -28,6 +28,9 @@ MOST_THREADS = 60
 FEWEST_THREADS, FEWEST_PIECES = 10, 3
 """With fewer nothing can be said: chance alone makes them alike."""
 
+GLARE = 0.1
+"""Light that may be added to what crossed bars let through, as a share of the cell's range."""
+
 STEPS = 4
 """Rounds until a place is found whose phase is wanted: each shrinks the miss tenfold and more."""
 
@@ -47,11 +50,15 @@ class Individuality:
     rough : float
         How much a piece differs from its neighbours, of the rougher set, in standard deviations of
         the flattened light.
+    not_crossed : float
+        How far the mean cell is from the product of two stripes, 0…1: what bars let through one
+        after the other, or the same turned over.
     """
 
     ends: float
     picks: float
     rough: float
+    not_crossed: float
 
     @property
     def least(self) -> float:
@@ -80,8 +87,8 @@ def individuality(field: Field, one: Candidate, followed: Followed) -> Individua
     """
     laid = _laid_out(field, one, followed)
     if laid is None:
-        return Individuality(math.nan, math.nan, math.nan)
-    light, seen, x, y = laid
+        return Individuality(math.nan, math.nan, math.nan, math.nan)
+    light, seen, x, y, cell = laid
     whole = max(1, one.index)
     of_ends, of_picks = (
         _alike(each, there, at, parts, max(1, whole // parts))
@@ -90,13 +97,20 @@ def individuality(field: Field, one: Candidate, followed: Followed) -> Individua
             (light.T, seen.T, y.T, one.parts[1]),
         )
     )
-    return Individuality(of_ends[0], of_picks[0], max(of_ends[1], of_picks[1]))
+    rough = max(of_ends[1], of_picks[1])
+    return Individuality(of_ends[0], of_picks[0], rough, _not_crossed(cell))
 
 
 def _laid_out(
     field: Field, one: Candidate, followed: Followed
-) -> tuple[Pictured, NDArray[np.bool_], Pictured, Pictured] | None:
-    """The field with its threads straight: light, what was followed, and each crossing's place."""
+) -> tuple[Pictured, NDArray[np.bool_], Pictured, Pictured, NDArray[np.float64]] | None:
+    """The field with its threads straight.
+
+    Returns
+    -------
+    tuple or None
+        Flattened light, what was followed, each crossing's place, and the mean cell of plain light.
+    """
     basis = np.array([one.ends, one.picks])
     rows, columns = np.nonzero(followed.valid)
     phases = basis @ np.stack([followed.x[columns], followed.y[rows]])
@@ -120,6 +134,7 @@ def _laid_out(
             for each in (followed.ends, followed.picks)
         ]
     known = _read(followed.valid.astype(np.float32), grid[0], grid[1]) > 0.99
+    cell = _mean_cell(field.light, x, y, known)
     light, x, y = _cut(field, one, x, y)
     high, wide = light.shape
     inside = (x > 1) & (x < wide - 2) & (y > 1) & (y < high - 2)
@@ -130,7 +145,35 @@ def _laid_out(
         known & inside,
         x[middle, middle] * zoom,
         y[middle, middle] * zoom,
+        cell,
     )
+
+
+def _mean_cell(
+    light: Pictured, x: NDArray[np.float64], y: NDArray[np.float64], known: NDArray[np.bool_]
+) -> NDArray[np.float64]:
+    """All crossings folded into one, at twice as many places; NaN where none was followed."""
+    finer = [cv2.resize(each, None, fx=2, fy=2).astype(np.float32) for each in (x, y)]
+    read = _read(light, *finer)
+    whole = known.reshape(known.shape[0] // PLACES, PLACES, -1, PLACES).all(axis=(1, 3))
+    shape = (whole.shape[0], 2 * PLACES, whole.shape[1], 2 * PLACES)
+    cells = read.reshape(shape).transpose(0, 2, 1, 3)[whole]
+    if not cells.size:
+        return np.full(shape[1::2], math.nan)
+    return np.asarray(cells.mean(axis=0), np.float64)
+
+
+def _not_crossed(cell: NDArray[np.float64]) -> float:
+    """Second singular value over the first, of the cell or its negative, with any glare."""
+    range_ = float(np.ptp(cell))
+    if not range_ > 0:
+        return math.nan
+    best = 1.0
+    for shown in (cell - cell.min(), cell.max() - cell):
+        for glare in np.linspace(-GLARE, GLARE, 21) * range_:
+            first, second = np.linalg.svd(shown + glare, compute_uv=False)[:2]
+            best = min(best, float(second / first))
+    return best
 
 
 def _span(phase: NDArray[np.float64]) -> tuple[int, int]:

@@ -57,6 +57,10 @@ STAMPED = 0.1
 """Roughness (`Individuality.rough`) below which pieces are as alike as print and punch make them:
 0.08 at the most in printed dots, 0.16 and more in drawn open cloth."""
 
+CROSSED = 0.01
+"""Distance of a cell from the product of two stripes (`Individuality.not_crossed`): 0.001 in even
+meshes however blurred, 0.02 to 0.11 in printed dots. A mesh of wire is as even as print is."""
+
 INDIVIDUALS, PLAINLY_INDIVIDUALS = 0.05, 0.1
 """Likeness that stands for a streak in open grids, whose streaks are short of lines to be seen
 between, and likeness that stands for a plain spectrum."""
@@ -90,11 +94,13 @@ def crossing(seen: Identified) -> bool:
     if e.against > MOST_AGAINST or _hexagonal(one) or _silent(one, quieter, louder, seen):
         return False
     alike = individuality(seen.origin, one, seen.followed)
-    doubtful = (one.index == 1 and alike.rough < STAMPED) or e.against > 0.05
+    stamped = alike.rough < STAMPED and alike.not_crossed > CROSSED
+    doubtful = stamped if one.index == 1 else e.against > 0.05
     if doubtful and max(alike.ends, alike.picks) < NO_INDIVIDUALS:
         return False
     if one.index > 4 and one.parts != (1, 1) and alike.least < NO_INDIVIDUALS:
         return False
+    wires = one.index == 1 and alike.rough < STAMPED and alike.not_crossed < 0.5 * CROSSED
     lines = min(e.ends_line, e.picks_line)
     narrow = min(e.ends_streak, e.picks_streak)
     straight = abs(one.turn) < STRAIGHT
@@ -102,7 +108,8 @@ def crossing(seen: Identified) -> bool:
     if e.score < SURE_SCORE and not (
         straight
         and (
-            (plain and narrow > 0.3)
+            wires
+            or (plain and narrow > 0.3)
             or (alike.least > PLAINLY_INDIVIDUALS and narrow > FAINT_STREAK)
         )
     ):
@@ -119,7 +126,7 @@ def crossing(seen: Identified) -> bool:
     if narrow > 2 * LEAST_STREAK:
         return True
     grid = straight and one.index == 1 and quieter > EVEN_LOUDNESS
-    if grid and alike.least > INDIVIDUALS:
+    if grid and (wires or alike.least > INDIVIDUALS):
         return True
     loud = one.parts == (1, 1) and quieter > LOUD_INDIVIDUALS
     if loud and alike.least > 2 * PLAINLY_INDIVIDUALS and narrow > FAINT_STREAK:

@@ -73,6 +73,6 @@ def test_what_is_left_of_the_tones_mirror_image_is_within_u(counts: list[Counted
     """
     frequencies = np.array([each.frequency[0] for each in counts])
     off = frequencies / ENDS[0] - 1
-    stated = np.array([math.hypot(*_parts(each).values()) for each in counts])
+    stated = np.array([math.hypot(*_parts(each, each.doubted).values()) for each in counts])
     assert abs(off.mean()) < 3e-4
     assert math.sqrt((off**2).mean()) < math.sqrt((stated**2).mean())

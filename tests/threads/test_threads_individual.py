@@ -18,6 +18,7 @@ from imgcover.threads.field import Field, Region
 from imgcover.threads.follow import Followed
 from imgcover.threads.individual import Individuality, individuality
 from imgcover.threads.lattice import Lattice
+from imgcover.threads.reader import Plain, read_threads
 
 PITCH = 8.0
 
@@ -85,3 +86,17 @@ def test_roughness_tells_ragged_holes_from_punched_ones() -> None:
 def test_few_threads_say_nothing() -> None:
     got = read(cells(0.6, np.random.default_rng(11), side=11))
     assert math.isnan(got.ends) and got.least == 0.0
+
+
+@pytest.mark.parametrize("pitch", [6.0, 8.0, 9.3, 12.0])
+def test_an_even_mesh_is_crossed_bars_and_counted(pitch: float) -> None:
+    """Truth is drawn here: bars of one width, exactly evenly laid, as in a woven wire mesh."""
+    fine = np.abs((np.arange(360 * 8) + 0.5) / 8 / pitch % 1 - 0.5) < 0.3
+    bars = fine.reshape(-1, 8).mean(axis=1)
+    light = 0.05 + 0.9 * np.outer(bars, bars)
+    light += np.random.default_rng(12).normal(0, 0.01, light.shape)
+    assert read(light, pitch).not_crossed < 0.005
+    reading = read_threads(Plain(light.clip(0, 1).astype(np.float32)))
+    assert reading.ends is not None and reading.picks is not None
+    assert reading.ends.pixels_a_thread == pytest.approx(pitch, rel=1e-3)
+    assert reading.picks.pixels_a_thread == pytest.approx(pitch, rel=1e-3)
