@@ -168,8 +168,8 @@ def test_the_drawn_cloth_is_told_as_well_as_said(trial: Trial) -> None:
 
 
 def test_more_than_comfortable_pixels_tell_cover_no_better(trial: Trial) -> None:
-    """Truth is drawn: the same seeds at eight and at twelve pixels an end."""
-    finer = try_out(sheet(), 1.5 * PX_PER_MM, detail_mm=0.05)
+    """Truth is drawn: the same seeds at eight and at ten pixels an end; twelve are refused."""
+    finer = try_out(sheet(), 1.25 * PX_PER_MM, detail_mm=0.05)
     assert trial.cover.u is not None
     assert finer.cover.u is not None
     # u of two pictures is itself known to a third or so
